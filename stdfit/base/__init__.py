@@ -1,0 +1,1 @@
+"""Words everybody uses: read-only arrays, the error tree, sweeps."""
