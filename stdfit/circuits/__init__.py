@@ -1,0 +1,1 @@
+"""Physics of one-port standards: arrays in, arrays and derivatives out, SI units throughout."""

@@ -1,0 +1,114 @@
+"""The complete models of a standard: which parameters each kind has, and Γ with all its derivatives."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from stdfit.base.arrays import ComplexArray, FloatArray
+from stdfit.circuits.line import see_through_line
+from stdfit.circuits.load import load
+from stdfit.circuits.open_end import open_end
+from stdfit.circuits.short_end import short_end
+
+
+@dataclass(frozen=True, slots=True)
+class Parameter:
+    """A parameter as people read and type it.
+
+    Attributes
+    ----------
+    name : str
+        Its key in bench and kit files.
+    unit : str
+        The trade's unit.
+    si : float
+        SI value of one unit.
+    power : int
+        The power of frequency that it multiplies.
+    label : str
+        Its name in a sentence.
+    """
+
+    name: str
+    unit: str
+    si: float
+    power: int
+    label: str
+
+
+OFFSET = (
+    Parameter("offset_delay_ps", "ps", 1e-12, 0, "offset delay"),
+    Parameter("offset_loss_gohm_per_s", "GΩ/s", 1e9, 0, "offset loss"),
+    Parameter("offset_z0_ohm", "Ω", 1.0, 0, "offset Z0"),
+)
+OPEN = (
+    Parameter("c0", "1e-15 F", 1e-15, 0, "C0"),
+    Parameter("c1", "1e-27 F/Hz", 1e-27, 1, "C1"),
+    Parameter("c2", "1e-36 F/Hz²", 1e-36, 2, "C2"),
+    Parameter("c3", "1e-45 F/Hz³", 1e-45, 3, "C3"),
+)
+SHORT = (
+    Parameter("l0", "1e-12 H", 1e-12, 0, "L0"),
+    Parameter("l1", "1e-24 H/Hz", 1e-24, 1, "L1"),
+    Parameter("l2", "1e-33 H/Hz²", 1e-33, 2, "L2"),
+    Parameter("l3", "1e-42 H/Hz³", 1e-42, 3, "L3"),
+)
+LOAD = (
+    Parameter("resistance_ohm", "Ω", 1.0, 0, "resistance"),
+    Parameter("inductance_ph", "pH", 1e-12, 0, "inductance"),
+    Parameter("capacitance_ff", "fF", 1e-15, 0, "capacitance"),
+)
+PARAMETERS: dict[str, tuple[Parameter, ...]] = {
+    "open": OFFSET + OPEN,
+    "short": OFFSET + SHORT,
+    "load": OFFSET + LOAD,
+}
+"""The parameters of each kind, in the order in which `reflection` takes them."""
+
+
+def reflection(
+    kind: str, values: Sequence[float] | FloatArray, frequency_hz: FloatArray, reference_ohm: float
+) -> tuple[ComplexArray, ComplexArray]:
+    """Return Γ of a standard and its derivatives by every parameter.
+
+    Parameters
+    ----------
+    kind : {"open", "short", "load"}
+        The kind of standard.
+    values : sequence of p floats
+        The parameters in the trade's units, in the order of ``PARAMETERS[kind]``.
+    frequency_hz : array of shape (n,)
+        Frequency in Hz.
+    reference_ohm : float
+        Reference impedance in Ω.
+
+    Returns
+    -------
+    gamma : complex array of shape (n,)
+    jacobian : complex array of shape (n, p)
+        dΓ by each parameter, per trade unit.
+    """
+    units = np.array([parameter.si for parameter in PARAMETERS[kind]])
+    si = np.asarray(values, dtype=float) * units
+    if kind == "open":
+        end, by_end = open_end(frequency_hz, si[3:], reference_ohm)
+    elif kind == "short":
+        end, by_end = short_end(frequency_hz, si[3:], reference_ohm)
+    else:
+        end, by_end = load(frequency_hz, float(si[3]), float(si[4]), float(si[5]), reference_ohm)
+    seen = see_through_line(
+        end,
+        frequency_hz,
+        delay_s=float(si[0]),
+        loss_ohm_per_s=float(si[1]),
+        z0_ohm=float(si[2]),
+        reference_ohm=reference_ohm,
+    )
+    jacobian = np.empty((frequency_hz.size, si.size), dtype=complex)
+    jacobian[:, 0] = seen.by_delay
+    jacobian[:, 1] = seen.by_loss
+    jacobian[:, 2] = seen.by_z0
+    jacobian[:, 3:] = seen.by_termination[:, None] * by_end
+    jacobian *= units
+    return seen.gamma, jacobian
