@@ -1,0 +1,1 @@
+"""From files to sound records: readings become sweeps, bench files become benches."""

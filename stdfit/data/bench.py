@@ -1,0 +1,173 @@
+"""Bench files: the text says what was measured and with what; out comes a `Bench`."""
+
+import re
+import stat
+import tomllib
+from pathlib import Path
+
+from stdfit.base.arrays import frozen_float
+from stdfit.base.errors import BenchError
+from stdfit.data.bench_records import Bench, Given, StandardEntry, StatedResidual
+from stdfit.data.bench_standards import decode_standards
+from stdfit.data.bench_table import Table
+from stdfit.data.words import nearest, quoted
+
+__all__ = ["Bench", "Given", "StandardEntry", "StatedResidual", "parse_bench", "read_bench"]
+
+FORMAT = "stdfit-bench/1"
+BENCH_NAME = "bench.toml"
+LARGEST_BYTES = 4 * 2**20
+DEFAULT_WITHIN = 0.02
+# A bound of 0.5 dB on tracking is a bad analyser; these only catch a wrong sign, unit or column.
+HIGHEST_DB = {"directivity_db": 400.0, "source_match_db": 400.0, "reflection_tracking_db": 20.0}
+
+
+def read_bench(path: Path | str) -> Bench:
+    """Return the bench that a bench file, or a folder with a bench.toml, describes.
+
+    Parameters
+    ----------
+    path : path
+        The bench file or its folder.
+
+    Raises
+    ------
+    BenchError
+        The file cannot be read, is no TOML, or says something that cannot be.
+    """
+    path = Path(path)
+    try:
+        if path.is_dir():
+            path = path / BENCH_NAME
+            if not path.exists():
+                raise BenchError(
+                    f"the folder holds no {BENCH_NAME}", "write one, or name the file", file=path.parent
+                )
+        status = path.stat()
+        if not stat.S_ISREG(status.st_mode):
+            raise BenchError("not an ordinary file", "name a bench file", file=path)
+        if status.st_size > LARGEST_BYTES:
+            raise BenchError("larger than 4 MB", "name a bench file", file=path)
+        text = path.read_bytes().decode("utf-8-sig")
+    except FileNotFoundError as fault:
+        raise BenchError("no such bench file", "check the path", file=path) from fault
+    except UnicodeDecodeError as fault:
+        line = fault.object.count(b"\n", 0, fault.start) + 1
+        raise BenchError("not UTF-8 text", "save the bench file as UTF-8", file=path, line=line) from fault
+    except (OSError, ValueError) as fault:
+        reason = (
+            fault.strerror if isinstance(fault, OSError) and fault.strerror else "not a possible file name"
+        )
+        raise BenchError(f"cannot be read: {reason}", "check the path", file=repr(str(path))[1:-1]) from fault
+    return parse_bench(text, path)
+
+
+def parse_bench(text: str, path: Path) -> Bench:
+    """Return the bench that a TOML text describes.
+
+    Parameters
+    ----------
+    text : str
+        The content of a bench file.
+    path : path
+        Where it stands: patterns are relative to its folder, and messages name it.
+
+    Raises
+    ------
+    BenchError
+        The text is no TOML, or says something that cannot be; the message names line or key.
+    """
+    values = _parse_toml(text, path)
+    _check_format(values, path)
+    whole = Table(values, path, "", ("format", "kit", "goal", "analyser", "standard"))
+    kit = Table(
+        _required(whole, "kit"), path, "kit", ("name", "connector", "reference_impedance_ohm", "date")
+    )
+    goal = Table(values.get("goal", {}), path, "goal", ("within", "highest_hz"))
+    within = goal.number("within", DEFAULT_WITHIN, above=0.0)
+    if within >= 1.0:
+        raise goal.fault("within", f"{within:g} is not below 1", "write for example 0.02")
+    analyser = Table(_required(whole, "analyser"), path, "analyser", ("state", "residual"))
+    state = analyser.choice("state", ("corrected", "raw"))
+    if state == "raw" and "residual" in analyser:
+        raise analyser.fault(
+            "residual", "belongs to corrected readings", 'leave it out, or set state = "corrected"'
+        )
+    return Bench(
+        path=path,
+        name=kit.text("name"),
+        connector=kit.text("connector"),
+        reference_ohm=kit.number("reference_impedance_ohm", 50.0, above=0.0),
+        within=within,
+        highest_hz=goal.number("highest_hz", above=0.0) if "highest_hz" in goal else None,
+        state=state,
+        residual=_residual(analyser.values["residual"], path) if "residual" in analyser else None,
+        standards=decode_standards(whole, state),
+        date=kit.day("date"),
+    )
+
+
+def _parse_toml(text: str, path: Path) -> dict[str, object]:
+    """Parse TOML, with file and line in the error."""
+    try:
+        return tomllib.loads(text)
+    except RecursionError as fault:
+        raise BenchError("too deeply nested", "write plain tables and lists", file=path) from fault
+    except ValueError as fault:  # TOMLDecodeError is one; so is an endless integer
+        message = str(fault)
+        place = re.search(r" \(at line ([0-9]+), column ([0-9]+)\)\Z", message)
+        at_end = message.endswith("(at end of document)")
+        what = re.sub(r" \(at [^()]*\)\Z", "", message).split(" (")[0].split(";")[0]
+        line = int(place[1]) if place else len(text.splitlines()) if at_end else None
+        column = f", column {place[2]}" if place else ""
+        raise BenchError(
+            f"not valid TOML{column}: {quoted(what, 100)[1:-1]}",
+            "mend the line; text needs quotes",
+            file=path,
+            line=line,
+        ) from fault
+
+
+def _check_format(values: dict[str, object], path: Path) -> None:
+    """Refuse what does not call itself a bench file of this version."""
+    stated = values.get("format")
+    if stated == FORMAT:
+        return
+    near = nearest("format", values) if stated is None else None
+    if near is not None:
+        raise BenchError("unknown key", "did you mean 'format'?", file=path, key=near)
+    what = "missing" if stated is None else f"{quoted(str(stated))} is not known"
+    raise BenchError(what, f'a bench file begins with format = "{FORMAT}"', file=path, key="format")
+
+
+def _required(whole: Table, key: str) -> object:
+    """Return a table that must be there."""
+    if key not in whole:
+        raise whole.fault(key, "the table is missing", f"write [{key}]")
+    return whole.values[key]
+
+
+def _residual(values: object, path: Path) -> StatedResidual:
+    """Return the stated bounds, turned from decibels into linear ones."""
+    table = Table(values, path, "analyser.residual", ("frequency_hz", *HIGHEST_DB))
+    frequency = frozen_float(table.numbers("frequency_hz", above=0.0))
+    if (frequency[1:] <= frequency[:-1]).any():
+        raise table.fault(
+            "frequency_hz", "the frequencies do not rise", "put them in rising order, each once"
+        )
+    decibels = {}
+    for key, highest in HIGHEST_DB.items():
+        listed = frozen_float(table.numbers(key, above=0.0))
+        if listed.size != frequency.size:
+            raise table.fault(
+                key, f"{listed.size} values for {frequency.size} frequencies", "give one value a frequency"
+            )
+        if listed.max() > highest:
+            raise table.fault(key, f"{listed.max():g} dB is too much to be meant", "check the unit")
+        decibels[key] = listed
+    return StatedResidual(
+        frequency_hz=frequency,
+        directivity=10.0 ** (-decibels["directivity_db"] / 20.0),
+        source_match=10.0 ** (-decibels["source_match_db"] / 20.0),
+        reflection_tracking=10.0 ** (decibels["reflection_tracking_db"] / 20.0) - 1.0,
+    )

@@ -1,0 +1,127 @@
+"""What a bench file says, as records."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from pathlib import Path
+from types import MappingProxyType
+
+from stdfit.base.arrays import FloatArray, frozen_float
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Given:
+    """Evidence on one parameter.
+
+    Attributes
+    ----------
+    value : float
+        In the trade's unit, which the parameter's name tells.
+    u : float or None
+        Standard uncertainty in the same unit; None when the value is held fixed.
+    """
+
+    value: float
+    u: float | None = None
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class StatedResidual:
+    """What is left of the analyser's errors after its own correction: 95 % bounds on |δ|, linear.
+
+    Attributes
+    ----------
+    frequency_hz : array of shape (n,)
+        Rising; one element holds for all frequencies.
+    directivity, source_match : arrays of shape (n,)
+        10^(−dB/20).
+    reflection_tracking : array of shape (n,)
+        10^(dB/20) − 1.
+    """
+
+    frequency_hz: FloatArray
+    directivity: FloatArray
+    source_match: FloatArray
+    reflection_tracking: FloatArray
+
+    def __post_init__(self) -> None:
+        for name in ("frequency_hz", "directivity", "source_match", "reflection_tracking"):
+            object.__setattr__(self, name, frozen_float(getattr(self, name)))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class StandardEntry:
+    """One standard on the bench.
+
+    Attributes
+    ----------
+    name : str
+        Unique on the bench.
+    kind : str
+        "open", "short" or "load".
+    files : tuple of paths
+        One for each connection.
+    given : mapping of str to Given
+        Evidence by parameter name.
+    same_offset_as : str or None
+        The standard whose offset line this one shares.
+    port : int
+        1 takes S11 of the files, 2 takes S22.
+    polynomial : str
+        Terms of C(f) or L(f): "chosen" by the program, "constant", "even" (orders 0, 2) or "full" (0 to 3).
+    from_kit : path or None
+        Kit file that knows this standard (raw readings only).
+    standard : str or None
+        Its name in that kit file.
+    """
+
+    name: str
+    kind: str
+    files: tuple[Path, ...]
+    given: Mapping[str, Given] = field(default_factory=dict)
+    same_offset_as: str | None = None
+    port: int = 1
+    polynomial: str = "chosen"
+    from_kit: Path | None = None
+    standard: str | None = None
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "files", tuple(self.files))
+        object.__setattr__(self, "given", MappingProxyType(dict(self.given)))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Bench:
+    """A bench file: what was measured, and with what.
+
+    Attributes
+    ----------
+    path : path
+        The bench file.
+    name, connector : str
+        Of the kit; free text.
+    reference_ohm : float
+        Reference impedance in ohms.
+    within : float
+        Tolerance on |error of Γ|.
+    highest_hz : float or None
+        Frequencies above are not asked for; None for no such limit.
+    state : str
+        "corrected" or "raw".
+    residual : StatedResidual or None
+        Corrected readings only; None when nothing is stated.
+    standards : tuple of StandardEntry
+        In the order of the file.
+    date : str or None
+        As written.
+    """
+
+    path: Path
+    name: str
+    connector: str
+    reference_ohm: float
+    within: float
+    highest_hz: float | None
+    state: str
+    residual: StatedResidual | None
+    standards: tuple[StandardEntry, ...]
+    date: str | None = None
