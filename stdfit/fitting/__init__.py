@@ -1,0 +1,1 @@
+"""From readings to parameters: the problem, its starting values and the only door to lmfit."""

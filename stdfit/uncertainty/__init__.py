@@ -1,0 +1,1 @@
+"""Every source of error, pushed through the fit."""

@@ -1,0 +1,137 @@
+"""Joint covariance of all fitted quantities, source by source."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from stdfit.base.arrays import ComplexArray, FloatArray
+from stdfit.uncertainty.push import Pushed
+from stdfit.uncertainty.region import effective_freedom, radius_95, student
+from stdfit.uncertainty.sources import SmoothSource, Source
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Share:
+    """What one source contributes to the joint covariance.
+
+    Attributes
+    ----------
+    name : str
+    freedom : float
+        Degrees of freedom, infinite where the size of the source is stated and not estimated.
+    covariances : array of shape (a, ..., p, p)
+        One for each correlation length that is tried; a = 1 where the source has none.
+    """
+
+    name: str
+    freedom: float
+    covariances: FloatArray
+
+
+def shares_of(
+    pushed: Sequence[Pushed],
+    sources: Sequence[Source],
+    precision: FloatArray,
+    evidence: Sequence[tuple[str, Sequence[int]]],
+) -> tuple[FloatArray, list[Share]]:
+    """Return M⁻¹ and the share of each source; the axis after the lengths runs over the cuts.
+
+    Parameters
+    ----------
+    pushed : sequence of Pushed
+        One for each standard, all with the same p and number of cuts.
+    sources : sequence of Source
+    precision : array of shape (p,)
+        1/u² of evidence on each quantity, zero for none.
+    evidence : sequence of (name, places)
+        How pieces of evidence are gathered in the budget.
+    """
+    normal = sum(one.normal for one in pushed) + np.diag(precision)
+    inverse = inverse_of(np.asarray(normal))
+    shares = []
+    for k, source in enumerate(sources):
+        common = isinstance(source, SmoothSource) and source.common
+        choices = []
+        for length in range(len(pushed[0].images[k])):
+            images = [one.images[k][length] for one in pushed]
+            joint = [sum(images)] if common else images
+            choices.append(sum(outer(inverse @ image) for image in joint))
+        shares.append(Share(source.name, source.freedom, np.array(choices)))
+    for name, places in evidence:
+        if places:
+            image = inverse[..., :, list(places)] * np.sqrt(precision[list(places)])
+            shares.append(Share(name, np.inf, outer(image)[None]))
+    return inverse, shares
+
+
+def outer(image: FloatArray) -> FloatArray:
+    """Return T·Tᵀ of a stack of images."""
+    return np.asarray(image @ np.swapaxes(image, -1, -2))
+
+
+def inverse_of(normal: FloatArray) -> FloatArray:
+    """Return inverses of a stack of normal matrices, scaled first; unreachable directions get none."""
+    size = np.sqrt(np.maximum(np.einsum("...ii->...i", normal), 0.0))
+    size = np.where(size > 0.0, size, 1.0)
+    scale = size[..., :, None] * size[..., None, :]
+    return np.asarray(np.linalg.pinv(normal / scale, rcond=1e-13, hermitian=True) / scale)
+
+
+def radius(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
+    """Return the 95 % radius on Γ, the largest over the correlation lengths.
+
+    Parameters
+    ----------
+    design : complex array of shape (n, p)
+        Derivatives of Γ by the quantities that the covariances are of.
+    shares : sequence of Share
+
+    Returns
+    -------
+    array of shape (..., n)
+    """
+    planes = [plane(design, share.covariances) for share in shares]
+    freedoms = np.array([share.freedom for share in shares])
+    lengths = max(own.shape[0] for own in planes)
+    stack = np.array([np.broadcast_to(own, (lengths, *own.shape[1:])) for own in planes])
+    freedom = effective_freedom(stack[..., 0] + stack[..., 1], freedoms)
+    return np.asarray(radius_95(stack.sum(axis=0), freedom).max(axis=0))
+
+
+def plane(design: ComplexArray, covariance: FloatArray) -> FloatArray:
+    """Return variance of the real part, of the imaginary part, and their covariance, shape (..., n, 3).
+
+    Parameters
+    ----------
+    design : complex array of shape (n, p)
+    covariance : array of shape (..., p, p)
+    """
+    real, imag = design.real, design.imag
+    by_real, by_imag = real @ covariance, imag @ covariance
+    return np.stack(
+        [(by_real * real).sum(axis=-1), (by_imag * imag).sum(axis=-1), (by_real * imag).sum(axis=-1)], axis=-1
+    )
+
+
+def expanded(direction: FloatArray, shares: Sequence[Share]) -> tuple[FloatArray, FloatArray]:
+    """Return standard uncertainty and 95 % uncertainty of linear combinations, the largest over the lengths.
+
+    Parameters
+    ----------
+    direction : array of shape (m, p)
+        Each row one combination of the quantities.
+    shares : sequence of Share
+
+    Returns
+    -------
+    u, u95 : arrays of shape (m,)
+    """
+    variances = [np.einsum("mp,apq,mq->am", direction, share.covariances, direction) for share in shares]
+    lengths = max(variance.shape[0] for variance in variances)
+    stack = np.maximum(
+        [np.broadcast_to(variance, (lengths, variance.shape[1])) for variance in variances], 0.0
+    )
+    freedom = effective_freedom(stack, np.array([share.freedom for share in shares]))
+    u = np.sqrt(stack.sum(axis=0))
+    return u.max(axis=0), (u * student(freedom)).max(axis=0)
