@@ -1,0 +1,1 @@
+"""How far a definition can be trusted."""

@@ -1,0 +1,241 @@
+"""Range and order: of all fits that could be made, the one that can be trusted furthest.
+
+A parasitic resonance at the top of the sweep spoils a fit of the whole of it, so the range is part of the
+choice. Each order is fitted once; from there the fits of all ranges follow from sums over the readings.
+"""
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
+from functools import partial
+
+import numpy as np
+
+from stdfit.base.arrays import FloatArray
+from stdfit.fitting.observed import Observed
+from stdfit.fitting.problem import Problem
+from stdfit.fitting.roles import SHAPES, Wish, build_problem, places_of, starting_values
+from stdfit.fitting.solve import least_squares
+from stdfit.uncertainty.budget import expanded, radius, shares_of
+from stdfit.uncertainty.push import push
+from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source, WhiteSource, reading_variance
+from stdfit.validity.limit import first_gap
+from stdfit.validity.misfit import expected_power, misfit
+
+CUTS = 16
+"""Ranges that are tried: sixteenths of the sweep."""
+
+SCAN_POINTS = 801
+"""Readings are thinned to about this many while ranges and orders are compared."""
+
+BOUND_POINTS = 80
+"""Points at which the bounds of the candidates are computed."""
+
+FIRST_FIT = 0.6
+"""Part of the sweep over which each order is fitted first, below most parasitic resonances."""
+
+FIRST_POINTS = 200
+"""About how many readings of the sweep that first fit takes: it only has to come near."""
+
+NEAR = 0.97
+"""Limits above this part of the best are as good as equal; then the simpler order is taken."""
+
+SLACK = 1.2
+"""Among those, mean bounds below this multiple of the smallest are as good as equal."""
+
+INDEPENDENT_PIECES = 4.0
+"""Independent values of a smooth error over the sweep, when readings are weighed against evidence."""
+
+
+@dataclass(frozen=True, slots=True)
+class Choice:
+    """What to fit, over which range.
+
+    Attributes
+    ----------
+    shape : str
+        A key of ``SHAPES`` of the standard's kind.
+    top_hz : float
+        Upper end of the fit range.
+    limit_hz : float
+        The limit that the scan found for it.
+    offset : dict
+        Offset parameters, value and standard uncertainty, for standards that share the line.
+    """
+
+    shape: str
+    top_hz: float
+    limit_hz: float
+    offset: dict[str, tuple[float, float | None]]
+
+
+def weights_for(sources: Sequence[Source], index: int, count: int) -> FloatArray:
+    """Return 1/variance per component of one standard's mean readings, shape (n,).
+
+    A smooth error has only a few independent values over the sweep, so each reading carries n/pieces of its
+    variance: otherwise a thousand readings would drown a ruler that knows better.
+    """
+    smooth, white = reading_variance(sources, index)
+    variance = white + count / INDEPENDENT_PIECES * smooth
+    return np.asarray(1.0 / np.maximum(np.broadcast_to(variance, count), 1e-16))
+
+
+def shapes_for(kind: str, polynomial: str, wish: Wish) -> list[str]:
+    """Return the orders that may be tried for a standard, simplest first."""
+    shapes = [shape for shape in SHAPES[kind] if polynomial == "chosen" or shape.split(",")[0] == polynomial]
+    if kind == "load":
+        shapes = list(SHAPES[kind])
+        if "offset_delay_ps" in wish.given or wish.same_offset_as is not None:
+            shapes = [shape for shape in shapes if "offset_delay_ps" not in SHAPES[kind][shape]]
+    if "offset_z0_ohm" in wish.given or wish.same_offset_as is not None:
+        shapes = [shape for shape in shapes if "offset_z0_ohm" not in SHAPES[kind][shape]]
+    return shapes
+
+
+def thin(observed: Observed, sources: Sequence[Source], index: int) -> tuple[Observed, list[Source]]:
+    """Return every k-th reading of one standard, and the sources as they act on it alone."""
+    step = max(1, observed.frequency_hz.size // SCAN_POINTS)
+    part = slice(None, None, step)
+    thinned: list[Source] = []
+    for source in sources:
+        if isinstance(source, SmoothSource):
+            thinned.append(replace(source, profiles=(source.profiles[index][part],)))
+        elif isinstance(source, LumpedSource):
+            thinned.append(replace(source, vectors=(source.vectors[index][part],)))
+        else:
+            thinned.append(WhiteSource(source.name, (source.variances[index],), source.freedom))
+    return (
+        Observed(
+            observed.name,
+            observed.kind,
+            observed.frequency_hz[part],
+            observed.gamma[part],
+            observed.deviations[:, part],
+        ),
+        thinned,
+    )
+
+
+def choose(
+    observed: Observed,
+    sources: Sequence[Source],
+    wish: Wish,
+    polynomial: str,
+    within: float,
+    reference_ohm: float,
+) -> Choice:
+    """Choose order and range of one standard by the limit they give.
+
+    Parameters
+    ----------
+    observed : Observed
+        One standard, thinned.
+    sources : sequence of Source
+        As they act on it alone.
+    wish : Wish
+        Evidence; an offset line that another standard owns is evidence too.
+    polynomial : str
+        "chosen", or the order that the user asks for.
+    within : float
+        Tolerance.
+    reference_ohm : float
+    """
+    candidates = []
+    for rank, shape in enumerate(shapes_for(observed.kind, polynomial, wish)):
+        candidates += _ranges(observed, sources, wish, shape, rank, within, reference_ohm)
+    best = max(candidate.limit_hz for candidate in candidates)
+    near = [candidate for candidate in candidates if candidate.limit_hz >= NEAR * best]
+    tightest = min(candidate.mean_bound for candidate in near)
+    good = [candidate for candidate in near if candidate.mean_bound <= SLACK * tightest]
+    lowest = min(candidate.rank for candidate in good)
+    chosen = min(
+        (candidate for candidate in good if candidate.rank == lowest), key=lambda one: one.mean_bound
+    )
+    return Choice(chosen.shape, chosen.top_hz, chosen.limit_hz, chosen.offset())
+
+
+@dataclass(frozen=True, slots=True)
+class _Candidate:
+    shape: str
+    rank: int
+    top_hz: float
+    limit_hz: float
+    mean_bound: float
+    offset: Callable[[], dict[str, tuple[float, float | None]]]
+
+
+def _ranges(
+    observed: Observed,
+    sources: Sequence[Source],
+    wish: Wish,
+    shape: str,
+    rank: int,
+    within: float,
+    reference_ohm: float,
+) -> list[_Candidate]:
+    """Fit one order, then work out limit and bound of every range."""
+    f = observed.frequency_hz
+    weight = weights_for(sources, 0, f.size)
+    alone = replace(wish, same_offset_as=None)
+    first = f <= f[0] + FIRST_FIT * (f[-1] - f[0])
+    first &= np.arange(f.size) % max(1, f.size // FIRST_POINTS) == 0
+    problem = build_problem(
+        [observed],
+        [alone],
+        [shape],
+        [np.where(first, weight, 0.0)],
+        starting_values([observed], reference_ohm),
+        reference_ohm,
+    )
+    target, precision = problem.evidence()
+    solution = least_squares(problem.residual, problem.jacobian, target)
+    gamma, design = problem.model(0, problem.expand(solution.values))
+    residual = observed.gamma - gamma
+
+    fewest = max(8, 2 * target.size)
+    cuts = sorted({round(f.size * k / CUTS) for k in range(2, CUTS + 1)})
+    cuts = [cut for cut in cuts if cut >= fewest] or [f.size]
+    span = (float(f[0]), float(f[-1]))
+    pushed = push(design, weight, residual, f, span, sources, 0, cuts)
+    inverse, shares = shares_of([pushed], sources, precision, places_of(problem))
+    pull = precision * (target - solution.values)
+    step = np.einsum("cpq,cq->cp", inverse, pushed.projected + pull)
+
+    points = slice(None, None, max(1, f.size // BOUND_POINTS))
+    left = residual - step @ design.T
+    noise = sum(source.variances[0] for source in sources if isinstance(source, WhiteSource))
+    expected = expected_power(design[points], f[points], points, span, sources, [pushed], inverse, 0)
+    bound = radius(design[points], shares) + misfit(left, f, noise, expected, points)
+
+    candidates = []
+    for c, cut in enumerate(cuts):
+        limit, _ = first_gap(f[points], bound[c], within)
+        below = f[points] <= max(limit, f[points][min(4, bound.shape[1] - 1)])
+        candidates.append(
+            _Candidate(
+                shape=shape,
+                rank=rank,
+                top_hz=float(f[cut - 1]),
+                limit_hz=limit,
+                mean_bound=float(bound[c][below].mean()),
+                offset=partial(_offset, problem, solution.values + step[c], shares, c),
+            )
+        )
+    return candidates
+
+
+def _offset(
+    problem: Problem, scaled: FloatArray, shares: Sequence[object], cut: int
+) -> dict[str, tuple[float, float | None]]:
+    """Return the offset parameters of a candidate with their standard uncertainties."""
+    values = problem.expand(scaled)
+    one_cut = [replace(share, covariances=share.covariances[:, cut]) for share in shares]  # type: ignore[attr-defined,type-var]
+    u, _ = expanded(np.eye(scaled.size), one_cut)  # type: ignore[arg-type]
+    place = {i: k for k, i in enumerate(problem.fitted)}
+    return {
+        quantity.parameter.name: (
+            float(values[i]),
+            float(u[place[i]] * quantity.scale) if i in place else None,
+        )
+        for i, quantity in enumerate(problem.quantities)
+        if quantity.parameter.name.startswith("offset_")
+    }

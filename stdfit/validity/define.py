@@ -1,0 +1,165 @@
+"""From a finished fit to the definitions of its standards, in trade units and in words."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from stdfit.base.arrays import FloatArray
+from stdfit.fitting.problem import Problem
+from stdfit.fitting.solve import Solution
+from stdfit.uncertainty.budget import Share, expanded
+from stdfit.validity.choose import Choice
+from stdfit.validity.kit import Combination, Definition, Fitted, total_covariance
+from stdfit.validity.limit import Limit
+
+TRADED = 0.9
+"""Correlation above which two parts are said to trade off."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Settled:
+    """A finished joint fit.
+
+    Attributes
+    ----------
+    problem : Problem
+    values : array
+        All quantities in trade units.
+    bounded : tuple of int
+        Quantities that ran into a bound.
+    solution : Solution
+    shares : tuple of Share
+        Covariances of the scaled fitted quantities.
+    choices : tuple of Choice
+    misfits : tuple of (frequency, misfit)
+    """
+
+    problem: Problem
+    values: FloatArray
+    bounded: tuple[int, ...]
+    solution: Solution
+    shares: tuple[Share, ...]
+    choices: tuple[Choice, ...]
+    misfits: tuple[tuple[FloatArray, FloatArray], ...]
+
+
+def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], tuple[Share, ...]]:
+    """Return definitions, the order of the joint covariance, and its shares in trade units."""
+    problem = settled.problem
+    scale = problem.scales
+    names = problem.names()
+    order = tuple(names[i] for i in problem.fitted)
+    shares = tuple(
+        replace(share, covariances=share.covariances * np.outer(scale, scale)) for share in settled.shares
+    )
+    place = {i: k for k, i in enumerate(problem.fitted)}
+    u, u95 = expanded(np.eye(len(order)), shares) if order else (np.zeros(0), np.zeros(0))
+    definitions = []
+    for s, one in enumerate(problem.observed):
+        parameters = []
+        for i in problem.columns[s]:
+            quantity = problem.quantities[i]
+            value = float(settled.values[i])
+            own_u, own_95 = (float(u[place[i]]), float(u95[place[i]])) if i in place else (0.0, 0.0)
+            parameters.append(
+                Fitted(
+                    name=quantity.parameter.name,
+                    unit=quantity.parameter.unit,
+                    value=value,
+                    u=own_u,
+                    low=value - own_95,
+                    high=value + own_95,
+                    role="at its bound" if i in settled.bounded else quantity.role,
+                    of=names[i] if i in place else "",
+                )
+            )
+        combinations = _combinations(one.kind, parameters, order, shares, problem.reference_ohm)
+        f, wrong = settled.misfits[s]
+        definitions.append(
+            Definition(
+                name=one.name,
+                kind=one.kind,
+                shape=settled.choices[s].shape,
+                connections=one.connections,
+                read_low_hz=float(one.frequency_hz[0]),
+                read_top_hz=float(one.frequency_hz[-1]),
+                fit_low_hz=float(one.frequency_hz[0]),
+                fit_top_hz=settled.choices[s].top_hz,
+                parameters=tuple(parameters),
+                combinations=combinations,
+                misfit_hz=f,
+                misfit=wrong,
+                limit=Limit(0.0, 0.0, ""),
+                notes=_notes(one.kind, parameters, combinations, settled.solution),
+            )
+        )
+    return tuple(definitions), order, shares
+
+
+def _combinations(
+    kind: str,
+    parameters: Sequence[Fitted],
+    order: Sequence[str],
+    shares: Sequence[Share],
+    reference_ohm: float,
+) -> tuple[Combination, ...]:
+    """Return the combination that the readings fix, where both of its parts were fitted.
+
+    To first order an open's C0 is a delay of C0·Z0, a short's L0 a delay of L0/Z0, and of a load only
+    L − C·Z0² shows.
+    """
+    by_name = {parameter.name: parameter for parameter in parameters}
+    z0 = by_name["offset_z0_ohm"].value
+    label, unit, first, second, factor = {
+        "open": ("offset delay + Z0·C0", "ps", "offset_delay_ps", "c0", 1e-3 * z0),
+        "short": ("offset delay + L0/Z0", "ps", "offset_delay_ps", "l0", 1.0 / z0),
+        "load": ("L − C·Z0²", "pH", "inductance_ph", "capacitance_ff", -1e-3 * reference_ohm**2),
+    }[kind]
+    one, other = by_name[first], by_name[second]
+    if not one.of or not other.of:
+        return ()
+    direction = np.zeros((1, len(order)))
+    direction[0, order.index(one.of)] += 1.0
+    direction[0, order.index(other.of)] += factor
+    u, u95 = expanded(direction, shares)
+    covariance = total_covariance(shares)
+    i, j = order.index(one.of), order.index(other.of)
+    correlation = covariance[i, j] / np.sqrt(covariance[i, i] * covariance[j, j])
+    value = one.value + factor * other.value
+    return (
+        Combination(
+            label, unit, value, float(u[0]), value - float(u95[0]), value + float(u95[0]), float(correlation)
+        ),
+    )
+
+
+def _notes(
+    kind: str, parameters: Sequence[Fitted], combinations: Sequence[Combination], solution: Solution
+) -> tuple[str, ...]:
+    """Say in words what a user must know of this fit."""
+    notes = []
+    by_name = {parameter.name: parameter for parameter in parameters}
+    if not solution.converged:
+        notes.append(f"the fit did not converge: {solution.message}")
+    delay = by_name["offset_delay_ps"]
+    if delay.value < 0.0:
+        notes.append(
+            f"the delay is negative ({delay.value:.2f} ps): the reference plane of the readings lies behind this "
+            "standard's own, which is real where the analyser was calibrated with a kit whose planes lie further out"
+        )
+    if by_name["offset_loss_gohm_per_s"].role == "at its bound":
+        notes.append(
+            "the readings ask for a negative loss; it is held at 0 with the uncertainty of the free fit"
+        )
+    for combination in combinations:
+        if abs(combination.correlation) > TRADED:
+            parts = {"open": "delay and C0", "short": "delay and L0", "load": "L and C"}[kind]
+            notes.append(
+                f"{parts} trade off (correlation {combination.correlation:+.3f}): the readings fix "
+                f"{combination.label}, hardly the parts; a ruler or a drawing tells them apart"
+            )
+    assumed = [parameter.name for parameter in parameters if parameter.role == "assumed"]
+    if assumed:
+        notes.append(f"rests on weak assumed evidence (common practice): {', '.join(assumed)}")
+    return tuple(notes)

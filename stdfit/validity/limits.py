@@ -1,0 +1,100 @@
+"""Frequency-validity limits of a kit and of its standards, with their reasons."""
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from stdfit.base.arrays import ComplexArray, FloatArray
+from stdfit.uncertainty.budget import Share, radius
+from stdfit.validity.kit import Definition, Kit, Rung, misfit_at, model
+from stdfit.validity.limit import Limit, first_gap
+
+TOLERANCES = (0.005, 0.01, 0.02, 0.03, 0.05, 0.1)
+"""The ladder."""
+
+GRID_POINTS = 400
+"""Points at which a bound is compared with a tolerance, besides those of the misfit."""
+
+
+def limits(kit: Kit, tolerances: Sequence[float]) -> list[tuple[Limit, list[Limit]]]:
+    """Return, for each tolerance, the limit of the kit and those of its standards.
+
+    The limit is the highest frequency up to which the bound keeps within the tolerance without a gap, from
+    the first reading on; never beyond the last reading nor beyond the connector family's top.
+    """
+    bounds = []
+    for definition in kit.definitions:
+        grid = _grid(kit, definition)
+        _, design = model(kit, definition, grid)
+        bounds.append((grid, design, radius(design, kit.shares), misfit_at(definition, grid)))
+    result = []
+    for within in tolerances:
+        each = [
+            _limit(kit, definition, within, *bound)
+            for definition, bound in zip(kit.definitions, bounds, strict=True)
+        ]
+        lowest = min(range(len(each)), key=lambda k: each[k].limit_hz)
+        reason = f"{kit.definitions[lowest].name}: {each[lowest].reason}"
+        result.append((Limit(within, each[lowest].limit_hz, reason), each))
+    return result
+
+
+def ladder(kit: Kit) -> tuple[Rung, ...]:
+    """Return the limits over a ladder of tolerances, the asked one among them."""
+    tolerances = sorted({*TOLERANCES, kit.within})
+    return tuple(
+        Rung(whole.within, whole.limit_hz, tuple(one.limit_hz for one in each))
+        for whole, each in limits(kit, tolerances)
+    )
+
+
+def _grid(kit: Kit, definition: Definition) -> FloatArray:
+    """Return where the bound is looked at, up to the last reading or the connector's top."""
+    low = definition.read_low_hz
+    high = max(min(definition.read_top_hz, kit.top_hz), low)
+    points = np.concatenate([np.linspace(low, high, GRID_POINTS), definition.misfit_hz])
+    return np.unique(points[(points >= low) & (points <= high)])
+
+
+def _limit(
+    kit: Kit,
+    definition: Definition,
+    within: float,
+    grid: FloatArray,
+    design: ComplexArray,
+    spread: FloatArray,
+    misfit: FloatArray,
+) -> Limit:
+    """Return the limit of one standard."""
+    limit_hz, place = first_gap(grid, spread + misfit, within)
+    if place is None:
+        if kit.top_hz < definition.read_top_hz:
+            return Limit(within, limit_hz, "the next mode of the connector begins, or its family ends, here")
+        return Limit(within, limit_hz, "the readings end here")
+    if misfit[place] >= spread[place]:
+        return Limit(within, limit_hz, "the readings leave the model here (misfit)")
+    name, part = largest_share(design[place], kit.shares)
+    return Limit(within, limit_hz, f"{name} ({part:.0%} of the variance)")
+
+
+def shares_at(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
+    """Return each source's part of the variance of Γ at one frequency, at the length with the largest total.
+
+    Parameters
+    ----------
+    design : complex array of shape (p,)
+    shares : sequence of Share
+    """
+    pairs = np.stack([design.real, design.imag])
+    variances = [np.einsum("kp,apq,kq->a", pairs, share.covariances, pairs) for share in shares]
+    lengths = max(variance.size for variance in variances)
+    stack = np.array([np.broadcast_to(variance, lengths) for variance in variances])
+    worst = stack[:, int(np.argmax(stack.sum(axis=0)))]
+    return np.asarray(worst / worst.sum() if worst.sum() > 0.0 else worst)
+
+
+def largest_share(design: ComplexArray, shares: Sequence[Share]) -> tuple[str, float]:
+    """Return the name of the source with the largest part of the variance of Γ, and that part."""
+    parts = shares_at(design, shares)
+    place = int(np.argmax(parts))
+    return shares[place].name, float(parts[place])
