@@ -1,0 +1,287 @@
+"""The command: arguments, messages and exit codes; no science.
+
+Nothing heavy is imported before it is needed, so that help and wrong usage answer at once.
+"""
+
+import argparse
+import os
+import sys
+from collections.abc import Callable, Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING, NoReturn
+
+if TYPE_CHECKING:
+    from stdfit.validity.kit import Kit
+
+DONE, ANSWER_IS_NO, WRONG_INPUT, OWN_FAULT = 0, 1, 2, 3
+STOPPED_BY_USER = 130
+
+
+class _Parser(argparse.ArgumentParser):
+    """A parser whose faults are one line and what to do."""
+
+    def error(self, message: str) -> NoReturn:
+        self.exit(WRONG_INPUT, f"stdfit: {message}\nsee '{self.prog} --help'\n")
+
+
+def _parser() -> _Parser:
+    parser = _Parser(
+        prog="stdfit",
+        description="Turn readings of home-made open, short and load standards into a calibration kit with "
+        "95 %% bounds and the frequency up to which it can be trusted.",
+    )
+    parser.add_argument("--version", action="store_true", help="print the version and stop")
+    commands = parser.add_subparsers(dest="command", metavar="COMMAND", parser_class=_Parser)
+
+    def add(name: str, what: str, run: Callable[[argparse.Namespace], int]) -> _Parser:
+        command = commands.add_parser(name, help=what, description=what)
+        command.set_defaults(run=run)
+        command.add_argument("--json", action="store_true", help="print the result as JSON")
+        return command
+
+    demo = add(
+        "demo", "simulate a bench with a known truth, characterise it, show fitted against true", _demo
+    )
+    demo.add_argument(
+        "--out", metavar="DIR", type=Path, default=Path("stdfit-demo"), help="where to write (stdfit-demo)"
+    )
+
+    new = add("new", "write a commented bench.toml from the readings found in a folder", _new)
+    new.add_argument("folder", metavar="DIR", type=Path)
+
+    fit = add("fit", "characterise a kit: readings in, a kit file with bounds and a limit out", _fit)
+    fit.add_argument(
+        "bench", metavar="BENCH", type=Path, help="a bench file, or a folder that holds bench.toml"
+    )
+    fit.add_argument(
+        "-o", "--output", metavar="KIT", type=Path, help="kit file to write (kit.toml beside the bench file)"
+    )
+    fit.add_argument(
+        "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the bench file's, 0.02)"
+    )
+
+    show = add("show", "show a kit file: what to type in, how sure, how far", _show)
+    show.add_argument("kit", metavar="KIT", type=Path)
+
+    curve = add("curve", "print reflection and 95 %% bound over frequency as CSV", _curve)
+    curve.add_argument("kit", metavar="KIT", type=Path)
+    curve.add_argument(
+        "--standard", metavar="NAME", action="append", help="only this standard; may be repeated"
+    )
+    curve.add_argument(
+        "--points", metavar="N", type=_count, default=201, help="points up to the top of the fit range (201)"
+    )
+    curve.add_argument("--at", metavar="HZ", type=float, nargs="+", help="these frequencies instead")
+
+    limit = add("limit", "print the frequency-validity limit of kit and standards, with reasons", _limit)
+    limit.add_argument("kit", metavar="KIT", type=Path)
+    limit.add_argument("--within", metavar="X", type=_tolerance, nargs="+", help="tolerances (the kit's own)")
+    return parser
+
+
+def _tolerance(text: str) -> float:
+    value = float(text)
+    if not 0.0 < value < 1.0:
+        raise argparse.ArgumentTypeError(f"'{text}' does not lie between 0 and 1")
+    return value
+
+
+def _count(text: str) -> int:
+    value = int(text)
+    if not 1 <= value <= 1_000_000:
+        raise argparse.ArgumentTypeError(f"'{text}' does not lie between 1 and 1000000")
+    return value
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run the command; return its exit code."""
+    from stdfit.base.errors import FitError, StdfitError
+
+    parser = _parser()
+    asked = parser.parse_args(arguments)
+    try:
+        if asked.version:
+            from stdfit.pipeline import program_version
+
+            print(f"stdfit {program_version()}")
+            return DONE
+        if asked.command is None:
+            parser.error("no command given")
+        code = int(asked.run(asked))
+        sys.stdout.flush()
+        return code
+    except StdfitError as fault:
+        print(f"stdfit: {fault}", file=sys.stderr)
+        return ANSWER_IS_NO if isinstance(fault, FitError) else WRONG_INPUT
+    except KeyboardInterrupt:
+        print("stdfit: stopped; nothing was half written", file=sys.stderr)
+        return STOPPED_BY_USER
+    except BrokenPipeError:
+        # The reader of our output has gone; what is still buffered has nowhere to go.
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return DONE
+    except Exception:
+        print(f"stdfit: a fault of the program; the traceback is in {_save_traceback()}", file=sys.stderr)
+        return OWN_FAULT
+
+
+def _save_traceback() -> str:
+    """Save the traceback of the current exception; return where."""
+    import tempfile
+    import traceback
+
+    with tempfile.NamedTemporaryFile(
+        "w", prefix="stdfit-fault-", suffix=".txt", delete=False, encoding="utf-8"
+    ) as file:
+        file.write(traceback.format_exc())
+    return file.name
+
+
+def _print_json(data: object) -> None:
+    import json
+
+    print(json.dumps(data, indent=2, ensure_ascii=False, allow_nan=False))
+
+
+def _tell(text: str) -> None:
+    print(f"stdfit: {text}", file=sys.stderr)
+
+
+def _warn(kit: "Kit") -> None:
+    for warning in kit.warnings:
+        _tell(f"warning: {warning}")
+
+
+def _write_kit(kit: "Kit", path: Path) -> None:
+    """Write a kit file, over nothing but a kit file."""
+    from stdfit.base.errors import RequestError
+    from stdfit.writing.kit_file import is_kit_file, kit_text
+    from stdfit.writing.safely import write_whole
+
+    if path.exists() and not path.is_dir() and not is_kit_file(path):
+        raise RequestError("exists and is no kit file", "name another file with -o", file=path)
+    write_whole(path, kit_text(kit))
+
+
+def _fit(asked: argparse.Namespace) -> int:
+    from stdfit.data.bench import read_bench
+    from stdfit.pipeline import fit_bench
+    from stdfit.writing.plain_data import kit_data
+    from stdfit.writing.summary import summary, verdict
+
+    bench = read_bench(asked.bench)
+    target = asked.output if asked.output is not None else bench.path.parent / "kit.toml"
+    kit = fit_bench(bench, within=asked.within)
+    _write_kit(kit, target)
+    if asked.json:
+        _warn(kit)
+        _print_json({**kit_data(kit), "kit_file": str(target)})
+        return DONE
+    _warn(kit)
+    print(summary(kit))
+    print(f"kit file: {target}")
+    print(verdict(kit))
+    print(f"next: stdfit show {target}, stdfit curve {target}, stdfit limit {target} --within 0.01 0.05")
+    return DONE
+
+
+def _show(asked: argparse.Namespace) -> int:
+    from stdfit.writing.kit_reading import read_kit
+    from stdfit.writing.plain_data import kit_data
+    from stdfit.writing.summary import summary
+
+    kit = read_kit(asked.kit)
+    if asked.json:
+        _print_json(kit_data(kit))
+    else:
+        print(summary(kit), end="")
+    return DONE
+
+
+def _curve(asked: argparse.Namespace) -> int:
+    import csv
+
+    import numpy as np
+
+    from stdfit.writing.kit_reading import read_kit
+    from stdfit.writing.plain_data import COLUMNS, curve_rows
+
+    kit = read_kit(asked.kit)
+    names = asked.standard or [definition.name for definition in kit.definitions]
+    rows = curve_rows(kit, names, asked.points, None if asked.at is None else np.array(asked.at))
+    if asked.json:
+        _print_json({"curve": [dict(zip(COLUMNS, row, strict=True)) for row in rows]})
+        return DONE
+    writer = csv.writer(sys.stdout, lineterminator="\n")
+    writer.writerow(COLUMNS)
+    writer.writerows([name, *(repr(value) for value in values)] for name, *values in rows)
+    return DONE
+
+
+def _limit(asked: argparse.Namespace) -> int:
+    from stdfit.validity.limits import limits
+    from stdfit.writing.kit_reading import read_kit
+    from stdfit.writing.plain_data import limit_data
+    from stdfit.writing.summary import limit_lines
+
+    kit = read_kit(asked.kit)
+    found = limits(kit, asked.within or [kit.within])
+    if asked.json:
+        _print_json(limit_data(kit, found))
+    else:
+        print(limit_lines(kit, found), end="")
+    return DONE
+
+
+def _new(asked: argparse.Namespace) -> int:
+    from stdfit.base.errors import RequestError
+    from stdfit.writing.bench_draft import draft, find_standards
+    from stdfit.writing.safely import write_whole
+
+    target = asked.folder / "bench.toml"
+    if target.exists():
+        raise RequestError("exists already, and is not overwritten", "edit it, or move it away", file=target)
+    found, left_out = find_standards(asked.folder)
+    write_whole(target, draft(asked.folder.resolve().name, found))
+    for line in left_out:
+        _tell(f"left out: {line}")
+    if asked.json:
+        _print_json(
+            {
+                "bench_file": str(target),
+                "standards": [{"kind": f.kind, "files": list(f.files)} for f in found],
+            }
+        )
+        return DONE
+    for one in found:
+        print(f"{one.kind}: {', '.join(one.files)}{'' if one.by_name else '  (guessed from the readings)'}")
+    print(f"bench file: {target}")
+    print(f"next: look at the lines marked '<--' in it, then: stdfit fit {asked.folder}")
+    return DONE
+
+
+def _demo(asked: argparse.Namespace) -> int:
+    from stdfit.pipeline import fit_bench
+    from stdfit.trials.demo import compare, compare_curves, write_demo
+    from stdfit.trials.demo_text import demo_data, demo_text
+
+    asked.out.mkdir(parents=True, exist_ok=True)
+    simulated, bench = write_demo(asked.out)
+    kit = fit_bench(bench)
+    target = asked.out / "kit.toml"
+    _write_kit(kit, target)
+    rows = compare(kit, simulated)
+    curves = compare_curves(kit, simulated, [k * 1e9 for k in (0.5, 1, 2, 3, 4, 5, 6)])
+    if asked.json:
+        _print_json({**demo_data(rows, curves), "bench_file": str(bench), "kit_file": str(target)})
+        return DONE
+    print(demo_text(kit, rows, curves))
+    print(f"readings and bench file: {bench}")
+    print(f"kit file: {target}")
+    print(f"next: stdfit show {target}   (what to type in)")
+    print("      stdfit new DIR         (DIR holds your own readings)")
+    return DONE
+
+
+if __name__ == "__main__":
+    sys.exit(main())

@@ -1,0 +1,154 @@
+"""Kit files: a kit as TOML, so that reading one back and writing it again gives the same bytes."""
+
+import math
+from collections.abc import Sequence
+from pathlib import Path
+from typing import Any
+
+import tomlkit
+
+from stdfit.uncertainty.budget import Share
+from stdfit.validity.kit import Combination, Definition, Fitted, Kit
+
+FORMAT = "stdfit-kit/1"
+
+HEAD = """A calibration kit: definitions of standards, how sure they are (95 %), and up to which frequency.
+Written by stdfit; the format is described in docs/files.md of the program."""
+
+
+def kit_text(kit: Kit) -> str:
+    """Return the text of a kit file."""
+    document = tomlkit.document()
+    for line in HEAD.splitlines():
+        document.add(tomlkit.comment(line))
+    document.add("format", tomlkit.item(FORMAT))
+    document.add(
+        "kit",
+        _table(
+            name=kit.name,
+            connector=kit.connector,
+            reference_impedance_ohm=kit.reference_ohm,
+            created=kit.created,
+            program_version=kit.version,
+            within=kit.within,
+            limit_hz=kit.limit.limit_hz,
+            limit_reason=kit.limit.reason,
+            connector_top_hz=kit.top_hz,
+            warnings=list(kit.warnings),
+        ),
+    )
+    document.add("standard", _tables(_standard(definition) for definition in kit.definitions))
+    document.add(
+        "ladder",
+        _tables(
+            _table(within=rung.within, kit_limit_hz=rung.kit_hz, standard_limits_hz=list(rung.standards_hz))
+            for rung in kit.ladder
+        ),
+    )
+    document.add("covariance", _table(order=list(kit.order)))
+    document.add("source", _tables(_source(share) for share in kit.shares))
+    document.add(
+        "file", _tables(_table(standard=one.standard, name=one.file, sha256=one.sha256) for one in kit.files)
+    )
+    return tomlkit.dumps(document)
+
+
+def _table(**values: Any) -> Any:
+    table = tomlkit.table()
+    for key, value in values.items():
+        table.add(key, value)
+    return table
+
+
+def _tables(items: Any) -> Any:
+    tables = tomlkit.aot()
+    for item in items:
+        tables.append(item)
+    return tables
+
+
+def _standard(definition: Definition) -> Any:
+    table = _table(
+        name=definition.name,
+        kind=definition.kind,
+        order=definition.shape,
+        connections=definition.connections,
+        read_from_hz=definition.read_low_hz,
+        read_to_hz=definition.read_top_hz,
+        fit_from_hz=definition.fit_low_hz,
+        fit_to_hz=definition.fit_top_hz,
+        limit_hz=definition.limit.limit_hz,
+        limit_reason=definition.limit.reason,
+        notes=list(definition.notes),
+    )
+    table.add("parameter", _tables(_parameter(one) for one in definition.parameters))
+    if definition.combinations:
+        table.add("combination", _tables(_combination(one) for one in definition.combinations))
+    table.add(
+        "misfit",
+        _table(frequency_hz=definition.misfit_hz.tolist(), bound=definition.misfit.tolist()),
+    )
+    return table
+
+
+def _parameter(one: Fitted) -> Any:
+    return _table(
+        name=one.name,
+        value=one.value,
+        unit=one.unit,
+        u=one.u,
+        low_95=one.low,
+        high_95=one.high,
+        role=one.role,
+        covariance_name=one.of,
+    )
+
+
+def _combination(one: Combination) -> Any:
+    return _table(
+        label=one.label,
+        value=one.value,
+        unit=one.unit,
+        u=one.u,
+        low_95=one.low,
+        high_95=one.high,
+        correlation_of_parts=one.correlation,
+    )
+
+
+def _source(share: Share) -> Any:
+    """Return a source's covariance as lower triangles, one for each correlation length."""
+    triangles = tomlkit.array()
+    for covariance in share.covariances:
+        triangles.append([float(covariance[i, j]) for i in range(covariance.shape[0]) for j in range(i + 1)])
+    triangles.multiline(True)
+    return _table(
+        name=share.name,
+        degrees_of_freedom=share.freedom if math.isfinite(share.freedom) else math.inf,
+        lower_triangles=triangles,
+    )
+
+
+def triangle_size(count: int) -> int:
+    """Return how many numbers the lower triangle of a matrix of that size has."""
+    return count * (count + 1) // 2
+
+
+def rows_of(triangle: Sequence[float], count: int) -> list[list[float]]:
+    """Return the full symmetric matrix of a lower triangle."""
+    rows = [[0.0] * count for _ in range(count)]
+    place = 0
+    for i in range(count):
+        for j in range(i + 1):
+            rows[i][j] = rows[j][i] = triangle[place]
+            place += 1
+    return rows
+
+
+def is_kit_file(path: Path) -> bool:
+    """Return whether a file says of itself, near its top, that it is a kit file."""
+    try:
+        with path.open("rb") as stream:
+            return b'format = "stdfit-kit/' in stream.read(4096)
+    except OSError:
+        return False

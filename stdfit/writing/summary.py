@@ -1,0 +1,105 @@
+"""A kit in words and aligned columns, for a terminal."""
+
+from collections.abc import Sequence
+
+from stdfit.validity.kit import Definition, Kit
+from stdfit.validity.limit import Limit
+from stdfit.writing.numbers import decimals, frequency, label_of, plus_minus
+
+
+def aligned(rows: Sequence[Sequence[str]], indent: str = "  ") -> list[str]:
+    """Return rows as lines whose columns stand below each other."""
+    widths = [max(len(row[k]) for row in rows) for k in range(len(rows[0]))]
+    return [
+        indent + "  ".join(cell.ljust(width) for cell, width in zip(row, widths, strict=True)).rstrip()
+        for row in rows
+    ]
+
+
+def verdict(kit: Kit) -> str:
+    """Return the answer in one line."""
+    if kit.limit.limit_hz <= 0.0:
+        return f"within {kit.within:g} the kit cannot be trusted at any frequency: {kit.limit.reason}"
+    return f"within {kit.within:g} the kit is good to {frequency(kit.limit.limit_hz)}: {kit.limit.reason}"
+
+
+def summary(kit: Kit) -> str:
+    """Return the whole of what a user must see, the verdict first."""
+    lines = [
+        f"{kit.name} ({kit.connector or 'connector not named'}, {kit.reference_ohm:g} Ω)",
+        verdict(kit),
+        "",
+    ]
+    lines += aligned(
+        [
+            ["standard", "good to", "ends because", "fitted to", "order"],
+            *(
+                [
+                    one.name,
+                    frequency(one.limit.limit_hz),
+                    one.limit.reason,
+                    frequency(one.fit_top_hz),
+                    one.shape,
+                ]
+                for one in kit.definitions
+            ),
+        ]
+    )
+    lines += ["", "What to type in (± 95 %)"]
+    for definition in kit.definitions:
+        lines += _definition(kit, definition)
+    lines += ["", *ladder_lines(kit)]
+    notes = [f"{one.name}: {note}" for one in kit.definitions for note in one.notes]
+    if notes:
+        lines += ["", "Notes", *(f"  {note}" for note in notes)]
+    if kit.warnings:
+        lines += ["", "Assumed", *(f"  {warning}" for warning in kit.warnings)]
+    return "\n".join(lines) + "\n"
+
+
+def _definition(kit: Kit, definition: Definition) -> list[str]:
+    """Return the parameters of one standard."""
+    rows = []
+    for parameter, digits in zip(definition.parameters, decimals(kit, definition), strict=True):
+        if parameter.role == "unused":
+            continue
+        label = label_of(definition.kind, parameter.name)
+        half = max(parameter.high - parameter.value, parameter.value - parameter.low)
+        role = "" if parameter.role == "free" else parameter.role
+        if parameter.role == "held":
+            rows.append([label, f"{parameter.value:.{digits}f}", parameter.unit, role])
+        else:
+            rows.append([label, plus_minus(parameter.value, half, digits), parameter.unit, role])
+    for one in definition.combinations:
+        rows.append(
+            [
+                one.label,
+                plus_minus(one.value, one.high - one.value, 3),
+                one.unit,
+                "the sum that the readings fix",
+            ]
+        )
+    return [f"  {definition.name}", *aligned(rows, indent="    ")]
+
+
+def ladder_lines(kit: Kit) -> list[str]:
+    """Return the ladder over tolerances."""
+    names = [definition.name for definition in kit.definitions]
+    rows = [["within", "kit", *names]]
+    rows += [
+        [f"{rung.within:g}", frequency(rung.kit_hz), *(frequency(one) for one in rung.standards_hz)]
+        for rung in kit.ladder
+    ]
+    return ["How far at which tolerance on |error of Γ|", *aligned(rows)]
+
+
+def limit_lines(kit: Kit, found: Sequence[tuple[Limit, Sequence[Limit]]]) -> str:
+    """Return limits and reasons for each tolerance."""
+    rows = [["within", "what", "good to", "ends because"]]
+    for whole, each in found:
+        rows.append([f"{whole.within:g}", "kit", frequency(whole.limit_hz), whole.reason])
+        rows += [
+            ["", definition.name, frequency(one.limit_hz), one.reason]
+            for definition, one in zip(kit.definitions, each, strict=True)
+        ]
+    return "\n".join(aligned(rows, indent="")) + "\n"
