@@ -178,7 +178,7 @@ def _fit(asked: argparse.Namespace) -> int:
         _print_json({**kit_data(kit), "kit_file": str(target)})
         return DONE
     _warn(kit)
-    print(summary(kit))
+    print(summary(kit, warnings=False))
     print(f"kit file: {target}")
     print(verdict(kit))
     print(f"next: stdfit show {target}, stdfit curve {target}, stdfit limit {target} --within 0.01 0.05")

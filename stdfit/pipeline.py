@@ -9,7 +9,7 @@ from pathlib import Path
 
 import numpy as np
 
-from stdfit.base.arrays import frozen_float
+from stdfit.base.arrays import FloatArray, frozen_float
 from stdfit.base.errors import FitError, ReadingError, RequestError
 from stdfit.base.records import Sweep
 from stdfit.circuits.connectors import Family, family_of
@@ -18,9 +18,11 @@ from stdfit.data.readings import read_reading
 from stdfit.data.verify import verify_standards
 from stdfit.fitting.observed import Observed, noise_of, without_delay
 from stdfit.fitting.roles import Wish, build_problem, places_of, starting_values
+from stdfit.fitting.screen import screen_points
 from stdfit.fitting.solve import least_squares
 from stdfit.uncertainty.budget import Share, shares_of
 from stdfit.uncertainty.connections import Repeatability, assumed_repeatability, pooled_repeatability
+from stdfit.uncertainty.outlying import without_outlying
 from stdfit.uncertainty.push import push
 from stdfit.uncertainty.sources import Source, analyser_sources, connection_sources, reading_variance
 from stdfit.validity.choose import Choice, choose, thin, weights_for
@@ -130,7 +132,7 @@ def characterise(
     warnings = list(
         verify_standards({entry.name: (entry.kind, sweeps[entry.name]) for entry in bench.standards})
     )
-    observed = _observe(bench, sweeps)
+    observed, left_out = _observe(bench, sweeps)
     wishes = [
         Wish({name: (given.value, given.u) for name, given in entry.given.items()}, entry.same_offset_as)
         for entry in bench.standards
@@ -141,7 +143,7 @@ def characterise(
     sources = analyser_sources(observed, residual) + connection_sources(
         observed, scatter, bench.reference_ohm
     )
-    warnings += _cautions(bench, observed, scatter, family)
+    warnings += left_out + _cautions(bench, observed, scatter, family)
 
     choices = _choose_all(bench, observed, wishes, sources)
     settled = settle(bench, observed, wishes, sources, choices)
@@ -190,9 +192,9 @@ def _relative(file: Path, folder: Path) -> str:
         return file.name
 
 
-def _observe(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> list[Observed]:
-    """Reduce the readings of each standard, below the highest frequency that is wanted."""
-    observed = []
+def _observe(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> tuple[list[Observed], list[str]]:
+    """Reduce the readings of each standard; leave out what does not belong, and say so."""
+    observed, told = [], []
     for entry in bench.standards:
         grid = sweeps[entry.name][0].frequency_hz
         inside = grid > 0.0
@@ -204,9 +206,29 @@ def _observe(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> list[Observ
                 "raise goal.highest_hz or take more points",
                 file=sweeps[entry.name][0].name,
             )
-        readings = [sweep.gamma[inside] for sweep in sweeps[entry.name]]
-        observed.append(Observed.from_readings(entry.name, entry.kind, grid[inside], readings))
-    return observed
+        readings = np.array([sweep.gamma[inside] for sweep in sweeps[entry.name]])
+        screened = screen_points(grid[inside], readings)
+        for sweep, row in zip(sweeps[entry.name], screened.replaced, strict=True):
+            if row.any():
+                told.append(_single_points(sweep.name, grid[inside][row]))
+        observed.append(Observed.from_readings(entry.name, entry.kind, grid[inside], screened.readings))
+    kept, left_out = without_outlying(observed, bench.reference_ohm)
+    for s, k, distance in left_out:
+        name = sweeps[bench.standards[s].name][k].name
+        told.append(
+            f"{name}: this connection lies {distance:.2g} from the others, far beyond their scatter, and is left out. "
+            "Clean and tighten, and read it again."
+        )
+    return kept, told
+
+
+def _single_points(name: str, frequencies: FloatArray) -> str:
+    """Say which single points were left out."""
+    some = ", ".join(f"{f / 1e9:.4g}" for f in frequencies[:4]) + (", …" if frequencies.size > 4 else "")
+    return (
+        f"{name}: {frequencies.size} single point{'s' if frequencies.size > 1 else ''} ({some} GHz) left out: "
+        "off from their neighbours in this connection alone, as beside an analyser's band edges"
+    )
 
 
 def _repeatability(observed: Sequence[Observed], family: Family, reference_ohm: float) -> Repeatability:

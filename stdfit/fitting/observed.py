@@ -44,12 +44,17 @@ class Observed:
 
     @classmethod
     def from_readings(
-        cls, name: str, kind: str, frequency_hz: FloatArray, readings: Sequence[ComplexArray]
+        cls, name: str, kind: str, frequency_hz: FloatArray, readings: Sequence[ComplexArray] | ComplexArray
     ) -> "Observed":
         """Reduce readings of shape (k, n) to their mean and deviations."""
         stack = np.asarray(readings, dtype=complex)
         mean = stack.mean(axis=0)
         return cls(name, kind, frequency_hz, mean, stack - mean)
+
+    def without(self, connection: int) -> "Observed":
+        """Return the same standard with one connection left out."""
+        rest = np.delete(self.deviations, connection, axis=0) + self.gamma
+        return Observed.from_readings(self.name, self.kind, self.frequency_hz, rest)
 
 
 def without_delay(frequency_hz: FloatArray, gamma: ComplexArray) -> ComplexArray:

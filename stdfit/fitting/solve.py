@@ -9,6 +9,12 @@ from stdfit.base.arrays import FloatArray, frozen_float
 
 Function = Callable[[FloatArray], FloatArray]
 
+OVERFLOW = 1e100
+"""Stands for a residual that is not finite."""
+
+FIRST_STEP = 1.0
+"""First step at most this times the size of the values: a full Gauss–Newton step from far away overshoots."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Solution:
@@ -77,8 +83,13 @@ def least_squares(residual: Function, jacobian: Function, start: FloatArray) -> 
     def at(current: "lmfit.Parameters") -> FloatArray:
         return np.array([current[name].value for name in names])
 
-    result = lmfit.Minimizer(lambda current: residual(at(current)), parameters, calc_covar=False).leastsq(
-        Dfun=lambda current: jacobian(at(current)), ftol=1e-14, xtol=1e-12, max_nfev=2000
+    def finite_residual(current: "lmfit.Parameters") -> FloatArray:
+        # A step into overflow must be refused like any bad step, so that a shorter one follows.
+        found = residual(at(current))
+        return found if np.isfinite(found).all() else np.full(found.size, OVERFLOW)
+
+    result = lmfit.Minimizer(finite_residual, parameters, calc_covar=False).leastsq(
+        Dfun=lambda current: jacobian(at(current)), ftol=1e-14, xtol=1e-12, factor=FIRST_STEP, max_nfev=2000
     )
     values = at(result.params)
     design = jacobian(values)

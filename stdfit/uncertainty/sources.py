@@ -66,9 +66,9 @@ def analyser_sources(observed: Sequence[Observed], residual: StatedResidual) -> 
     A stated bound is the 95 % radius of a circular complex value: 2.448 standard deviations per component.
     """
     bounds = {
-        "directivity": residual.directivity,
-        "reflection tracking": residual.reflection_tracking,
-        "source match": residual.source_match,
+        "analyser residuals (directivity)": residual.directivity,
+        "analyser residuals (tracking)": residual.reflection_tracking,
+        "analyser residuals (source match)": residual.source_match,
     }
     return [
         SmoothSource(
@@ -91,7 +91,11 @@ def connection_sources(
         responses(one.gamma, one.frequency_hz, reference_ohm) / np.sqrt(one.connections) for one in observed
     ]
     sources: list[Source] = [
-        LumpedSource(part, tuple(basis[:, i] * scatter.sd[i] for basis in each), float(scatter.freedom[i]))
+        LumpedSource(
+            f"connections ({part})",
+            tuple(basis[:, i] * scatter.sd[i] for basis in each),
+            float(scatter.freedom[i]),
+        )
         for i, part in enumerate(PARTS)
     ]
     contrasts = float(sum(one.connections - 1 for one in observed))
@@ -100,7 +104,9 @@ def connection_sources(
             leftover / np.sqrt(one.connections) + 0j
             for leftover, one in zip(scatter.leftover, observed, strict=True)
         )
-        sources.append(SmoothSource("other scatter", profiles, common=False, freedom=max(contrasts, 1.0)))
+        sources.append(
+            SmoothSource("connections (other scatter)", profiles, common=False, freedom=max(contrasts, 1.0))
+        )
     sources.append(WhiteSource("noise", tuple(scatter.noise**2 / one.connections for one in observed)))
     return sources
 

@@ -60,12 +60,15 @@ class Choice:
         The limit that the scan found for it.
     offset : dict
         Offset parameters, value and standard uncertainty, for standards that share the line.
+    tried : tuple of (order, limit in Hz)
+        The best limit of each order that was tried, simplest first.
     """
 
     shape: str
     top_hz: float
     limit_hz: float
     offset: dict[str, tuple[float, float | None]]
+    tried: tuple[tuple[str, float], ...]
 
 
 def weights_for(sources: Sequence[Source], index: int, count: int) -> FloatArray:
@@ -81,7 +84,7 @@ def weights_for(sources: Sequence[Source], index: int, count: int) -> FloatArray
 
 def shapes_for(kind: str, polynomial: str, wish: Wish) -> list[str]:
     """Return the orders that may be tried for a standard, simplest first."""
-    shapes = [shape for shape in SHAPES[kind] if polynomial == "chosen" or shape.split(",")[0] == polynomial]
+    shapes = [shape for shape in SHAPES[kind] if polynomial == "chosen" or shape.split("+")[0] == polynomial]
     if kind == "load":
         shapes = list(SHAPES[kind])
         if "offset_delay_ps" in wish.given or wish.same_offset_as is not None:
@@ -150,7 +153,10 @@ def choose(
     chosen = min(
         (candidate for candidate in good if candidate.rank == lowest), key=lambda one: one.mean_bound
     )
-    return Choice(chosen.shape, chosen.top_hz, chosen.limit_hz, chosen.offset())
+    furthest: dict[str, float] = {}
+    for candidate in candidates:
+        furthest[candidate.shape] = max(candidate.limit_hz, furthest.get(candidate.shape, 0.0))
+    return Choice(chosen.shape, chosen.top_hz, chosen.limit_hz, chosen.offset(), tuple(furthest.items()))
 
 
 @dataclass(frozen=True, slots=True)

@@ -92,6 +92,7 @@ def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], t
                 misfit=wrong,
                 limit=Limit(0.0, 0.0, ""),
                 notes=_notes(one.kind, parameters, combinations, settled.solution),
+                tried=settled.choices[s].tried,
             )
         )
     return tuple(definitions), order, shares

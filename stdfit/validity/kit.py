@@ -77,6 +77,8 @@ class Definition:
     limit : Limit
         At the kit's tolerance.
     notes : tuple of str
+    tried : tuple of (order, limit in Hz)
+        How far each order that was tried would have been good, each over its own best range.
     """
 
     name: str
@@ -93,6 +95,7 @@ class Definition:
     misfit: FloatArray
     limit: Limit
     notes: tuple[str, ...]
+    tried: tuple[tuple[str, float], ...] = ()
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "misfit_hz", frozen_float(self.misfit_hz))

@@ -74,7 +74,7 @@ def _limit(
     if misfit[place] >= spread[place]:
         return Limit(within, limit_hz, "the readings leave the model here (misfit)")
     name, part = largest_share(design[place], kit.shares)
-    return Limit(within, limit_hz, f"{name} ({part:.0%} of the variance)")
+    return Limit(within, limit_hz, f"{name}, {100 * part:.0f} % of the variance")
 
 
 def shares_at(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:

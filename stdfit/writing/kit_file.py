@@ -79,6 +79,8 @@ def _standard(definition: Definition) -> Any:
         fit_to_hz=definition.fit_top_hz,
         limit_hz=definition.limit.limit_hz,
         limit_reason=definition.limit.reason,
+        orders_tried=[order for order, _ in definition.tried],
+        orders_limit_hz=[limit_hz for _, limit_hz in definition.tried],
         notes=list(definition.notes),
     )
     table.add("parameter", _tables(_parameter(one) for one in definition.parameters))

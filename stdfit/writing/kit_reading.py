@@ -1,19 +1,20 @@
-"""Kit files read back: decoded strictly, then checked for sense."""
+"""Kit files read back: decoded strictly, then handed to `kit_checks`."""
 
+import re
 import stat
 import tomllib
 from pathlib import Path
-from typing import Annotated, Any
+from typing import Annotated
 
 import msgspec
 import numpy as np
 
 from stdfit.base.errors import KitError
-from stdfit.circuits.standard import PARAMETERS
-from stdfit.data.words import suggestion
+from stdfit.data.words import quoted, suggestion
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Combination, Definition, Fitted, Kit, Rung, SourceFile
 from stdfit.validity.limit import Limit
+from stdfit.writing.kit_checks import checked, refuse_control_characters
 from stdfit.writing.kit_file import FORMAT, rows_of, triangle_size
 
 LARGEST_BYTES = 32 * 2**20
@@ -79,6 +80,8 @@ class _Standard(_Strict):
     notes: list[str]
     parameter: list[_Parameter]
     misfit: _Misfit
+    orders_tried: list[str] = []
+    orders_limit_hz: list[Size] = []
     combination: list[_Combination] = []
 
 
@@ -127,6 +130,18 @@ _FIELDS: dict[str, type[_Strict]] = {
 }
 """The tables by the last part of their key."""
 
+_IN_WORDS = {
+    "float": "a number",
+    "int": "a whole number",
+    "str": "text",
+    "array": "a list",
+    "object": "a table",
+    "bool": "true or false",
+    "date": "a date",
+    "datetime": "a date",
+    "time": "a time",
+}
+
 
 def read_kit(path: Path | str) -> Kit:
     """Return the kit of a kit file.
@@ -164,8 +179,12 @@ def parse_kit(text: str, path: Path | str) -> Kit:
     """
     try:
         values = tomllib.loads(text)
-    except (tomllib.TOMLDecodeError, RecursionError) as fault:
-        raise KitError(f"not TOML: {fault}", "take the file as stdfit wrote it", file=path) from fault
+    except (
+        ValueError,
+        RecursionError,
+    ) as fault:  # a TOMLDecodeError is a ValueError; so is an endless integer
+        what = quoted(str(fault), 100)[1:-1]
+        raise KitError(f"not TOML: {what}", "take the file as stdfit wrote it", file=path) from fault
     if values.get("format") != FORMAT:
         raise KitError(
             f"not a kit file of this version (format = {FORMAT!r})",
@@ -176,24 +195,23 @@ def parse_kit(text: str, path: Path | str) -> Kit:
     try:
         whole = msgspec.convert(values, _Whole)
     except msgspec.ValidationError as fault:
-        raise _fault(str(fault), values, path) from fault
-    return _checked(_kit(whole, path), path)
+        raise _fault(str(fault), path) from fault
+    refuse_control_characters(values, path)
+    return checked(_kit(whole, path), path)
 
 
-def _fault(message: str, values: dict[str, Any], path: Path | str) -> KitError:
+def _fault(message: str, path: Path | str) -> KitError:
     """Turn a decoder's message into one with key and nearest valid key."""
-    what, _, where = message.partition(" - at `$")
-    key = where.rstrip("`").lstrip(".") or None
-    if "unknown field" in what:
-        unknown = what.split("`")[1]
-        known = _FIELDS.get((key or "").replace("[...]", "").split(".")[-1], _Whole)
-        return KitError(
-            f"unknown key '{unknown}'{suggestion(unknown, known.__struct_fields__)}",
-            "remove it, or take the file as stdfit wrote it",
-            file=path,
-            key=key,
-        )
-    return KitError(what[:1].lower() + what[1:], "take the file as stdfit wrote it", file=path, key=key)
+    what, _, where = message.rpartition(" - at `$")
+    what, where = (what, where.rstrip("`").lstrip(".")) if what else (message, "")
+    unknown = re.fullmatch("Object contains unknown field `(.*)`", what, re.DOTALL)
+    if unknown is not None:
+        table = re.sub(r"\[[^]]*\]", "", where).split(".")[-1]
+        known = _FIELDS.get(table, _Whole).__struct_fields__
+        key = ".".join(part for part in (where, quoted(unknown[1])[1:-1]) if part)
+        return KitError("unknown key", suggestion(unknown[1], known), file=path, key=key)
+    what = re.sub("`([a-z]+)`", lambda word: _IN_WORDS.get(word[1], word[0]), what[:1].lower() + what[1:])
+    return KitError(what, "take the file as stdfit wrote it", file=path, key=where or None)
 
 
 def _kit(whole: _Whole, path: Path | str) -> Kit:
@@ -210,7 +228,7 @@ def _kit(whole: _Whole, path: Path | str) -> Kit:
                 file=path,
                 key=key,
             )
-        matrices = np.array([rows_of(one, count) for one in source.lower_triangles])
+        matrices = np.array([rows_of(one, count) for one in source.lower_triangles]).reshape(-1, count, count)
         shares.append(Share(source.name, source.degrees_of_freedom, matrices))
     head = whole.kit
     return Kit(
@@ -222,7 +240,7 @@ def _kit(whole: _Whole, path: Path | str) -> Kit:
         created=head.created,
         version=head.program_version,
         limit=Limit(head.within, head.limit_hz, head.limit_reason),
-        definitions=tuple(_definition(one, head.within) for one in whole.standard),
+        definitions=tuple(_definition(one, head.within, path) for one in whole.standard),
         order=tuple(whole.covariance.order),
         shares=tuple(shares),
         ladder=tuple(
@@ -233,7 +251,14 @@ def _kit(whole: _Whole, path: Path | str) -> Kit:
     )
 
 
-def _definition(one: _Standard, within: float) -> Definition:
+def _definition(one: _Standard, within: float, path: Path | str) -> Definition:
+    if len(one.orders_tried) != len(one.orders_limit_hz):
+        raise KitError(
+            "orders_tried and orders_limit_hz must be equally long",
+            "take the file as stdfit wrote it",
+            file=path,
+            key=f"standard '{one.name}'.orders_tried",
+        )
     return Definition(
         name=one.name,
         kind=one.kind,
@@ -255,63 +280,5 @@ def _definition(one: _Standard, within: float) -> Definition:
         misfit=np.array(one.misfit.bound),
         limit=Limit(within, one.limit_hz, one.limit_reason),
         notes=tuple(one.notes),
+        tried=tuple(zip(one.orders_tried, one.orders_limit_hz, strict=True)),
     )
-
-
-def _checked(kit: Kit, path: Path | str) -> Kit:
-    """Refuse what cannot be, naming the key."""
-
-    def refuse(key: str, what: str) -> KitError:
-        return KitError(what, "take the file as stdfit wrote it", file=path, key=key)
-
-    if not kit.definitions:
-        raise refuse("standard", "the kit holds no standard")
-    names = [definition.name for definition in kit.definitions]
-    if len(set(names)) != len(names):
-        raise refuse("standard", "two standards have the same name")
-    if len(set(kit.order)) != len(kit.order):
-        raise refuse("covariance.order", "a quantity is named twice")
-    for s, definition in enumerate(kit.definitions):
-        key = f"standard[{s}]"
-        if definition.kind not in PARAMETERS:
-            raise refuse(
-                f"{key}.kind", f"'{definition.kind}' is no kind of standard; there are open, short and load"
-            )
-        wanted = [parameter.name for parameter in PARAMETERS[definition.kind]]
-        if [parameter.name for parameter in definition.parameters] != wanted:
-            raise refuse(f"{key}.parameter", f"the parameters of a {definition.kind} are {', '.join(wanted)}")
-        for p, parameter in enumerate(definition.parameters):
-            own = f"{key}.parameter[{p}]"
-            if not np.isfinite([parameter.value, parameter.u, parameter.low, parameter.high]).all():
-                raise refuse(own, f"a value of {parameter.name} is not a finite number")
-            if not parameter.low <= parameter.value <= parameter.high:
-                raise refuse(own, f"{parameter.name} lies outside its own 95 % interval")
-            if parameter.of and parameter.of not in kit.order:
-                raise refuse(f"{own}.covariance_name", f"'{parameter.of}' is not in covariance.order")
-        if not 0.0 < definition.read_low_hz < definition.read_top_hz < np.inf:
-            raise refuse(f"{key}.read_to_hz", "the band of the readings is empty or not finite")
-        if not definition.fit_low_hz < definition.fit_top_hz <= definition.read_top_hz:
-            raise refuse(f"{key}.fit_to_hz", "the fit range does not lie within the readings")
-        if not definition.limit.limit_hz <= definition.read_top_hz * (1.0 + 1e-12):
-            raise refuse(f"{key}.limit_hz", "the limit lies above the last reading")
-        grid = definition.misfit_hz
-        if (
-            grid.size < 1
-            or grid.size != definition.misfit.size
-            or not np.isfinite([*grid, *definition.misfit]).all()
-        ):
-            raise refuse(f"{key}.misfit", "frequency_hz and bound must be equally long and finite")
-        if (np.diff(grid) <= 0.0).any():
-            raise refuse(f"{key}.misfit.frequency_hz", "frequencies must rise")
-    for k, share in enumerate(kit.shares):
-        own = f"source[{k}].lower_triangles"
-        if not np.isfinite(share.covariances).all():
-            raise refuse(own, "a covariance is not finite")
-        for matrix in share.covariances:
-            size = np.sqrt(np.abs(np.diag(matrix)))
-            size[size == 0.0] = 1.0
-            if matrix.size and np.linalg.eigvalsh(matrix / np.outer(size, size)).min() < -1e-6:
-                raise refuse(own, "a covariance is not positive")
-    if kit.limit.limit_hz > min(definition.read_top_hz for definition in kit.definitions) * (1.0 + 1e-12):
-        raise refuse("kit.limit_hz", "the limit lies above the last reading of a standard")
-    return kit

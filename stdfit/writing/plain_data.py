@@ -53,6 +53,7 @@ def kit_data(kit: Kit) -> dict[str, Any]:
                     }
                     for c in one.combinations
                 ],
+                "orders_tried": dict(one.tried),
                 "notes": list(one.notes),
             }
             for one in kit.definitions

@@ -23,7 +23,7 @@ def verdict(kit: Kit) -> str:
     return f"within {kit.within:g} the kit is good to {frequency(kit.limit.limit_hz)}: {kit.limit.reason}"
 
 
-def summary(kit: Kit) -> str:
+def summary(kit: Kit, *, warnings: bool = True) -> str:
     """Return the whole of what a user must see, the verdict first."""
     lines = [
         f"{kit.name} ({kit.connector or 'connector not named'}, {kit.reference_ohm:g} Ω)",
@@ -52,8 +52,8 @@ def summary(kit: Kit) -> str:
     notes = [f"{one.name}: {note}" for one in kit.definitions for note in one.notes]
     if notes:
         lines += ["", "Notes", *(f"  {note}" for note in notes)]
-    if kit.warnings:
-        lines += ["", "Assumed", *(f"  {warning}" for warning in kit.warnings)]
+    if warnings and kit.warnings:
+        lines += ["", "Warnings", *(f"  {warning}" for warning in kit.warnings)]
     return "\n".join(lines) + "\n"
 
 
@@ -79,7 +79,11 @@ def _definition(kit: Kit, definition: Definition) -> list[str]:
                 "the sum that the readings fix",
             ]
         )
-    return [f"  {definition.name}", *aligned(rows, indent="    ")]
+    others = [
+        f"{order} {frequency(limit_hz)}" for order, limit_hz in definition.tried if order != definition.shape
+    ]
+    tried = [f"    order {definition.shape}; others would be good to: {', '.join(others)}"] if others else []
+    return [f"  {definition.name}", *aligned(rows, indent="    "), *tried]
 
 
 def ladder_lines(kit: Kit) -> list[str]:
