@@ -71,7 +71,7 @@ def _parser() -> _Parser:
     curve.add_argument(
         "--points", metavar="N", type=_count, default=201, help="points up to the top of the fit range (201)"
     )
-    curve.add_argument("--at", metavar="HZ", type=float, nargs="+", help="these frequencies instead")
+    curve.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="these frequencies instead")
 
     limit = add("limit", "print the frequency-validity limit of kit and standards, with reasons", _limit)
     limit.add_argument("kit", metavar="KIT", type=Path)
@@ -80,17 +80,24 @@ def _parser() -> _Parser:
 
 
 def _tolerance(text: str) -> float:
-    value = float(text)
+    value = _number(text)
     if not 0.0 < value < 1.0:
-        raise argparse.ArgumentTypeError(f"'{text}' does not lie between 0 and 1")
+        raise argparse.ArgumentTypeError(f"{text!r} does not lie between 0 and 1")
     return value
 
 
 def _count(text: str) -> int:
-    value = int(text)
-    if not 1 <= value <= 1_000_000:
-        raise argparse.ArgumentTypeError(f"'{text}' does not lie between 1 and 1000000")
-    return value
+    value = _number(text)
+    if not 1 <= value <= 1_000_000 or value != int(value):
+        raise argparse.ArgumentTypeError(f"{text!r} is no whole number between 1 and 1000000")
+    return int(value)
+
+
+def _number(text: str) -> float:
+    try:
+        return float(text)
+    except ValueError:
+        raise argparse.ArgumentTypeError(f"{text!r} is not a number") from None
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
@@ -117,12 +124,22 @@ def main(arguments: Sequence[str] | None = None) -> int:
         print("stdfit: stopped; nothing was half written", file=sys.stderr)
         return STOPPED_BY_USER
     except BrokenPipeError:
-        # The reader of our output has gone; what is still buffered has nowhere to go.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        _drop_output()
         return DONE
+    except OSError as fault:
+        where = f"{fault.filename}: " if fault.filename else ""
+        print(f"stdfit: {where}{fault.strerror or fault}", file=sys.stderr)
+        print("check the path, its permissions and the space on the disk", file=sys.stderr)
+        _drop_output()
+        return WRONG_INPUT
     except Exception:
         print(f"stdfit: a fault of the program; the traceback is in {_save_traceback()}", file=sys.stderr)
         return OWN_FAULT
+
+
+def _drop_output() -> None:
+    """Give up what is still buffered for stdout: it has nowhere to go, and must not fail again at the end."""
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
 
 
 def _save_traceback() -> str:

@@ -11,8 +11,10 @@ import tomlkit
 from stdfit.base.errors import InputError, RequestError
 from stdfit.base.records import Sweep
 from stdfit.data.bench_files import natural_key
+from stdfit.data.bench_table import LONGEST_NAME
 from stdfit.data.readings import read_reading
 from stdfit.data.verify import low_end, phase_at_zero
+from stdfit.data.words import quoted
 
 SUFFIXES = (".s1p", ".s2p", ".ts", ".csv")
 KINDS = ("open", "short", "load")
@@ -60,15 +62,19 @@ def find_standards(folder: Path) -> tuple[list[Found], list[str]]:
     groups: dict[tuple[str, bool], list[str]] = {}
     left_out = []
     for path in candidates:
+        shown = quoted(path.name)[1:-1]
+        if not path.name.isprintable():
+            left_out.append(f"{shown}: its name holds a control character; rename it")
+            continue
         try:
             sweep = read_reading(path)
         except InputError as fault:
-            left_out.append(f"{path.name}: {fault.what}")
+            left_out.append(f"{shown}: {fault.what}")
             continue
         named = kind_by_name(path.stem)
         kind = named or kind_by_reading(sweep)
         if kind is None:
-            left_out.append(f"{path.name}: reflects neither like an open, a short nor a load")
+            left_out.append(f"{shown}: reflects neither like an open, a short nor a load")
             continue
         groups.setdefault((kind, named is not None), []).append(path.name)
     if not groups:
@@ -106,12 +112,13 @@ def quote(text: str) -> str:
 
 def draft(folder_name: str, found: Sequence[Found]) -> str:
     """Return the text of a bench file with a comment for each line that a user must look at."""
+    name = "".join(letter for letter in folder_name if letter.isprintable())[:LONGEST_NAME].strip()
     lines = [
         "# What was measured, and with what. Look at every line marked with '<--', then run: stdfit fit .",
         'format = "stdfit-bench/1"',
         "",
         "[kit]",
-        f"name = {quote(folder_name)}",
+        f"name = {quote(name or 'My standards')}",
         'connector = "SMA"                      # <-- SMA, N, BNC, 3.5 mm …: sets the ceiling of the limit',
         "reference_impedance_ohm = 50.0",
         "",

@@ -95,6 +95,8 @@ def _definitions(kit: Kit) -> Faults:
             yield f"{key}.fit_to_hz", "the fit range does not lie within the readings"
         if not definition.limit.limit_hz <= definition.read_top_hz * ABOVE:
             yield f"{key}.limit_hz", "the limit lies above the last reading"
+        if not np.isfinite([limit_hz for _, limit_hz in definition.tried]).all():
+            yield f"{key}.orders_limit_hz", "a limit is not a finite number"
         grid, misfit = definition.misfit_hz, definition.misfit
         if grid.size < 1 or grid.size != misfit.size or not np.isfinite([*grid, *misfit]).all():
             yield f"{key}.misfit", "frequency_hz and bound must be equally long and finite"

@@ -56,8 +56,17 @@ def kit_text(kit: Kit) -> str:
 def _table(**values: Any) -> Any:
     table = tomlkit.table()
     for key, value in values.items():
-        table.add(key, value)
+        table.add(key, _printable(value))
     return table
+
+
+def _printable(value: Any) -> Any:
+    """Return texts without characters that the reader refuses; a file of readings may have any name."""
+    if isinstance(value, str):
+        return "".join(letter if letter.isprintable() else "\N{REPLACEMENT CHARACTER}" for letter in value)
+    if isinstance(value, list) and all(isinstance(item, str) for item in value):
+        return [_printable(item) for item in value]
+    return value
 
 
 def _tables(items: Any) -> Any:

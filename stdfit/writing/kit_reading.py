@@ -179,10 +179,9 @@ def parse_kit(text: str, path: Path | str) -> Kit:
     """
     try:
         values = tomllib.loads(text)
-    except (
-        ValueError,
-        RecursionError,
-    ) as fault:  # a TOMLDecodeError is a ValueError; so is an endless integer
+    except RecursionError as fault:
+        raise KitError("too deeply nested", "take the file as stdfit wrote it", file=path) from fault
+    except ValueError as fault:  # a TOMLDecodeError is one; so is an endless integer
         what = quoted(str(fault), 100)[1:-1]
         raise KitError(f"not TOML: {what}", "take the file as stdfit wrote it", file=path) from fault
     if values.get("format") != FORMAT:

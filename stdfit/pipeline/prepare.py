@@ -1,0 +1,180 @@
+"""From readings to what a fit needs: means, scatter, sources of error, and what the user must be told."""
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from stdfit.base.arrays import FloatArray, frozen_float
+from stdfit.base.errors import ReadingError, RequestError
+from stdfit.base.records import Sweep
+from stdfit.circuits.connectors import Family, family_of
+from stdfit.data.bench import Bench, StatedResidual
+from stdfit.data.verify import verify_standards
+from stdfit.fitting.observed import Observed, noise_of, without_delay
+from stdfit.fitting.roles import Wish
+from stdfit.fitting.screen import screen_points
+from stdfit.uncertainty.connections import Repeatability, assumed_repeatability, pooled_repeatability
+from stdfit.uncertainty.outlying import without_outlying
+from stdfit.uncertainty.sources import Source, analyser_sources, connection_sources
+
+ASSUMED_RESIDUAL = StatedResidual(
+    frequency_hz=frozen_float([1e9, 6e9]),
+    directivity=frozen_float([10 ** (-36 / 20), 10 ** (-32 / 20)]),
+    source_match=frozen_float([10 ** (-34 / 20), 10 ** (-28 / 20)]),
+    reflection_tracking=frozen_float([10 ** (0.1 / 20) - 1, 10 ** (0.2 / 20) - 1]),
+)
+"""Residuals that are assumed where a bench states none: those of an analyser corrected with a kit of modest,
+unverified standards (common practice, no source)."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Prepared:
+    """A bench, ready to be fitted.
+
+    Attributes
+    ----------
+    bench : Bench
+    observed : tuple of Observed
+    wishes : tuple of Wish
+    residual : StatedResidual
+        Stated, or assumed.
+    scatter : Repeatability
+    sources : tuple of Source
+    family : Family
+    warnings : tuple of str
+    """
+
+    bench: Bench
+    observed: tuple[Observed, ...]
+    wishes: tuple[Wish, ...]
+    residual: StatedResidual
+    scatter: Repeatability
+    sources: tuple[Source, ...]
+    family: Family
+    warnings: tuple[str, ...]
+
+
+def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> Prepared:
+    """Verify and screen readings, and gather the sources of error.
+
+    Raises
+    ------
+    InputError
+        The readings cannot be what they are called, or the bench asks for what cannot be.
+    """
+    if bench.state != "corrected":
+        raise RequestError(
+            "the bench holds raw readings, and this version takes corrected ones",
+            'correct the readings with the analyser\'s own calibration and set state = "corrected"',
+            file=bench.path,
+            key="analyser.state",
+        )
+    if not 0.0 < bench.within < 1.0:
+        raise RequestError("the tolerance must lie between 0 and 1", "try 0.02", key="within")
+    warnings = list(
+        verify_standards({entry.name: (entry.kind, sweeps[entry.name]) for entry in bench.standards})
+    )
+    observed, left_out = _observe(bench, sweeps)
+    wishes = tuple(
+        Wish({name: (given.value, given.u) for name, given in entry.given.items()}, entry.same_offset_as)
+        for entry in bench.standards
+    )
+    family = family_of(bench.connector)
+    scatter = _repeatability(observed, family, bench.reference_ohm)
+    residual = bench.residual if bench.residual is not None else ASSUMED_RESIDUAL
+    warnings += left_out + _cautions(bench, observed, scatter, family)
+    return Prepared(
+        bench=bench,
+        observed=tuple(observed),
+        wishes=wishes,
+        residual=residual,
+        scatter=scatter,
+        sources=sources_of(observed, residual, scatter, bench.reference_ohm),
+        family=family,
+        warnings=tuple(warnings),
+    )
+
+
+def sources_of(
+    observed: Sequence[Observed], residual: StatedResidual, scatter: Repeatability, reference_ohm: float
+) -> tuple[Source, ...]:
+    """Return all sources of error of a bench, evidence apart."""
+    return (*analyser_sources(observed, residual), *connection_sources(observed, scatter, reference_ohm))
+
+
+def _observe(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> tuple[list[Observed], list[str]]:
+    """Reduce the readings of each standard; leave out what does not belong, and say so."""
+    observed, told = [], []
+    for entry in bench.standards:
+        grid = sweeps[entry.name][0].frequency_hz
+        inside = grid > 0.0
+        if bench.highest_hz is not None:
+            inside &= grid <= bench.highest_hz
+        if np.count_nonzero(inside) < 8:
+            raise ReadingError(
+                f"fewer than 8 readings of '{entry.name}' lie in the band that is asked for",
+                "raise goal.highest_hz or take more points",
+                file=sweeps[entry.name][0].name,
+            )
+        readings = np.array([sweep.gamma[inside] for sweep in sweeps[entry.name]])
+        screened = screen_points(grid[inside], readings)
+        for sweep, row in zip(sweeps[entry.name], screened.replaced, strict=True):
+            if row.any():
+                told.append(_single_points(sweep.name, grid[inside][row]))
+        observed.append(Observed.from_readings(entry.name, entry.kind, grid[inside], screened.readings))
+    kept, left_out = without_outlying(observed, bench.reference_ohm)
+    for s, k, distance in left_out:
+        name = sweeps[bench.standards[s].name][k].name
+        told.append(
+            f"{name}: this connection lies {distance:.2g} from the others, far beyond their scatter, and is left out. "
+            "Clean and tighten, and read it again."
+        )
+    return kept, told
+
+
+def _single_points(name: str, frequencies: FloatArray) -> str:
+    """Say which single points were left out."""
+    some = ", ".join(f"{f / 1e9:.4g}" for f in frequencies[:4]) + (", …" if frequencies.size > 4 else "")
+    return (
+        f"{name}: {frequencies.size} single point{'s' if frequencies.size > 1 else ''} ({some} GHz) left out: "
+        "off from their neighbours in this connection alone, as beside an analyser's band edges"
+    )
+
+
+def _repeatability(observed: Sequence[Observed], family: Family, reference_ohm: float) -> Repeatability:
+    """Measure how connections scatter, or assume it where nothing was connected twice."""
+    if any(one.connections > 1 for one in observed):
+        return pooled_repeatability(observed, reference_ohm)
+    noise = float(np.median([noise_of(without_delay(one.frequency_hz, one.gamma)) for one in observed]))
+    return assumed_repeatability(observed, family.repeatability, np.inf, noise)
+
+
+def _cautions(
+    bench: Bench, observed: Sequence[Observed], scatter: Repeatability, family: Family
+) -> list[str]:
+    """Say loudly what had to be assumed."""
+    cautions = []
+    if bench.residual is None:
+        cautions.append(
+            "no analyser residuals are stated: those of a modest calibration are assumed "
+            "(36 … 32 dB directivity, 34 … 28 dB source match, 0.1 … 0.2 dB tracking; common practice, no source). "
+            "State yours under [analyser.residual]."
+        )
+    if not scatter.measured:
+        resistance, shift, _ = family.repeatability
+        cautions.append(
+            f"one connection of each standard says nothing about how well it repeats: {1e3 * resistance:.0f} mΩ and "
+            f"{shift:g} ps (one standard deviation) are assumed (common practice, no source). "
+            "Connect each standard at least three times."
+        )
+    elif any(one.connections == 1 for one in observed):
+        names = ", ".join(one.name for one in observed if one.connections == 1)
+        cautions.append(
+            f"one connection only of {names}: the scatter of the other standards is taken for it."
+        )
+    if family.name == "":
+        cautions.append(
+            f"the connector '{bench.connector}' is not in the table of families: no limit is set by its next mode."
+        )
+    return cautions
