@@ -49,6 +49,7 @@ ASSUMED: dict[str, tuple[float, float]] = {
     "l3": (0.0, 100.0),
     "inductance_ph": (0.0, 500.0),
     "capacitance_ff": (40.0, 40.0),
+    "load delay": (30.0, 30.0),
 }
 """Weak evidence, value and standard uncertainty, on what readings tell poorly (common practice, no source).
 
@@ -99,6 +100,7 @@ def build_problem(
     by_name = {one.name: wish for one, wish in zip(observed, wishes, strict=True)}
     columns = []
     top = max(float(one.frequency_hz[-1]) for one in observed)
+    lent = {wish.same_offset_as for wish in wishes}
     kinds = {one.name: (one.kind, shape) for one, shape in zip(observed, shapes, strict=True)}
     for one in observed:
         own = []
@@ -111,7 +113,17 @@ def build_problem(
                 kind, shape = kinds[owner]
                 places[owner, parameter.name] = len(quantities)
                 quantities.append(
-                    _quantity(owner, kind, shape, parameter, by_name[owner], starts, top, reference_ohm)
+                    _quantity(
+                        owner,
+                        kind,
+                        shape,
+                        parameter,
+                        by_name[owner],
+                        starts,
+                        top,
+                        reference_ohm,
+                        owner in lent,
+                    )
                 )
             own.append(places[owner, parameter.name])
         columns.append(tuple(own))
@@ -127,6 +139,7 @@ def _quantity(
     starts: Mapping[str, float],
     top_hz: float,
     reference_ohm: float,
+    shared: bool,
 ) -> Quantity:
     """Decide on the role of one parameter."""
     name = parameter.name
@@ -134,13 +147,16 @@ def _quantity(
     if name in wish.given:
         value, u = wish.given[name]
         return Quantity(owner, parameter, "held" if u is None else "given", value, u, scale)
-    used = name in SHAPES[kind][shape]
+    used = name in SHAPES[kind][shape] or (shared and name in LINE)
     if name == "offset_z0_ohm":
         if not used:
             return Quantity(owner, parameter, "held", reference_ohm)
         return Quantity(owner, parameter, "assumed", reference_ohm, 0.02 * reference_ohm, scale)
     if not used:
         return Quantity(owner, parameter, "unused", 0.0)
+    if kind == "load" and name == "offset_delay_ps":
+        # Of a good load the readings show next to nothing of its length.
+        return Quantity(owner, parameter, "assumed", *ASSUMED["load delay"], scale)
     if name in ASSUMED:
         value, u = ASSUMED[name]
         return Quantity(owner, parameter, "assumed", value, u * size_at(parameter, top_hz), scale)

@@ -75,12 +75,12 @@ def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> Prepared:
     warnings = list(
         verify_standards({entry.name: (entry.kind, sweeps[entry.name]) for entry in bench.standards})
     )
-    observed, left_out = _observe(bench, sweeps)
+    family = family_of(bench.connector)
+    observed, left_out = _observe(bench, sweeps, family)
     wishes = tuple(
         Wish({name: (given.value, given.u) for name, given in entry.given.items()}, entry.same_offset_as)
         for entry in bench.standards
     )
-    family = family_of(bench.connector)
     scatter = _repeatability(observed, family, bench.reference_ohm)
     residual = bench.residual if bench.residual is not None else ASSUMED_RESIDUAL
     warnings += left_out + _cautions(bench, observed, scatter, family)
@@ -103,7 +103,9 @@ def sources_of(
     return (*analyser_sources(observed, residual), *connection_sources(observed, scatter, reference_ohm))
 
 
-def _observe(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> tuple[list[Observed], list[str]]:
+def _observe(
+    bench: Bench, sweeps: Mapping[str, Sequence[Sweep]], family: Family
+) -> tuple[list[Observed], list[str]]:
     """Reduce the readings of each standard; leave out what does not belong, and say so."""
     observed, told = [], []
     for entry in bench.standards:
@@ -123,7 +125,7 @@ def _observe(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> tuple[list[
             if row.any():
                 told.append(_single_points(sweep.name, grid[inside][row]))
         observed.append(Observed.from_readings(entry.name, entry.kind, grid[inside], screened.readings))
-    kept, left_out = without_outlying(observed, bench.reference_ohm)
+    kept, left_out = without_outlying(observed, bench.reference_ohm, family.repeatability)
     for s, k, distance in left_out:
         name = sweeps[bench.standards[s].name][k].name
         told.append(
@@ -145,7 +147,7 @@ def _single_points(name: str, frequencies: FloatArray) -> str:
 def _repeatability(observed: Sequence[Observed], family: Family, reference_ohm: float) -> Repeatability:
     """Measure how connections scatter, or assume it where nothing was connected twice."""
     if any(one.connections > 1 for one in observed):
-        return pooled_repeatability(observed, reference_ohm)
+        return pooled_repeatability(observed, reference_ohm, family.repeatability)
     noise = float(np.median([noise_of(without_delay(one.frequency_hz, one.gamma)) for one in observed]))
     return assumed_repeatability(observed, family.repeatability, np.inf, noise)
 

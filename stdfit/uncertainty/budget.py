@@ -10,6 +10,9 @@ from stdfit.uncertainty.push import Pushed
 from stdfit.uncertainty.region import effective_freedom, radius_95, student
 from stdfit.uncertainty.sources import SmoothSource, Source
 
+UNREACHED = 1e-14
+"""Smallest eigenvalue of a normal matrix, against its largest, that is more than rounding."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Share:
@@ -71,11 +74,16 @@ def outer(image: FloatArray) -> FloatArray:
 
 
 def inverse_of(normal: FloatArray) -> FloatArray:
-    """Return inverses of a stack of normal matrices, scaled first; unreachable directions get none."""
+    """Return inverses of a stack of normal matrices, scaled first.
+
+    A direction that neither readings nor evidence reach gets a variance that is large, not zero.
+    """
     size = np.sqrt(np.maximum(np.einsum("...ii->...i", normal), 0.0))
     size = np.where(size > 0.0, size, 1.0)
     scale = size[..., :, None] * size[..., None, :]
-    return np.asarray(np.linalg.pinv(normal / scale, rcond=1e-13, hermitian=True) / scale)
+    value, vector = np.linalg.eigh(normal / scale)
+    value = np.maximum(value, UNREACHED * value[..., -1:])
+    return np.asarray((vector / value[..., None, :]) @ np.swapaxes(vector, -1, -2) / scale)
 
 
 def radius(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:

@@ -19,6 +19,9 @@ PARTS = ("contact resistance", "plane shift", "contact reactance")
 ROUNDS = 60
 """Rounds of expectation and maximisation; a part that the readings see well settles in three."""
 
+SHOWN = 0.3
+"""Degrees of freedom below which the readings say nothing of a part."""
+
 SMOOTHING = 40
 """The leftover scatter is averaged over 1/SMOOTHING of the sweep."""
 
@@ -78,7 +81,9 @@ def assumed_repeatability(
     return Repeatability(np.array(sd), np.full(len(PARTS), freedom), False, nothing, noise)
 
 
-def pooled_repeatability(observed: Sequence[Observed], reference_ohm: float) -> Repeatability:
+def pooled_repeatability(
+    observed: Sequence[Observed], reference_ohm: float, assumed_sd: Sequence[float]
+) -> Repeatability:
     """Estimate the scatter of connections from all standards that were connected more than once.
 
     Parameters
@@ -86,6 +91,8 @@ def pooled_repeatability(observed: Sequence[Observed], reference_ohm: float) -> 
     observed : sequence of Observed
         At least one with two connections.
     reference_ohm : float
+    assumed_sd : sequence of three floats
+        Stated default of each part, for parts that no repeated standard shows.
 
     Notes
     -----
@@ -122,9 +129,10 @@ def pooled_repeatability(observed: Sequence[Observed], reference_ohm: float) -> 
         variance = np.maximum(gathered / total, 1e-16)
     told = np.clip(1.0 - spread / variance, 0.0, 1.0)
     freedom = np.array([contrasts for contrasts, _, _ in systems]) @ told
+    shown = freedom > SHOWN
     return Repeatability(
-        sd=np.sqrt(variance),
-        freedom=np.maximum(freedom, 1.0),
+        sd=np.where(shown, np.sqrt(variance), np.asarray(assumed_sd)),
+        freedom=np.where(shown, np.maximum(freedom, 1.0), np.inf),
         measured=True,
         leftover=tuple(_leftover(one, variance, floor, reference_ohm) for one in observed),
         noise=noise,

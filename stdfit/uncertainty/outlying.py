@@ -14,7 +14,9 @@ FEWEST = 3
 """Connections that a standard must have before one of them can be told to be the odd one."""
 
 
-def outlying_connection(observed: Sequence[Observed], reference_ohm: float) -> tuple[int, int] | None:
+def outlying_connection(
+    observed: Sequence[Observed], reference_ohm: float, assumed_sd: Sequence[float]
+) -> tuple[int, int] | None:
     """Return (standard, connection) of the connection that least belongs with the others, or None.
 
     The power of a connection's distance from the mean of the standard's other connections is compared with
@@ -27,6 +29,8 @@ def outlying_connection(observed: Sequence[Observed], reference_ohm: float) -> t
     ----------
     observed : sequence of Observed
     reference_ohm : float
+    assumed_sd : sequence of three floats
+        Scatter of the lumped parts that is assumed where the readings show none.
     """
     tests = sum(one.connections for one in observed if one.connections >= FEWEST)
     worst, place = 1.0, None
@@ -37,7 +41,7 @@ def outlying_connection(observed: Sequence[Observed], reference_ohm: float) -> t
         distances = np.mean(np.abs(one.deviations) ** 2, axis=1)
         k = int(np.argmax(distances))
         rest = [*observed[:s], one.without(k), *observed[s + 1 :]]
-        scatter = pooled_repeatability(rest, reference_ohm)
+        scatter = pooled_repeatability(rest, reference_ohm, assumed_sd)
         expected, freedom = _expected_power(rest[s], scatter, s, reference_ohm)
         others = one.connections - 1
         # Its distance from the mean of the others is K/(K−1) times that from the mean of all.
@@ -65,7 +69,7 @@ def _bar(freedom: float, level: float) -> float:
 
 
 def without_outlying(
-    observed: Sequence[Observed], reference_ohm: float
+    observed: Sequence[Observed], reference_ohm: float, assumed_sd: Sequence[float]
 ) -> tuple[list[Observed], list[tuple[int, int, float]]]:
     """Leave out connections until none stands out; return what is left and what was left out.
 
@@ -79,7 +83,7 @@ def without_outlying(
     kept = list(observed)
     numbers = [list(range(one.connections)) for one in observed]
     left_out = []
-    while (found := outlying_connection(kept, reference_ohm)) is not None:
+    while (found := outlying_connection(kept, reference_ohm, assumed_sd)) is not None:
         s, k = found
         distance = float(np.sqrt(np.mean(np.abs(kept[s].deviations[k]) ** 2)))
         left_out.append((s, numbers[s].pop(k), distance))
