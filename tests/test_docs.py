@@ -1,0 +1,228 @@
+"""The pages: their code runs, their files parse, their commands exist, their links lead somewhere."""
+
+import re
+import shlex
+import shutil
+import tomllib
+from pathlib import Path
+
+import pytest
+
+from stdfit import kit_text, limits
+from stdfit.base.errors import BenchError
+from stdfit.cli import main
+from stdfit.data.bench import parse_bench
+from stdfit.fitting.roles import ASSUMED
+from stdfit.writing.kit_reading import parse_kit
+
+ROOT = Path(__file__).parents[1]
+FILES = ROOT / "docs" / "files.md"
+PAGES = [ROOT / "README.md", ROOT / "DEVELOPERS.md", ROOT / "kits" / "README.md"]
+PAGES += sorted((ROOT / "docs").glob("*.md"))
+FENCE = re.compile(r"^```([a-z]*)[^\n]*\n(.*?)^```\s*$", re.MULTILINE | re.DOTALL)
+SHELLS = ("sh", "bash", "console")
+
+
+@pytest.fixture(params=PAGES, ids=lambda path: path.relative_to(ROOT).as_posix())
+def page(request):
+    return request.param
+
+
+def blocks(path, *languages):
+    """Return (line, text) of the fenced blocks in these languages."""
+    text = path.read_text(encoding="utf-8")
+    return [
+        (text.count("\n", 0, found.start()) + 1, found[2])
+        for found in FENCE.finditer(text)
+        if found[1] in languages
+    ]
+
+
+def test_python_blocks_run_in_order(page, tmp_path, monkeypatch):
+    shutil.copytree(ROOT / "kits", tmp_path / "kits")
+    monkeypatch.chdir(tmp_path)
+    names = {"__name__": "page"}
+    for line, text in blocks(page, "python"):
+        # Padding makes the line of a fault the line of the page.
+        exec(compile("\n" * line + text, str(page), "exec"), names)
+
+
+def bench_folder(folder, text):
+    """Make every file that a bench text names, so that it can be parsed."""
+    for standard in tomllib.loads(text)["standard"]:
+        wanted = [name.replace("*", "1") for name in standard["readings"]]
+        for name in [*wanted, *([standard["from_kit"]] if "from_kit" in standard else [])]:
+            (folder / name).touch()
+    return folder / "bench.toml"
+
+
+def test_toml_blocks_are_what_they_call_themselves(page, tmp_path):
+    for number, (line, text) in enumerate(blocks(page, "toml")):
+        values = tomllib.loads(text)
+        if str(values.get("format", "")).startswith("stdfit-kit/"):
+            parse_kit(text, f"{page.name}, line {line}")
+        elif "format" in values:
+            folder = tmp_path / str(number)
+            folder.mkdir()
+            parse_bench(text, bench_folder(folder, text))
+        else:
+            assert set(values) <= {"kit", "goal", "analyser", "standard"}, f"{page.name}, line {line}"
+
+
+def command_lines(text):
+    """Return the typed lines: those after '$ ' where there are any, else all."""
+    lines = text.replace("\\\n", " ").splitlines()
+    typed = [line.removeprefix("$ ") for line in lines if line.startswith("$ ")]
+    return typed or lines
+
+
+def stdfit_calls(line):
+    """Return the arguments of each call of stdfit in a line."""
+    scanner = shlex.shlex(line, posix=True, punctuation_chars=True)
+    scanner.whitespace_split = True
+    calls, words = [], []
+    for word in [*scanner, ";"]:
+        if set(word) <= set(";&|()<>"):
+            if words and Path(words[0]).name == "stdfit":
+                calls.append(words[1:])
+            words = []
+        else:
+            words.append(word)
+    return calls
+
+
+def help_of(capsys, *command):
+    with pytest.raises(SystemExit) as stop:
+        main([*command, "--help"])
+    assert stop.value.code == 0, f"no such command: stdfit {' '.join(command)}"
+    return capsys.readouterr().out
+
+
+def test_commands_and_options_exist(page, capsys):
+    for line, text in blocks(page, *SHELLS):
+        for typed in command_lines(text):
+            for call in stdfit_calls(typed):
+                where = f"{page.name}, block at line {line}: {typed}"
+                command = [word for word in call[:1] if not word.startswith("-")]
+                known = set(re.findall(r"(?<![\w-])--?[a-z][a-z-]*", help_of(capsys, *command)))
+                options = {word.partition("=")[0] for word in call if re.match(r"--?[a-z]", word)}
+                assert options <= known, where
+
+
+@pytest.mark.parametrize(
+    "typed, calls",
+    [
+        ("stdfit fit . -o kit.toml  # why", [["fit", ".", "-o", "kit.toml"]]),
+        (".venv/bin/stdfit show 'a b' | less", [["show", "a b"]]),
+        ("cd x && stdfit demo; stdfit new x > out", [["demo"], ["new", "x"]]),
+        ("pip install stdfit", []),
+    ],
+)
+def test_calls_are_found(typed, calls):
+    assert stdfit_calls(typed) == calls
+
+
+def anchors(path):
+    """Return the anchors of a page's headings."""
+    text = FENCE.sub("", path.read_text(encoding="utf-8"))
+    titles = re.findall(r"^#+ +(.+?)\s*$", text, re.MULTILINE)
+    return {re.sub(r"[^\w\- ]", "", title.lower()).replace(" ", "-") for title in titles}
+
+
+def test_links_lead_to_files_and_headings(page):
+    text = FENCE.sub("", page.read_text(encoding="utf-8"))
+    for target in re.findall(r"\]\(([^)\s]+)\)", text):
+        if re.match(r"[a-z]+:", target):
+            continue
+        path, _, anchor = target.partition("#")
+        file = page.parent / path if path else page
+        assert file.exists(), target
+        if anchor:
+            assert anchor in anchors(file), target
+
+
+FULL, SMALLEST, KNOWN = (text for _, text in blocks(FILES, "toml")[:3])
+
+
+def known_keys(text, before, folder):
+    """Return the keys of a table, from the answer to one that no table has."""
+    with pytest.raises(BenchError) as refused:
+        parse_bench(text.replace(before, "qqqqqqqq = 1\n" + before, 1), bench_folder(folder, text))
+    assert refused.value.mend.startswith("use one of: ")
+    return refused.value.mend.removeprefix("use one of: ").split(", ")
+
+
+@pytest.mark.parametrize(
+    "before",
+    ["[kit]", "name =", "within =", "state =", "directivity_db", "kind =", "given.offset_delay_ps"],
+)
+def test_every_key_of_a_bench_file_is_described(before, tmp_path):
+    text = FULL
+    if before.startswith("given."):
+        text = FULL.replace(before, "given.qqqqqqqq = 1\n" + before)
+        with pytest.raises(BenchError) as refused:
+            parse_bench(text, bench_folder(tmp_path, text))
+        keys = refused.value.mend.removeprefix("use one of: ").split(", ")
+    else:
+        keys = known_keys(FULL, before, tmp_path)
+    page = FILES.read_text(encoding="utf-8")
+    assert len(keys) >= 2
+    for key in keys:
+        assert re.search(rf"[`.\[]{key}[`\].]", page), key
+
+
+def test_every_key_of_a_kit_file_is_described():
+    kit = ROOT / "kits" / "boathouse-loft-sma" / "kit.toml"
+    page = FILES.read_text(encoding="utf-8")
+
+    def walk(value):
+        for item in value if isinstance(value, list) else [value]:
+            if isinstance(item, dict):
+                for key, inner in item.items():
+                    yield key
+                    yield from walk(inner)
+
+    keys = set(walk(tomllib.loads(kit.read_text(encoding="utf-8"))))
+    assert {"format", "correlation_of_parts", "lower_triangles", "sha256"} <= keys
+    for key in keys:
+        assert re.search(rf"[`.]{key}`", page), key
+
+
+def test_defaults_of_a_bench_file(tmp_path):
+    bench = parse_bench(SMALLEST, bench_folder(tmp_path, SMALLEST))
+    assert (bench.reference_ohm, bench.within, bench.highest_hz, bench.residual) == (50.0, 0.02, None, None)
+    (only,) = bench.standards
+    assert (only.port, only.polynomial, dict(only.given), only.same_offset_as) == (1, "chosen", {}, None)
+
+
+def test_the_full_example_says_what_it_looks_like(tmp_path):
+    bench = parse_bench(FULL, bench_folder(tmp_path, FULL))
+    first, short, load = bench.standards
+    assert (bench.highest_hz, bench.date, first.polynomial, load.port) == (4e9, "2024-05-01", "even", 2)
+    assert (first.given["offset_z0_ohm"].u, short.given["offset_delay_ps"].u) == (None, 0.5)
+    known = parse_bench(KNOWN, bench_folder(tmp_path, KNOWN)).standards[0]
+    assert (known.from_kit, known.standard) == (tmp_path / "reference.toml", "open")
+
+
+def test_assumed_evidence_stands_in_the_table_of_given():
+    rows = re.findall(
+        r"^\| `(\w+)` \|[^|]*\|[^|]*\|([^|]*)\|$", FILES.read_text(encoding="utf-8"), re.MULTILINE
+    )
+    told = {name: found.groups() for name, text in rows if (found := re.search(r"(\d+) ± (\d+)(?! %)", text))}
+    names = {"load delay": "offset_delay_ps"}
+    assumed = {names.get(name, name): values for name, values in ASSUMED.items()}
+    assert {name: tuple(map(float, values)) for name, values in told.items()} == assumed
+
+
+def test_the_whole_kit_file_is_consistent():
+    text = blocks(FILES, "toml")[-1][1]
+    kit = parse_kit(text, FILES)
+    assert kit_text(kit) == text
+    for rung in kit.ladder:
+        ((whole, each),) = limits(kit, [rung.within])
+        assert (whole.limit_hz, tuple(one.limit_hz for one in each)) == (rung.kit_hz, rung.standards_hz)
+    assert kit.limit.reason == limits(kit, [kit.within])[0][0].reason
+    # V11, V21, V22: variance of R, covariance, variance of L.
+    assert kit.shares[1].covariances.tolist() == [[[0.0004, 0.02], [0.02, 4.0]]]
+    # Largest over the lengths: √(0.04 + 0.0004) Ω and √(225 + 4) pH.
+    assert [p.u for p in kit.definitions[0].parameters if p.of] == pytest.approx([0.2010, 15.1327], abs=1e-4)
