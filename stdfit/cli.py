@@ -6,7 +6,8 @@ Nothing heavy is imported before it is needed, so that help and wrong usage answ
 import argparse
 import os
 import sys
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING, NoReturn
 
@@ -76,6 +77,15 @@ def _parser() -> _Parser:
     limit = add("limit", "print the frequency-validity limit of kit and standards, with reasons", _limit)
     limit.add_argument("kit", metavar="KIT", type=Path)
     limit.add_argument("--within", metavar="X", type=_tolerance, nargs="+", help="tolerances (the kit's own)")
+
+    trials = add("trials", "score the bounds on simulated benches with a known truth", _trials)
+    trials.add_argument(
+        "like", metavar="BENCH", type=Path, nargs="?", help="simulate benches like this one (all families)"
+    )
+    trials.add_argument("--benches", metavar="N", type=_count, default=25, help="benches of each family (25)")
+    trials.add_argument("--family", metavar="NAME", action="append", help="only this family; may be repeated")
+    trials.add_argument("--within", metavar="X", type=_tolerance, default=0.02, help="tolerance (0.02)")
+    trials.add_argument("--seed", metavar="S", type=int, default=1, help="seed of all chance (1)")
     return parser
 
 
@@ -275,6 +285,38 @@ def _new(asked: argparse.Namespace) -> int:
     print(f"bench file: {target}")
     print(f"next: look at the lines marked '<--' in it, then: stdfit fit {asked.folder}")
     return DONE
+
+
+def _trials(asked: argparse.Namespace) -> int:
+    from dataclasses import asdict
+
+    from stdfit.trials.like import scenario_like
+    from stdfit.trials.study import run, study_table
+
+    like = None if asked.like is None else scenario_like(asked.like)
+    with _progress("benches") as tell:
+        rows = run(
+            asked.family or [], asked.benches, seed=asked.seed, within=asked.within, like=like, tell=tell
+        )
+    if asked.json:
+        _print_json({"families": [asdict(row) for row in rows]})
+    else:
+        print(study_table(rows))
+    return DONE
+
+
+@contextmanager
+def _progress(what: str) -> Iterator[Callable[[int, int], None] | None]:
+    """Show a progress bar on a terminal, and nothing in a pipe."""
+    if not sys.stderr.isatty():
+        yield None
+        return
+    from rich.console import Console
+    from rich.progress import Progress
+
+    with Progress(console=Console(stderr=True), transient=True) as bar:
+        task = bar.add_task(what, total=None)
+        yield lambda done, total: bar.update(task, completed=done, total=total)
 
 
 def _demo(asked: argparse.Namespace) -> int:

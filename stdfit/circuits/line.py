@@ -12,7 +12,7 @@ LOSS_FREQUENCY_HZ = 1e9
 
 @dataclass(frozen=True, slots=True, eq=False)
 class SeenThroughLine:
-    """Reflection at the near end of a line and its derivatives, each of shape (n,).
+    """Reflection at the near end of a line and its derivatives, each of shape (..., n).
 
     Attributes
     ----------
@@ -35,9 +35,9 @@ def see_through_line(
     termination: ComplexArray,
     frequency_hz: FloatArray,
     *,
-    delay_s: float,
-    loss_ohm_per_s: float,
-    z0_ohm: float,
+    delay_s: FloatArray | float,
+    loss_ohm_per_s: FloatArray | float,
+    z0_ohm: FloatArray | float,
     reference_ohm: float,
 ) -> SeenThroughLine:
     """Return the reflection of a termination behind an offset line, with derivatives.
@@ -46,15 +46,15 @@ def see_through_line(
 
     Parameters
     ----------
-    termination : complex array of shape (n,)
+    termination : complex array of shape (..., n)
         Reflection of the termination with respect to `reference_ohm`.
     frequency_hz : array of shape (n,)
         Frequency f in Hz; at f = 0 the line has no effect.
-    delay_s : float
+    delay_s : float or array of shape (..., 1)
         One-way delay τ in s.
-    loss_ohm_per_s : float
+    loss_ohm_per_s : float or array of shape (..., 1)
         Offset loss r at 1 GHz in Ω/s, skin effect only.
-    z0_ohm : float
+    z0_ohm : float or array of shape (..., 1)
         Impedance Z0 that the line would have without loss, in Ω.
     reference_ohm : float
         Reference impedance of all reflections, in Ω.

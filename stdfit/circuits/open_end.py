@@ -14,15 +14,15 @@ def open_end(
     ----------
     frequency_hz : array of shape (n,)
         Frequency in Hz.
-    capacitance : array of shape (4,)
+    capacitance : array of shape (..., 4)
         C0 in F, C1 in F/Hz, C2 in F/Hz², C3 in F/Hz³.
     reference_ohm : float
         Reference impedance in Ω.
 
     Returns
     -------
-    gamma : complex array of shape (n,)
-    by_coefficient : complex array of shape (n, 4)
+    gamma : complex array of shape (..., n)
+    by_coefficient : complex array of shape (..., n, 4)
 
     Examples
     --------
@@ -33,7 +33,7 @@ def open_end(
     """
     powers: FloatArray = frequency_hz[:, None] ** np.arange(4)
     susceptance = 2j * np.pi * frequency_hz
-    y = susceptance * (powers @ capacitance) * reference_ohm
+    y = susceptance * (capacitance @ powers.T) * reference_ohm
     gamma: ComplexArray = (1.0 - y) / (1.0 + y)
     by_y: ComplexArray = -2.0 * reference_ohm * susceptance / (1.0 + y) ** 2
-    return gamma, np.asarray(by_y[:, None] * powers)
+    return gamma, np.asarray(by_y[..., None] * powers)

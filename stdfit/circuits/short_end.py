@@ -14,15 +14,15 @@ def short_end(
     ----------
     frequency_hz : array of shape (n,)
         Frequency in Hz.
-    inductance : array of shape (4,)
+    inductance : array of shape (..., 4)
         L0 in H, L1 in H/Hz, L2 in H/Hz², L3 in H/Hz³.
     reference_ohm : float
         Reference impedance in Ω.
 
     Returns
     -------
-    gamma : complex array of shape (n,)
-    by_coefficient : complex array of shape (n, 4)
+    gamma : complex array of shape (..., n)
+    by_coefficient : complex array of shape (..., n, 4)
 
     Examples
     --------
@@ -33,7 +33,7 @@ def short_end(
     """
     powers: FloatArray = frequency_hz[:, None] ** np.arange(4)
     reactance = 2j * np.pi * frequency_hz
-    z = reactance * (powers @ inductance) / reference_ohm
+    z = reactance * (inductance @ powers.T) / reference_ohm
     gamma: ComplexArray = (z - 1.0) / (z + 1.0)
     by_z: ComplexArray = 2.0 / reference_ohm * reactance / (z + 1.0) ** 2
-    return gamma, np.asarray(by_z[:, None] * powers)
+    return gamma, np.asarray(by_z[..., None] * powers)

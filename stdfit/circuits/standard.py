@@ -76,8 +76,9 @@ def reflection(
     ----------
     kind : {"open", "short", "load"}
         The kind of standard.
-    values : sequence of p floats
-        The parameters in the trade's units, in the order of ``PARAMETERS[kind]``.
+    values : array of shape (..., p)
+        The parameters in the trade's units, in the order of ``PARAMETERS[kind]``; several sets at once are
+        allowed.
     frequency_hz : array of shape (n,)
         Frequency in Hz.
     reference_ohm : float
@@ -85,30 +86,26 @@ def reflection(
 
     Returns
     -------
-    gamma : complex array of shape (n,)
-    jacobian : complex array of shape (n, p)
+    gamma : complex array of shape (..., n)
+    jacobian : complex array of shape (..., n, p)
         dΓ by each parameter, per trade unit.
     """
     units = np.array([parameter.si for parameter in PARAMETERS[kind]])
     si = np.asarray(values, dtype=float) * units
     if kind == "open":
-        end, by_end = open_end(frequency_hz, si[3:], reference_ohm)
+        end, by_end = open_end(frequency_hz, si[..., 3:], reference_ohm)
     elif kind == "short":
-        end, by_end = short_end(frequency_hz, si[3:], reference_ohm)
+        end, by_end = short_end(frequency_hz, si[..., 3:], reference_ohm)
     else:
-        end, by_end = load(frequency_hz, float(si[3]), float(si[4]), float(si[5]), reference_ohm)
+        end, by_end = load(frequency_hz, si[..., 3:4], si[..., 4:5], si[..., 5:6], reference_ohm)
     seen = see_through_line(
         end,
         frequency_hz,
-        delay_s=float(si[0]),
-        loss_ohm_per_s=float(si[1]),
-        z0_ohm=float(si[2]),
+        delay_s=si[..., 0:1],
+        loss_ohm_per_s=si[..., 1:2],
+        z0_ohm=si[..., 2:3],
         reference_ohm=reference_ohm,
     )
-    jacobian = np.empty((frequency_hz.size, si.size), dtype=complex)
-    jacobian[:, 0] = seen.by_delay
-    jacobian[:, 1] = seen.by_loss
-    jacobian[:, 2] = seen.by_z0
-    jacobian[:, 3:] = seen.by_termination[:, None] * by_end
-    jacobian *= units
+    by_offset = np.stack([seen.by_delay, seen.by_loss, seen.by_z0], axis=-1)
+    jacobian = np.concatenate([by_offset, seen.by_termination[..., None] * by_end], axis=-1) * units
     return seen.gamma, jacobian

@@ -11,7 +11,8 @@ from stdfit.fitting.solve import least_squares
 from stdfit.pipeline.prepare import Prepared
 from stdfit.uncertainty.budget import shares_of
 from stdfit.uncertainty.push import push
-from stdfit.uncertainty.sources import reading_variance
+from stdfit.uncertainty.region import CIRCULAR
+from stdfit.uncertainty.sources import SmoothSource, reading_variance
 from stdfit.validity.choose import Choice, choose, thin, weights_for
 from stdfit.validity.define import Settled
 from stdfit.validity.misfit import expected_power, misfit
@@ -104,4 +105,20 @@ def settle(prepared: Prepared, choices: Sequence[Choice]) -> Settled:
                 )[0],
             )
         )
-    return Settled(problem, values, tuple(bounded), solution, tuple(shares), tuple(choices), tuple(misfits))
+    wrong = SmoothSource(
+        "misfit",
+        tuple(
+            np.interp(one.frequency_hz, *own) / CIRCULAR + 0j
+            for one, own in zip(observed, misfits, strict=True)
+        ),
+        common=False,
+    )
+    repushed = [
+        push(design, weight, one.gamma - gamma, one.frequency_hz, span, [wrong], k, [one.frequency_hz.size])
+        for k, ((gamma, design), weight, one) in enumerate(zip(models, weights, observed, strict=True))
+    ]
+    _, (misfit_stack,) = shares_of(repushed, [wrong], precision, [])
+    misfit_share = replace(misfit_stack, covariances=misfit_stack.covariances[:, 0])
+    return Settled(
+        problem, values, tuple(bounded), solution, tuple(shares), misfit_share, tuple(choices), tuple(misfits)
+    )

@@ -8,12 +8,18 @@ import numpy as np
 from stdfit.base.arrays import FloatArray
 from stdfit.base.records import Sweep
 from stdfit.data.bench_records import Bench, Given, StandardEntry, StatedResidual
-from stdfit.pipeline import characterise
+from stdfit.fitting.solve import inverse_of_normal
+from stdfit.pipeline import choose_all, kit_of, prepare, settle
 from stdfit.trials.bench import SimulatedBench
-from stdfit.validity.kit import Kit, curve
+from stdfit.uncertainty.budget import Share, radius
+from stdfit.validity.define import Settled
+from stdfit.validity.kit import Definition, Kit, curve
 
 POINTS = 60
 """Points of each curve that are scored."""
+
+LIMIT_POINTS = 200
+"""Points below a limit at which the error must keep within the tolerance."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -23,9 +29,14 @@ class Score:
     Attributes
     ----------
     standard : str
-    error, bound : arrays of shape (m,)
-        |fitted − true| and its bound, over the fit range.
-    limit_hz : float
+    error, bound, alone : arrays of shape (m,)
+        |fitted − true|, its bound, and the bound that the fit's own covariance alone would claim, over the fit
+        range.
+    quantities : tuple of bool
+        For each determined quantity (resistance, and the sum that the readings fix) whether its 95 % interval
+        covers the truth.
+    limit : float
+        The validity limit as part of the last reading's frequency.
     limit_true : bool
         Whether the error keeps within the tolerance all the way up to the limit.
     """
@@ -33,7 +44,9 @@ class Score:
     standard: str
     error: FloatArray
     bound: FloatArray
-    limit_hz: float
+    alone: FloatArray
+    quantities: tuple[bool, ...]
+    limit: float
     limit_true: bool
 
     @property
@@ -41,9 +54,25 @@ class Score:
         """Part of the points at which the bound covers the truth."""
         return float(np.mean(self.error <= self.bound))
 
+    @property
+    def inside_alone(self) -> float:
+        """Part of the points at which the fit's own covariance would have covered it."""
+        return float(np.mean(self.error <= self.alone))
 
-def bench_of(simulated: SimulatedBench, within: float = 0.02) -> tuple[Bench, dict[str, list[Sweep]]]:
-    """Return the bench and the sweeps that a user with these readings would have."""
+
+def bench_of(
+    simulated: SimulatedBench, within: float = 0.02, *, stated: bool = True
+) -> tuple[Bench, dict[str, list[Sweep]]]:
+    """Return the bench and the sweeps that a user with these readings would have.
+
+    Parameters
+    ----------
+    simulated : SimulatedBench
+    within : float
+        Tolerance.
+    stated : bool
+        Whether the user states the analyser's residuals.
+    """
     f = simulated.frequency_hz
     told = simulated.residual
     residual = StatedResidual(
@@ -78,26 +107,85 @@ def bench_of(simulated: SimulatedBench, within: float = 0.02) -> tuple[Bench, di
         within=within,
         highest_hz=None,
         state="corrected",
-        residual=residual,
+        residual=residual if stated else None,
         standards=entries,
     )
     return bench, sweeps
 
 
-def score(simulated: SimulatedBench, within: float = 0.02) -> tuple[Kit, list[Score]]:
+def score(simulated: SimulatedBench, within: float = 0.02, *, stated: bool = True) -> tuple[Kit, list[Score]]:
     """Characterise a simulated bench and compare each standard with its truth."""
-    bench, sweeps = bench_of(simulated, within)
-    kit = characterise(bench, sweeps, created="2000-01-01")
+    bench, sweeps = bench_of(simulated, within, stated=stated)
+    prepared = prepare(bench, sweeps)
+    settled = settle(prepared, choose_all(prepared))
+    kit = kit_of(prepared, settled, created="2000-01-01")
+    alone = fit_alone(settled)
     scores = []
-    for definition in kit.definitions:
+    for k, definition in enumerate(kit.definitions):
         grid = np.linspace(definition.fit_low_hz, definition.fit_top_hz, POINTS)
         gamma, bound = curve(kit, definition, grid)
-        error = np.abs(gamma - simulated.truth_at(definition.name, grid))
-        limit_hz = definition.limit.limit_hz
-        true = True
-        if limit_hz > 0.0:
-            below = np.linspace(definition.read_low_hz, max(limit_hz, definition.read_low_hz), 200)
-            fitted, _ = curve(kit, definition, below)
-            true = bool(np.all(np.abs(fitted - simulated.truth_at(definition.name, below)) <= within))
-        scores.append(Score(definition.name, error, bound, limit_hz, true))
+        _, design = settled.problem.model(k, settled.values, grid)
+        scores.append(
+            Score(
+                standard=definition.name,
+                error=np.abs(gamma - simulated.truth_at(definition.name, grid)),
+                bound=bound,
+                alone=radius(design, [alone]),
+                quantities=quantities_inside(kit, definition, simulated),
+                limit=definition.limit.limit_hz / definition.read_top_hz,
+                limit_true=limit_is_true(kit, definition, simulated, within),
+            )
+        )
     return kit, scores
+
+
+def fit_alone(settled: Settled) -> Share:
+    """Return what a plain least-squares covariance would claim: s²·(JᵀJ)⁻¹."""
+    problem = settled.problem
+    scaled = settled.values[problem.fitted] / problem.scales
+    covariance = inverse_of_normal(problem.jacobian(scaled)) * settled.solution.residual_variance
+    return Share("fit alone", np.inf, covariance[None])
+
+
+def limit_is_true(kit: Kit, definition: Definition, simulated: SimulatedBench, within: float) -> bool:
+    """Tell whether the error keeps within the tolerance up to the standard's limit."""
+    limit_hz = definition.limit.limit_hz
+    if limit_hz <= 0.0:
+        return True
+    below = np.linspace(definition.read_low_hz, max(limit_hz, definition.read_low_hz), LIMIT_POINTS)
+    fitted, _ = curve(kit, definition, below)
+    return bool(np.all(np.abs(fitted - simulated.truth_at(definition.name, below)) <= within))
+
+
+def quantities_inside(kit: Kit, definition: Definition, simulated: SimulatedBench) -> tuple[bool, ...]:
+    """Tell, for each determined quantity, whether its interval covers the truth."""
+    inside = []
+    if definition.kind == "load":
+        resistance = next(one for one in definition.parameters if one.name == "resistance_ohm")
+        inside.append(resistance.low <= true_resistance(simulated, definition.name, kit) <= resistance.high)
+    elif definition.combinations:
+        (one,) = definition.combinations
+        true = true_equivalent_delay(simulated, definition.name, definition.kind)
+        inside.append(one.low <= true <= one.high)
+    return tuple(inside)
+
+
+def true_resistance(simulated: SimulatedBench, name: str, kit: Kit) -> float:
+    """Return the true DC resistance in Ω."""
+    gamma = complex(simulated.truth_at(name, [0.0])[0])
+    return float(kit.reference_ohm * ((1.0 + gamma) / (1.0 - gamma)).real)
+
+
+def true_equivalent_delay(simulated: SimulatedBench, name: str, kind: str) -> float:
+    """Return the true delay of a full reflection in ps: the part of its phase that grows as f.
+
+    Over the lowest tenth of the sweep the phase is −4πfτ − k√f; the second term is the skin effect's, which
+    the fit gives to the loss.
+    """
+    top = float(simulated.frequency_hz[-1]) / 10.0
+    f = np.linspace(top / 50.0, top, 50)
+    gamma = simulated.truth_at(name, f)
+    phase = np.unwrap(np.angle(gamma if kind == "open" else -gamma))
+    terms = np.stack([f, np.sqrt(f)], axis=1)
+    (slope, _), *_ = np.linalg.lstsq(terms / terms[-1], phase, rcond=None)
+    return float(-1e12 * slope / terms[-1, 0] / (4.0 * np.pi))

@@ -31,6 +31,9 @@ class Settled:
     solution : Solution
     shares : tuple of Share
         Covariances of the scaled fitted quantities.
+    misfit_share : Share
+        What a model error as large as the misfit would do to the quantities. It widens the intervals of
+        parameters; a curve's bound takes the misfit as it is.
     choices : tuple of Choice
     misfits : tuple of (frequency, misfit)
     """
@@ -40,6 +43,7 @@ class Settled:
     bounded: tuple[int, ...]
     solution: Solution
     shares: tuple[Share, ...]
+    misfit_share: Share
     choices: tuple[Choice, ...]
     misfits: tuple[tuple[FloatArray, FloatArray], ...]
 
@@ -50,11 +54,11 @@ def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], t
     scale = problem.scales
     names = problem.names()
     order = tuple(names[i] for i in problem.fitted)
-    shares = tuple(
-        replace(share, covariances=share.covariances * np.outer(scale, scale)) for share in settled.shares
-    )
+    to_trade = np.outer(scale, scale)
+    shares = tuple(replace(share, covariances=share.covariances * to_trade) for share in settled.shares)
+    wrong = replace(settled.misfit_share, covariances=settled.misfit_share.covariances * to_trade)
     place = {i: k for k, i in enumerate(problem.fitted)}
-    u, u95 = expanded(np.eye(len(order)), shares) if order else (np.zeros(0), np.zeros(0))
+    u, u95 = expanded(np.eye(len(order)), [*shares, wrong]) if order else (np.zeros(0), np.zeros(0))
     definitions = []
     for s, one in enumerate(problem.observed):
         parameters = []
@@ -74,8 +78,8 @@ def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], t
                     of=names[i] if i in place else "",
                 )
             )
-        combinations = _combinations(one.kind, parameters, order, shares, problem.reference_ohm)
-        f, wrong = settled.misfits[s]
+        combinations = _combinations(one.kind, parameters, order, [*shares, wrong], problem.reference_ohm)
+        misfit_hz, misfit = settled.misfits[s]
         definitions.append(
             Definition(
                 name=one.name,
@@ -88,8 +92,8 @@ def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], t
                 fit_top_hz=settled.choices[s].top_hz,
                 parameters=tuple(parameters),
                 combinations=combinations,
-                misfit_hz=f,
-                misfit=wrong,
+                misfit_hz=misfit_hz,
+                misfit=misfit,
                 limit=Limit(0.0, 0.0, ""),
                 notes=_notes(one.kind, parameters, combinations, settled.solution),
                 tried=settled.choices[s].tried,

@@ -53,7 +53,7 @@ def checked(kit: Kit, path: Path | str) -> Kit:
     KitError
         With the key of what cannot be.
     """
-    for faults in (_whole(kit), _covariances(kit), _definitions(kit), _ladder(kit), _curves(kit)):
+    for faults in (_whole(kit), _covariances(kit), _definitions(kit), _limits(kit), _curves(kit)):
         for key, what in faults:
             raise KitError(what, MEND, file=path, key=key)
     return kit
@@ -71,8 +71,6 @@ def _whole(kit: Kit) -> Faults:
         yield "source", "the kit holds no source of uncertainty"
     if not np.isfinite(kit.reference_ohm):
         yield "kit.reference_impedance_ohm", "not a finite number"
-    if any(kit.limit.limit_hz > definition.read_top_hz * ABOVE for definition in kit.definitions):
-        yield "kit.limit_hz", "the limit lies above the last reading of a standard"
 
 
 def _definitions(kit: Kit) -> Faults:
@@ -146,7 +144,9 @@ def _positive(matrix: FloatArray) -> bool:
     return matrix.size == 0 or bool(np.linalg.eigvalsh(correlation).min() >= -NEGATIVE)
 
 
-def _ladder(kit: Kit) -> Faults:
+def _limits(kit: Kit) -> Faults:
+    if any(kit.limit.limit_hz > definition.read_top_hz * ABOVE for definition in kit.definitions):
+        yield "kit.limit_hz", "the limit lies above the last reading of a standard"
     for k, rung in enumerate(kit.ladder):
         if len(rung.standards_hz) != len(kit.definitions):
             yield f"ladder[{k}].standard_limits_hz", "one limit for each standard is needed"
@@ -158,7 +158,11 @@ def _curves(kit: Kit) -> Faults:
     for s, definition in enumerate(kit.definitions):
         low, top = definition.read_low_hz, definition.read_top_hz
         grid = np.concatenate([np.linspace(low, top, CURVE_POINTS), definition.misfit_hz])
-        with np.errstate(all="ignore"):
-            gamma, bound = curve(kit, definition, grid[(grid > 0.0) & (grid <= top)])
-        if not (np.isfinite(gamma) & np.isfinite(bound)).all():
+        try:
+            with np.errstate(all="raise", under="ignore"):
+                gamma, bound = curve(kit, definition, grid[(grid > 0.0) & (grid <= top)])
+            sound = bool((np.isfinite(gamma) & np.isfinite(bound)).all())
+        except FloatingPointError:
+            sound = False
+        if not sound:
             yield f"standard[{s}].parameter", "the values give no finite reflection and bound"

@@ -227,7 +227,8 @@ def _kit(whole: _Whole, path: Path | str) -> Kit:
                 file=path,
                 key=key,
             )
-        matrices = np.array([rows_of(one, count) for one in source.lower_triangles]).reshape(-1, count, count)
+        shape = (len(source.lower_triangles), count, count)
+        matrices = np.array([rows_of(one, count) for one in source.lower_triangles]).reshape(shape)
         shares.append(Share(source.name, source.degrees_of_freedom, matrices))
     head = whole.kit
     return Kit(

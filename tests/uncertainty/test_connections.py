@@ -113,7 +113,9 @@ def test_an_ideal_open_does_not_tell_contact_resistance():
     noise = NOISE * (rng.standard_normal((5, 201)) + 1j * rng.standard_normal((5, 201)))
     ideal = Observed.from_readings("open", "open", FREQUENCY, 1.0 + noise)
     told = pooled_repeatability(whole[1:], 50.0, ASSUMED).freedom[0]
-    assert pooled_repeatability([ideal, *whole[1:]], 50.0, ASSUMED).freedom[0] == pytest.approx(told, abs=0.05)
+    assert pooled_repeatability([ideal, *whole[1:]], 50.0, ASSUMED).freedom[0] == pytest.approx(
+        told, abs=0.05
+    )
 
 
 def test_lumped_scatter_leaves_nothing_over(seeds):
@@ -159,7 +161,9 @@ def test_a_part_that_no_repeated_standard_shows_is_assumed():
     """An ideal open shows no contact resistance: the stated default stands in, and is not called measured."""
     frequency = np.linspace(50e6, 6e9, 101)
     rng = np.random.default_rng(5)
-    readings = np.ones((3, 101)) + NOISE * (rng.standard_normal((3, 101)) + 1j * rng.standard_normal((3, 101)))
+    readings = np.ones((3, 101)) + NOISE * (
+        rng.standard_normal((3, 101)) + 1j * rng.standard_normal((3, 101))
+    )
     found = pooled_repeatability([Observed.from_readings("open", "open", frequency, readings)], 50.0, ASSUMED)
     assert found.sd[0] == ASSUMED[0]
     assert np.isinf(found.freedom[0])

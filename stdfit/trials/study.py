@@ -1,0 +1,181 @@
+"""Many simulated benches, characterised and scored, family by family."""
+
+import os
+import zlib
+from collections.abc import Callable, Iterable, Sequence
+from concurrent.futures import ProcessPoolExecutor
+from dataclasses import dataclass
+
+import numpy as np
+
+from stdfit.base.errors import RequestError, StdfitError
+from stdfit.data.words import suggestion
+from stdfit.trials.bench import draw_bench
+from stdfit.trials.families import Family, demo_scenario, families
+from stdfit.trials.scenario import Scenario
+from stdfit.trials.score import Score, score
+
+NOT_STATED = "nothing stated"
+"""A family in which the user states no residuals, and the true ones are those of a modest calibration."""
+
+DEMO = "demo"
+LIKE = "like the bench"
+
+
+@dataclass(frozen=True, slots=True)
+class Row:
+    """Figures of one family, or of all.
+
+    Attributes
+    ----------
+    family : str
+    benches : int
+    coverage : float
+        Part of the curves' points at which the bound covers the truth.
+    coverage_alone : float
+        The same for the fit's own covariance.
+    quantities : float
+        Part of the determined quantities whose 95 % interval covers the truth.
+    limits_true : float
+        Part of the benches all of whose limits hold.
+    limit : float
+        Mean limit as part of the sweep.
+    sharpness : float
+        Mean bound ÷ 95 % quantile of the true error.
+    failed : int
+        Benches on which no kit came out.
+    """
+
+    family: str
+    benches: int
+    coverage: float
+    coverage_alone: float
+    quantities: float
+    limits_true: float
+    limit: float
+    sharpness: float
+    failed: int
+
+
+def family_table() -> dict[str, Family]:
+    """Return all families by name."""
+    return {**families(), DEMO: lambda rng: demo_scenario(), NOT_STATED: families()["plain"]}
+
+
+def trial(
+    family: str, seed: int, number: int, within: float, like: Scenario | None = None
+) -> list[Score] | None:
+    """Draw one bench of a family and score it; None where no kit came out of it.
+
+    Each bench has a generator of its own, so that any of them can be drawn again alone.
+    """
+    rng = np.random.default_rng([zlib.crc32(family.encode()), seed, number])
+    simulated = draw_bench(like if like is not None else family_table()[family](rng), rng)
+    try:
+        _, scores = score(simulated, within, stated=family != NOT_STATED)
+    except StdfitError:
+        return None
+    return scores
+
+
+def run(
+    names: Sequence[str],
+    benches: int,
+    *,
+    seed: int = 1,
+    within: float = 0.02,
+    like: Scenario | None = None,
+    workers: int | None = None,
+    tell: Callable[[int, int], None] | None = None,
+) -> list[Row]:
+    """Score a number of benches of each family; return a row for each, and one for all of several.
+
+    Parameters
+    ----------
+    names : sequence of str
+        Families; empty for all of them.
+    benches : int
+        Benches of each family.
+    seed, within
+        As for `trial`.
+    like : Scenario, optional
+        Draw all benches of this scenario instead of the families.
+    workers : int, optional
+        Processes; all cores by default, 1 for none but this one.
+    tell : callable, optional
+        Is told (done, total).
+
+    Raises
+    ------
+    RequestError
+        An unknown family.
+    """
+    table = family_table()
+    if like is not None:
+        table, names = {LIKE: lambda rng: like}, [LIKE]
+    for name in names:
+        if name not in table:
+            raise RequestError(
+                f"no family '{name}'{suggestion(name, table)}", f"choose among: {', '.join(table)}"
+            )
+    chosen = list(names) or list(table)
+    jobs = [(name, seed, number, within, like) for name in chosen for number in range(benches)]
+    workers = workers if workers is not None else (os.cpu_count() or 1)
+    found: dict[str, list[list[Score] | None]] = {name: [] for name in chosen}
+
+    def gather(results: Iterable[list[Score] | None]) -> None:
+        for done, (job, scores) in enumerate(zip(jobs, results, strict=True), start=1):
+            found[job[0]].append(scores)
+            if tell:
+                tell(done, len(jobs))
+
+    if workers > 1:
+        with ProcessPoolExecutor(workers) as pool:
+            gather(pool.map(_trial_of, jobs, chunksize=2))
+    else:
+        gather(map(_trial_of, jobs))
+    rows = [row_of(name, found[name]) for name in chosen]
+    if len(rows) == 1:
+        return rows
+    return [*rows, row_of("all", [scores for name in chosen for scores in found[name]])]
+
+
+def _trial_of(job: tuple[str, int, int, float, Scenario | None]) -> list[Score] | None:
+    return trial(*job)
+
+
+def row_of(family: str, benches: Sequence[list[Score] | None]) -> Row:
+    """Return the figures of some benches."""
+    sound = [scores for scores in benches if scores is not None]
+    each = [one for scores in sound for one in scores]
+    if not each:
+        none = float("nan")
+        return Row(family, len(benches), none, none, none, none, none, none, failed=len(benches))
+    quantities = [inside for one in each for inside in one.quantities]
+    error = np.concatenate([one.error for one in each])
+    return Row(
+        family=family,
+        benches=len(benches),
+        coverage=float(np.mean([one.inside for one in each])),
+        coverage_alone=float(np.mean([one.inside_alone for one in each])),
+        quantities=float(np.mean(quantities)),
+        limits_true=float(np.mean([all(one.limit_true for one in scores) for scores in sound])),
+        limit=float(np.mean([one.limit for one in each])),
+        sharpness=float(np.mean(np.concatenate([one.bound for one in each])) / np.quantile(error, 0.95)),
+        failed=len(benches) - len(sound),
+    )
+
+
+def study_table(rows: Sequence[Row]) -> str:
+    """Return the figures as a Markdown table."""
+    lines = [
+        "| family | benches | bound covers Γ | fit's own covariance covers | quantities covered | limits true "
+        "| mean limit ÷ sweep | sharpness |",
+        "|---|---|---|---|---|---|---|---|",
+    ]
+    lines += [
+        f"| {row.family} | {row.benches} | {100 * row.coverage:.1f} % | {100 * row.coverage_alone:.1f} % "
+        f"| {100 * row.quantities:.1f} % | {100 * row.limits_true:.1f} % | {row.limit:.2f} | {row.sharpness:.2f} |"
+        for row in rows
+    ]
+    return "\n".join(lines)
