@@ -61,6 +61,24 @@ def _parser() -> _Parser:
         "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the bench file's, 0.02)"
     )
 
+    fit.add_argument(
+        "--monte-carlo",
+        metavar="N",
+        type=_draws,
+        default=0,
+        help="check the linear bounds with N draws (some thousand) and say where they differ",
+    )
+
+    plan = add(
+        "plan", "say what holds a kit back, and what would move its limit; before or after measuring", _plan
+    )
+    plan.add_argument(
+        "bench", metavar="BENCH", type=Path, help="a bench file, or a folder that holds bench.toml"
+    )
+    plan.add_argument(
+        "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the bench file's)"
+    )
+
     show = add("show", "show a kit file: what to type in, how sure, how far", _show)
     show.add_argument("kit", metavar="KIT", type=Path)
 
@@ -108,6 +126,13 @@ def _number(text: str) -> float:
         return float(text)
     except ValueError:
         raise argparse.ArgumentTypeError(f"{text!r} is not a number") from None
+
+
+def _draws(text: str) -> int:
+    value = _count(text)
+    if value < 100:
+        raise argparse.ArgumentTypeError(f"'{text}' draws say too little: take 1000 or more")
+    return value
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
@@ -198,7 +223,8 @@ def _fit(asked: argparse.Namespace) -> int:
 
     bench = read_bench(asked.bench)
     target = asked.output if asked.output is not None else bench.path.parent / "kit.toml"
-    kit = fit_bench(bench, within=asked.within)
+    with _progress("draws") as tell:
+        kit = fit_bench(bench, within=asked.within, draws=asked.monte_carlo, tell=tell)
     _write_kit(kit, target)
     if asked.json:
         _warn(kit)
@@ -209,6 +235,30 @@ def _fit(asked: argparse.Namespace) -> int:
     print(f"kit file: {target}")
     print(verdict(kit))
     print(f"next: stdfit show {target}, stdfit curve {target}, stdfit limit {target} --within 0.01 0.05")
+    return DONE
+
+
+def _plan(asked: argparse.Namespace) -> int:
+    from dataclasses import replace
+
+    from stdfit.data.bench import read_bench
+    from stdfit.pipeline import prepare, read_sweeps
+    from stdfit.pipeline.imagined import imagine
+    from stdfit.pipeline.plan import plan
+    from stdfit.pipeline.plan_text import plan_data, plan_text
+
+    bench = read_bench(asked.bench)
+    if asked.within is not None:
+        bench = replace(bench, within=asked.within)
+    measured = any(entry.files for entry in bench.standards)
+    prepared = prepare(bench, read_sweeps(bench)) if measured else imagine(bench)
+    with _progress("remedies") as tell:
+        found = plan(prepared, tell)
+    _warn(found.kit)
+    if asked.json:
+        _print_json(plan_data(found))
+    else:
+        print(plan_text(found, measured=measured), end="")
     return DONE
 
 

@@ -7,12 +7,12 @@ from pathlib import Path
 
 from stdfit.base.arrays import frozen_float
 from stdfit.base.errors import BenchError
-from stdfit.data.bench_records import Bench, Given, StandardEntry, StatedResidual
+from stdfit.data.bench_records import Bench, Given, PlannedSweep, StandardEntry, StatedResidual
 from stdfit.data.bench_standards import decode_standards
 from stdfit.data.bench_table import Table
 from stdfit.data.words import nearest, quoted
 
-__all__ = ["Bench", "Given", "StandardEntry", "StatedResidual", "parse_bench", "read_bench"]
+__all__ = ["Bench", "Given", "PlannedSweep", "StandardEntry", "StatedResidual", "parse_bench", "read_bench"]
 
 FORMAT = "stdfit-bench/1"
 BENCH_NAME = "bench.toml"
@@ -79,7 +79,7 @@ def parse_bench(text: str, path: Path) -> Bench:
     """
     values = _parse_toml(text, path)
     _check_format(values, path)
-    whole = Table(values, path, "", ("format", "kit", "goal", "analyser", "standard"))
+    whole = Table(values, path, "", ("format", "kit", "goal", "analyser", "plan", "standard"))
     kit = Table(
         _required(whole, "kit"), path, "kit", ("name", "connector", "reference_impedance_ohm", "date")
     )
@@ -102,9 +102,25 @@ def parse_bench(text: str, path: Path) -> Bench:
         highest_hz=goal.number("highest_hz", above=0.0) if "highest_hz" in goal else None,
         state=state,
         residual=_residual(analyser.values["residual"], path) if "residual" in analyser else None,
-        standards=decode_standards(whole, state),
+        standards=decode_standards(whole, state, planned="plan" in whole),
         date=kit.day("date"),
+        plan=_plan(values["plan"], path) if "plan" in whole else None,
     )
+
+
+def _plan(values: object, path: Path) -> PlannedSweep:
+    """Return how standards without readings are going to be read."""
+    table = Table(values, path, "plan", ("from_hz", "to_hz", "points", "connections"))
+    low, high = table.number("from_hz", above=0.0), table.number("to_hz", above=0.0)
+    if high <= low:
+        raise table.fault("to_hz", "does not lie above from_hz", "give the sweep's upper end")
+    counts = {}
+    for key, default, least, most in (("points", 201.0, 8, 100_001), ("connections", 3.0, 1, 100)):
+        value = table.number(key, default)
+        if value != int(value) or not least <= value <= most:
+            raise table.fault(key, f"must be a whole number from {least} to {most}", "mend the number")
+        counts[key] = int(value)
+    return PlannedSweep(low, high, counts["points"], counts["connections"])
 
 
 def _parse_toml(text: str, path: Path) -> dict[str, object]:

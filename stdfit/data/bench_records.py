@@ -89,6 +89,24 @@ class StandardEntry:
         object.__setattr__(self, "given", MappingProxyType(dict(self.given)))
 
 
+@dataclass(frozen=True, slots=True)
+class PlannedSweep:
+    """How standards are going to be read.
+
+    Attributes
+    ----------
+    from_hz, to_hz : float
+    points : int
+    connections : int
+        Of each standard.
+    """
+
+    from_hz: float
+    to_hz: float
+    points: int
+    connections: int
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Bench:
     """A bench file: what was measured, and with what.
@@ -113,6 +131,8 @@ class Bench:
         In the order of the file.
     date : str or None
         As written.
+    plan : PlannedSweep or None
+        For standards that have no readings yet.
     """
 
     path: Path
@@ -125,3 +145,4 @@ class Bench:
     residual: StatedResidual | None
     standards: tuple[StandardEntry, ...]
     date: str | None = None
+    plan: PlannedSweep | None = None

@@ -1,5 +1,6 @@
 """The [[standard]] tables of a bench file."""
 
+from collections.abc import Sequence
 from pathlib import Path
 
 from stdfit.base.errors import BenchError
@@ -30,7 +31,7 @@ _KEYS = (
 )
 
 
-def decode_standards(whole: Table, state: str) -> tuple[StandardEntry, ...]:
+def decode_standards(whole: Table, state: str, *, planned: bool) -> tuple[StandardEntry, ...]:
     """Return the standards of a bench.
 
     Parameters
@@ -39,6 +40,8 @@ def decode_standards(whole: Table, state: str) -> tuple[StandardEntry, ...]:
         The whole bench file.
     state : str
         "corrected" or "raw".
+    planned : bool
+        Whether the bench tells how it is going to be read, so that standards may have no readings yet.
 
     Raises
     ------
@@ -46,7 +49,9 @@ def decode_standards(whole: Table, state: str) -> tuple[StandardEntry, ...]:
         No standard, a fault in one of them, or two that contradict each other.
     """
     listed = whole.list_of("standard", _MEND_STANDARD)
-    standards = tuple(_decode(item, whole.file, place, state) for place, item in enumerate(listed, start=1))
+    standards = tuple(
+        _decode(item, whole.file, place, state, planned) for place, item in enumerate(listed, start=1)
+    )
     by_name: dict[str, StandardEntry] = {}
     for entry in standards:
         if entry.name in by_name:
@@ -57,7 +62,7 @@ def decode_standards(whole: Table, state: str) -> tuple[StandardEntry, ...]:
     return standards
 
 
-def _decode(item: object, file: Path, place: int, state: str) -> StandardEntry:
+def _decode(item: object, file: Path, place: int, state: str, planned: bool) -> StandardEntry:
     """Return one standard; until its name is known, messages call it by its place, counted from 1."""
     name = item.get("name") if isinstance(item, dict) else None
     shown = quoted(name)[1:-1] if isinstance(name, str) and name.strip() else f"#{place}"
@@ -72,7 +77,9 @@ def _decode(item: object, file: Path, place: int, state: str) -> StandardEntry:
     if isinstance(port, bool) or port not in (1, 2) or not isinstance(port, int):
         raise table.fault("port", "the port must be 1 or 2", "write port = 1 for S11 or port = 2 for S22")
     from_kit, standard = _known_standard(table, state)
-    patterns = table.list_of("readings", 'write readings = ["file.s1p", …], one file per connection')
+    patterns: Sequence[object] = ()
+    if not planned or table.values.get("readings"):
+        patterns = table.list_of("readings", 'write readings = ["file.s1p", …], one file per connection')
     for pattern in patterns:
         if not isinstance(pattern, str) or not pattern or not pattern.isprintable():
             raise table.fault("readings", "an entry is not a file name", "put each file name in quotes")

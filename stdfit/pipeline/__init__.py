@@ -1,6 +1,6 @@
 """From a bench to a kit: the one path that library users and the command share."""
 
-from stdfit.pipeline.path import characterise, fit_bench, kit_of, program_version, with_limits
+from stdfit.pipeline.path import characterise, fit_bench, kit_of, program_version, read_sweeps, with_limits
 from stdfit.pipeline.prepare import Prepared, prepare
 from stdfit.pipeline.settle import choose_all, settle
 
@@ -12,6 +12,7 @@ __all__ = [
     "kit_of",
     "prepare",
     "program_version",
+    "read_sweeps",
     "settle",
     "with_limits",
 ]

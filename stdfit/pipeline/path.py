@@ -7,16 +7,24 @@ from datetime import date
 from importlib.metadata import PackageNotFoundError, version
 from pathlib import Path
 
+import numpy as np
+
+from stdfit.base.errors import BenchError
 from stdfit.base.records import Sweep
 from stdfit.data.bench import Bench, read_bench
 from stdfit.data.readings import read_reading
 from stdfit.pipeline.prepare import Prepared, prepare
 from stdfit.pipeline.settle import choose_all, settle
+from stdfit.uncertainty.monte_carlo import compare_with_linear
 from stdfit.validity.define import Settled, define
 from stdfit.validity.kit import Kit, SourceFile
 from stdfit.validity.limits import ladder, limits
+from stdfit.validity.linear_check import check_lines
 
-Told = Callable[[str], None]
+Told = Callable[[int, int], None]
+
+CHECK_SEED = 1
+"""The check draws the same numbers every time, so that a kit can be made again."""
 
 
 def fit_bench(
@@ -24,6 +32,7 @@ def fit_bench(
     *,
     within: float | None = None,
     created: str | None = None,
+    draws: int = 0,
     tell: Told | None = None,
 ) -> Kit:
     """Read a bench file with all its readings and characterise the kit.
@@ -36,8 +45,10 @@ def fit_bench(
         Tolerance on |error of Γ| instead of the bench file's.
     created : str, optional
         Date to write into the kit; today's by default.
+    draws : int
+        Draws of a Monte Carlo check of the linear bounds; 0 for none.
     tell : callable, optional
-        Is told in words what is being done.
+        Is told how many of the draws are done: (done, total).
 
     Raises
     ------
@@ -49,16 +60,7 @@ def fit_bench(
     bench = path if isinstance(path, Bench) else read_bench(path)
     if within is not None:
         bench = replace(bench, within=within)
-    if tell:
-        tell("reading")
-    sweeps = {
-        entry.name: [
-            read_reading(file, port=entry.port, reference_ohm=bench.reference_ohm) for file in entry.files
-        ]
-        for entry in bench.standards
-    }
-    if tell:
-        tell("fitting")
+    sweeps = read_sweeps(bench)
     files = tuple(
         SourceFile(
             entry.name, _relative(file, bench.path.parent), hashlib.sha256(file.read_bytes()).hexdigest()
@@ -66,7 +68,31 @@ def fit_bench(
         for entry in bench.standards
         for file in entry.files
     )
-    return characterise(bench, sweeps, files=files, created=created)
+    return characterise(bench, sweeps, files=files, created=created, draws=draws, tell=tell)
+
+
+def read_sweeps(bench: Bench) -> dict[str, list[Sweep]]:
+    """Read all readings of a bench.
+
+    Raises
+    ------
+    InputError
+        A standard without readings, or readings that are not sound.
+    """
+    for entry in bench.standards:
+        if not entry.files:
+            raise BenchError(
+                f"'{entry.name}' has no readings yet",
+                "name them; before they exist, 'stdfit plan' predicts what they will give",
+                file=bench.path,
+                key=f"standard[{entry.name}].readings",
+            )
+    return {
+        entry.name: [
+            read_reading(file, port=entry.port, reference_ohm=bench.reference_ohm) for file in entry.files
+        ]
+        for entry in bench.standards
+    }
 
 
 def characterise(
@@ -75,6 +101,8 @@ def characterise(
     *,
     files: tuple[SourceFile, ...] = (),
     created: str | None = None,
+    draws: int = 0,
+    tell: Told | None = None,
 ) -> Kit:
     """Turn readings into a kit.
 
@@ -88,13 +116,21 @@ def characterise(
         Where the readings came from.
     created : str, optional
         Date to write into the kit.
+    draws, tell
+        As for `fit_bench`.
 
     Raises
     ------
     InputError, FitError
     """
     prepared = prepare(bench, sweeps)
-    return kit_of(prepared, settle(prepared, choose_all(prepared)), files=files, created=created)
+    settled = settle(prepared, choose_all(prepared))
+    kit = kit_of(prepared, settled, files=files, created=created)
+    if draws:
+        rng = np.random.default_rng(CHECK_SEED)
+        compared = compare_with_linear(settled.problem, settled.values, prepared.sources, draws, rng, tell)
+        kit = replace(kit, checks=check_lines(compared, draws))
+    return kit
 
 
 def kit_of(

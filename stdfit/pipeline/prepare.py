@@ -43,6 +43,8 @@ class Prepared:
     sources : tuple of Source
     family : Family
     warnings : tuple of str
+    imagined_connections : int
+        How many connections of each standard the sources stand for, where it is more than were made; else 0.
     """
 
     bench: Bench
@@ -53,6 +55,12 @@ class Prepared:
     sources: tuple[Source, ...]
     family: Family
     warnings: tuple[str, ...]
+    imagined_connections: int = 0
+
+    @property
+    def connections(self) -> int:
+        """Most connections of any standard."""
+        return max(self.imagined_connections, *(one.connections for one in self.observed))
 
 
 def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> Prepared:

@@ -8,13 +8,14 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
+import numpy.typing as npt
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.circuits.standard import reflection
 from stdfit.fitting.observed import Observed
 from stdfit.fitting.problem import Problem
 from stdfit.fitting.roles import places_of
-from stdfit.uncertainty.budget import Share, plane, radius, shares_of
+from stdfit.uncertainty.budget import Share, inverse_of, plane, radius, shares_of
 from stdfit.uncertainty.push import push
 from stdfit.uncertainty.smooth import LENGTHS_PER_SPAN, bumps, correlation_lengths
 from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source, WhiteSource
@@ -28,10 +29,14 @@ BAND_POINTS = 40
 BATCH = 200
 """Fits done at once."""
 
-ROUNDS = 40
-"""Most iterations of a fit; each halves the distance at least where the problem is nearly linear."""
+ROUNDS = 60
+"""Most iterations of a fit; four do where the problem is nearly linear."""
 
-SETTLED = 1e-4
+FULL_STEPS = 6
+DAMPED = 0.5
+"""After so many full steps, steps are shortened by this factor."""
+
+SETTLED = 1e-3
 """Largest step of a settled fit, in units of the fit."""
 
 
@@ -47,6 +52,8 @@ class Compared:
         95 % radius on Γ by Monte Carlo and by linear propagation, at the same correlation length.
     drawn_magnitude_u, linear_magnitude_u : arrays of shape (m,)
         Standard uncertainty of |Γ|.
+    magnitude : array of shape (m,)
+        |Γ| of the fitted model.
     unsettled : float
         Part of the fits that did not settle.
     """
@@ -57,6 +64,7 @@ class Compared:
     linear: FloatArray
     drawn_magnitude_u: FloatArray
     linear_magnitude_u: FloatArray
+    magnitude: FloatArray
     unsettled: float
 
 
@@ -110,6 +118,7 @@ def _compare(trial: "_Trial", s: int, cloud: ComplexArray, unsettled: float) -> 
         linear=radius(design, trial.shares),
         drawn_magnitude_u=np.abs(cloud).std(axis=0),
         linear_magnitude_u=np.sqrt(np.maximum(real * cos**2 + imag * sin**2 + 2.0 * cross * cos * sin, 0.0)),
+        magnitude=np.abs(best),
         unsettled=unsettled,
     )
 
@@ -122,7 +131,6 @@ class _Trial:
     start: FloatArray
     sources: tuple[Source, ...]
     shares: list[Share]
-    inverse: FloatArray
     length: float
     span: tuple[float, float]
     grids: list[FloatArray]
@@ -146,7 +154,7 @@ class _Trial:
             grids.append(np.linspace(one.frequency_hz[0], one.frequency_hz[-1], BAND_POINTS))
             designs.append(thin_problem.model(s, values, grids[-1])[1])
         _, precision = thin_problem.evidence()
-        inverse, stacked = shares_of(pushed, thin_sources, precision, places_of(thin_problem))
+        _, stacked = shares_of(pushed, thin_sources, precision, places_of(thin_problem))
         shares = [replace(share, covariances=share.covariances[:, 0]) for share in stacked]
         by_length = [[_at(share, k) for share in shares] for k in range(len(LENGTHS_PER_SPAN))]
         size = [sum(float(radius(design, chosen).mean()) for design in designs) for chosen in by_length]
@@ -156,7 +164,6 @@ class _Trial:
             start=values[thin_problem.fitted] / thin_problem.scales,
             sources=tuple(thin_sources),
             shares=by_length[widest],
-            inverse=inverse[0],
             length=float(correlation_lengths(span[1] - span[0])[widest]),
             span=span,
             grids=grids,
@@ -209,22 +216,27 @@ class _Trial:
         u = np.where(precision > 0.0, 1.0 / np.sqrt(np.where(precision > 0.0, precision, 1.0)), 0.0)
         return readings, self.start + u * rng.standard_normal((count, target.size))
 
-    def fit(self, readings: Sequence[ComplexArray], evidence: FloatArray) -> tuple[FloatArray, np.ndarray]:
-        """Fit all draws, each step with the derivatives at the solution; return values and which settled."""
+    def fit(
+        self, readings: Sequence[ComplexArray], evidence: FloatArray
+    ) -> tuple[FloatArray, npt.NDArray[np.bool_]]:
+        """Fit all draws by Gauss and Newton, each with its own derivatives; return values and which settled."""
         _, precision = self.problem.evidence()
         scaled = np.repeat(self.start[None], evidence.shape[0], axis=0)
-        rows = [
-            (self.model(s, self.start[None], one.frequency_hz)[1][0].conj() * weight[:, None])
-            for s, (one, weight) in enumerate(zip(self.problem.observed, self.problem.weights, strict=True))
-        ]
         moving = np.arange(scaled.shape[0])
-        for _ in range(ROUNDS):
+        for turn in range(ROUNDS):
             pull = precision * (evidence[moving] - scaled[moving])
-            for s, one in enumerate(self.problem.observed):
-                gamma, _ = self.model(s, scaled[moving], one.frequency_hz)
-                pull = pull + ((readings[s][moving] - gamma) @ rows[s]).real
-            step = pull @ self.inverse
-            scaled[moving] += step
+            normal = np.tile(np.diag(precision), (moving.size, 1, 1))
+            for s, (one, weight) in enumerate(zip(self.problem.observed, self.problem.weights, strict=True)):
+                gamma, design = self.model(s, scaled[moving], one.frequency_hz)
+                root = np.sqrt(weight)
+                rows = np.concatenate([design.real, design.imag], axis=1) * np.tile(root, 2)[:, None]
+                off = (readings[s][moving] - gamma) * root
+                across = np.swapaxes(rows, 1, 2)
+                pull = pull + (across @ np.concatenate([off.real, off.imag], axis=1)[..., None])[..., 0]
+                normal = normal + across @ rows
+            step = (inverse_of(normal) @ pull[..., None])[..., 0]
+            # Full steps that have not settled by then swing from side to side: shorter ones do not.
+            scaled[moving] += step if turn < FULL_STEPS else DAMPED * step
             moving = moving[np.abs(step).max(axis=1) > SETTLED]
             if moving.size == 0:
                 break

@@ -149,6 +149,8 @@ class Kit:
     ladder : tuple of Rung
     files : tuple of SourceFile
     warnings : tuple of str
+    checks : tuple of str
+        What a Monte Carlo check said, in words; empty where none was asked for.
     """
 
     name: str
@@ -165,6 +167,7 @@ class Kit:
     ladder: tuple[Rung, ...]
     files: tuple[SourceFile, ...]
     warnings: tuple[str, ...]
+    checks: tuple[str, ...] = ()
 
     def definition(self, name: str) -> Definition:
         """Return the definition of that name.

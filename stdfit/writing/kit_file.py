@@ -35,6 +35,7 @@ def kit_text(kit: Kit) -> str:
             limit_reason=kit.limit.reason,
             connector_top_hz=kit.top_hz,
             warnings=list(kit.warnings),
+            checks=list(kit.checks),
         ),
     )
     document.add("standard", _tables(_standard(definition) for definition in kit.definitions))

@@ -38,6 +38,7 @@ class _Head(_Strict):
     limit_reason: str
     connector_top_hz: Size
     warnings: list[str]
+    checks: list[str] = []
 
 
 class _Parameter(_Strict):
@@ -248,6 +249,7 @@ def _kit(whole: _Whole, path: Path | str) -> Kit:
         ),
         files=tuple(SourceFile(one.standard, one.name, one.sha256) for one in whole.file),
         warnings=tuple(head.warnings),
+        checks=tuple(head.checks),
     )
 
 

@@ -69,6 +69,7 @@ def kit_data(kit: Kit) -> dict[str, Any]:
             for rung in kit.ladder
         ],
         "warnings": list(kit.warnings),
+        "checks": list(kit.checks),
     }
 
 

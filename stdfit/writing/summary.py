@@ -54,6 +54,8 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
     notes = [f"{one.name}: {note}" for one in kit.definitions for note in one.notes]
     if notes:
         lines += ["", "Notes", *(f"  {note}" for note in notes)]
+    if kit.checks:
+        lines += ["", "Checked", *(f"  {check}" for check in kit.checks)]
     if warnings and kit.warnings:
         lines += ["", "Warnings", *(f"  {warning}" for warning in kit.warnings)]
     return "\n".join(lines) + "\n"

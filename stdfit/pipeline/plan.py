@@ -1,0 +1,261 @@
+"""What limits a kit, and what would move the limit: each remedy is put into the numbers and the fit done again."""
+
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from stdfit.base.arrays import ComplexArray
+from stdfit.fitting.observed import Observed
+from stdfit.fitting.roles import Wish
+from stdfit.pipeline.path import kit_of
+from stdfit.pipeline.prepare import Prepared, sources_of
+from stdfit.pipeline.settle import choose_all, settle
+from stdfit.uncertainty.budget import radius
+from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source, WhiteSource
+from stdfit.validity.kit import Definition, Kit, misfit_at, model
+from stdfit.validity.limits import shares_at
+
+BETTER_DB = 6.0
+"""How much better a reference is in the remedy that asks for one."""
+
+RULER_PS = 0.1
+"""Standard uncertainty of a length in the remedy that asks for one: 0.03 mm of air line."""
+
+RESISTANCE_OHM = 0.02
+"""Standard uncertainty of a DC resistance in the remedy that asks for one."""
+
+LONGER = 1.5
+"""How much longer a sweep is in the remedy that asks for one."""
+
+
+@dataclass(frozen=True, slots=True)
+class Contribution:
+    """What one source does at the kit's limit: its part of the variance, and the 95 % radius it has alone."""
+
+    name: str
+    part: float
+    alone: float
+
+
+@dataclass(frozen=True, slots=True)
+class Remedy:
+    """Something to do, and the kit's limit that it is predicted to give.
+
+    Attributes
+    ----------
+    what : str
+        In words.
+    limit_hz : float
+    gain_hz : float
+        Against the present limit.
+    at_most : bool
+        True where the prediction leaves out what only new readings can show.
+    """
+
+    what: str
+    limit_hz: float
+    gain_hz: float
+    at_most: bool
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Plan:
+    """A kit as it stands or is predicted, what makes up its bound at the limit, and the remedies by gain.
+
+    Attributes
+    ----------
+    kit : Kit
+    standard : str
+        The standard that holds the kit back.
+    at_hz : float
+        Where the contributions are taken.
+    bound, misfit : float
+    contributions : tuple of Contribution
+    remedies : tuple of Remedy
+    """
+
+    kit: Kit
+    standard: str
+    at_hz: float
+    bound: float
+    misfit: float
+    contributions: tuple[Contribution, ...]
+    remedies: tuple[Remedy, ...]
+
+
+def plan(prepared: Prepared, tell: Callable[[int, int], None] | None = None) -> Plan:
+    """Predict what limits a kit and what would move the limit.
+
+    Parameters
+    ----------
+    prepared : Prepared
+        Measured, or imagined.
+    tell : callable, optional
+        Is told (done, total).
+    """
+    kit = _kit(prepared)
+    held_back = min(kit.definitions, key=lambda one: one.limit.limit_hz)
+    at_hz = max(held_back.limit.limit_hz, held_back.read_low_hz)
+    _, design = model(kit, held_back, np.array([at_hz]))
+    wrong = float(misfit_at(held_back, np.array([at_hz]))[0])
+    parts = shares_at(design[0], kit.shares)
+    contributions = [
+        Contribution(share.name, float(part), float(radius(design, [share])[0]))
+        for share, part in zip(kit.shares, parts, strict=True)
+    ]
+    ideas = list(_remedies(prepared, kit, held_back))
+    remedies = []
+    for done, (what, changed, at_most) in enumerate(ideas, start=1):
+        limit_hz = _kit(changed).limit.limit_hz
+        remedies.append(Remedy(what, limit_hz, limit_hz - kit.limit.limit_hz, at_most))
+        if tell:
+            tell(done, len(ideas))
+    return Plan(
+        kit=kit,
+        standard=held_back.name,
+        at_hz=at_hz,
+        bound=float(radius(design, kit.shares)[0]) + wrong,
+        misfit=wrong,
+        contributions=tuple(sorted(contributions, key=lambda one: -one.part)),
+        remedies=tuple(sorted(remedies, key=lambda one: -one.gain_hz)),
+    )
+
+
+def _kit(prepared: Prepared) -> Kit:
+    return kit_of(prepared, settle(prepared, choose_all(prepared)), created="planned")
+
+
+def _remedies(prepared: Prepared, kit: Kit, held_back: Definition) -> Iterator[tuple[str, Prepared, bool]]:
+    """Yield each remedy in words, the bench as it would then be, and whether the prediction is at most."""
+    most = prepared.connections
+    for count in sorted({5, 10, 2 * most} - set(range(most + 1))):
+        yield f"make {count} connections of each standard", with_connections(prepared, count), False
+    yield (
+        f"correct the analyser with a kit whose residuals are {BETTER_DB:.0f} dB smaller",
+        with_better_reference(prepared, 10.0 ** (-BETTER_DB / 20.0)),
+        False,
+    )
+    for one in kit.definitions:
+        delay = one.parameters[0]
+        if one.kind != "load" and delay.role == "free":
+            yield (
+                f"measure the offset length of '{one.name}' to {RULER_PS:g} ps (0.03 mm in air)",
+                with_given(prepared, one.name, "offset_delay_ps", delay.value, RULER_PS),
+                False,
+            )
+        resistance = next((p for p in one.parameters if p.name == "resistance_ohm"), None)
+        if resistance is not None and resistance.role == "free":
+            yield (
+                f"measure the DC resistance of '{one.name}' to {RESISTANCE_OHM:g} Ω",
+                with_given(prepared, one.name, "resistance_ohm", resistance.value, RESISTANCE_OHM),
+                False,
+            )
+    top = max(one.read_top_hz for one in kit.definitions)
+    if kit.limit.limit_hz >= 0.999 * min(one.read_top_hz for one in kit.definitions) and top < kit.top_hz:
+        reach = min(LONGER * top, kit.top_hz)
+        yield f"read on up to {reach / 1e9:.3g} GHz", with_longer_sweep(prepared, kit, reach), True
+    if held_back.misfit.max() > 0.0:
+        yield (
+            f"make '{held_back.name}' so that it follows its model (fewer steps, shorter leads, no resonance)",
+            with_model_for(prepared, kit, held_back),
+            True,
+        )
+
+
+def with_sources(prepared: Prepared, change: Callable[[Source], Source]) -> Prepared:
+    """Return the bench with each source of error changed."""
+    return replace(prepared, sources=tuple(change(source) for source in prepared.sources))
+
+
+def with_connections(prepared: Prepared, count: int) -> Prepared:
+    """Return the bench as it would be with so many connections of each standard that scatter as before."""
+    each = [max(one.connections, prepared.imagined_connections) for one in prepared.observed]
+    shrink = [np.sqrt(own / count) for own in each]
+    contrasts = sum(own - 1 for own in each)
+    more = (count - 1) * len(prepared.observed) / contrasts if contrasts else 1.0
+
+    def change(source: Source) -> Source:
+        if isinstance(source, WhiteSource):
+            return replace(
+                source, variances=tuple(v * k**2 for v, k in zip(source.variances, shrink, strict=True))
+            )
+        if isinstance(source, LumpedSource):
+            vectors = tuple(v * k for v, k in zip(source.vectors, shrink, strict=True))
+            return replace(source, vectors=vectors, freedom=source.freedom * more)
+        if not source.common:
+            profiles = tuple(p * k for p, k in zip(source.profiles, shrink, strict=True))
+            return replace(source, profiles=profiles, freedom=source.freedom * more)
+        return source
+
+    return replace(with_sources(prepared, change), imagined_connections=count)
+
+
+def with_better_reference(prepared: Prepared, factor: float) -> Prepared:
+    """Return the bench with all analyser residuals scaled, in what is stated and in the readings' misfit.
+
+    The readings keep the residuals that they have; so that those do not pass for misfit, the part of the readings
+    that the model does not follow is scaled too.
+    """
+
+    def change(source: Source) -> Source:
+        if isinstance(source, SmoothSource) and source.common:
+            return replace(source, profiles=tuple(factor * profile for profile in source.profiles))
+        return source
+
+    kit = _kit(prepared)
+    observed = tuple(
+        _reading(one, _model_of(kit, one) + factor * (one.gamma - _model_of(kit, one)))
+        for one in prepared.observed
+    )
+    return replace(with_sources(prepared, change), observed=observed)
+
+
+def with_given(prepared: Prepared, standard: str, name: str, value: float, u: float) -> Prepared:
+    """Return the bench with one more piece of evidence, which agrees with the present fit."""
+    wishes: list[Wish] = []
+    for one, wish in zip(prepared.observed, prepared.wishes, strict=True):
+        wishes.append(replace(wish, given={**wish.given, name: (value, u)}) if one.name == standard else wish)
+    return replace(prepared, wishes=tuple(wishes))
+
+
+def with_longer_sweep(prepared: Prepared, kit: Kit, top_hz: float) -> Prepared:
+    """Return the bench with readings up to a higher frequency, where standards go on as their models do."""
+    observed = []
+    for one in prepared.observed:
+        spacing = float(np.median(np.diff(one.frequency_hz)))
+        beyond = np.arange(one.frequency_hz[-1] + spacing, top_hz * (1.0 + 1e-9), spacing)
+        grid = np.concatenate([one.frequency_hz, beyond])
+        gamma = np.concatenate([one.gamma, model(kit, kit.definition(one.name), beyond)[0]])
+        deviations = np.pad(one.deviations, [(0, 0), (0, beyond.size)], mode="edge")
+        observed.append(Observed(one.name, one.kind, grid, gamma, deviations))
+    leftover = tuple(
+        np.pad(own, (0, one.frequency_hz.size - own.size), mode="edge")
+        for own, one in zip(prepared.scatter.leftover, observed, strict=True)
+    )
+    scatter = replace(prepared.scatter, leftover=leftover)
+    sources = sources_of(observed, prepared.residual, scatter, prepared.bench.reference_ohm)
+    return replace(prepared, observed=tuple(observed), scatter=scatter, sources=sources)
+
+
+def with_model_for(prepared: Prepared, kit: Kit, definition: Definition) -> Prepared:
+    """Return the bench as it would be if one standard followed its model."""
+    observed = tuple(
+        _reading(one, _model_of(kit, one)) if one.name == definition.name else one
+        for one in prepared.observed
+    )
+    return replace(prepared, observed=observed)
+
+
+def _model_of(kit: Kit, one: Observed) -> ComplexArray:
+    return model(kit, kit.definition(one.name), one.frequency_hz)[0]
+
+
+def _reading(one: Observed, gamma: ComplexArray) -> Observed:
+    return Observed(one.name, one.kind, one.frequency_hz, gamma, one.deviations)
+
+
+def ranked(remedies: Sequence[Remedy], smallest_hz: float = 1e6) -> tuple[list[Remedy], list[Remedy]]:
+    """Return the remedies that help, best first, and those that do not."""
+    helping = [one for one in remedies if one.gain_hz > smallest_hz]
+    return helping, [one for one in remedies if one.gain_hz <= smallest_hz]

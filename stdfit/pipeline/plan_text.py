@@ -1,0 +1,65 @@
+"""A plan in words: what holds a kit back, and what would move it."""
+
+from typing import Any
+
+from stdfit.pipeline.plan import Plan, Remedy, ranked
+from stdfit.writing.numbers import frequency
+from stdfit.writing.summary import aligned, verdict
+
+SMALLEST_PART = 0.005
+"""Sources below this part of the variance are not listed."""
+
+
+def plan_text(plan: Plan, *, measured: bool) -> str:
+    """Return the plan for a terminal, the verdict first.
+
+    Parameters
+    ----------
+    plan : Plan
+    measured : bool
+        False where the readings are imagined.
+    """
+    lines = [("" if measured else "predicted, before any reading: ") + verdict(plan.kit)]
+    if not measured:
+        lines.append("  (parts that follow their models; what only readings can show comes on top)")
+    lines += ["", f"What makes up the bound of '{plan.standard}' at {frequency(plan.at_hz)}"]
+    rows = [["source", "part of variance", "alone (95 %)"]]
+    rows += [
+        [one.name, f"{100 * one.part:.0f} %", f"{one.alone:.4f}"]
+        for one in plan.contributions
+        if one.part > SMALLEST_PART
+    ]
+    rows += [["misfit, added to the rest", "", f"{plan.misfit:.4f}"], ["bound", "", f"{plan.bound:.4f}"]]
+    lines += aligned(rows)
+    helping, useless = ranked(plan.remedies)
+    lines += ["", "What would move the limit"]
+    if helping:
+        lines += aligned([["good to", "gain", "what to do"], *(_row(one) for one in helping)])
+    else:
+        lines.append("  none of the remedies that were tried moves it")
+    if useless:
+        lines += ["", "What would not", *(f"  {one.what}" for one in useless)]
+    return "\n".join(lines) + "\n"
+
+
+def _row(one: Remedy) -> list[str]:
+    most = "at most " if one.at_most else ""
+    return [f"{most}{frequency(one.limit_hz)}", f"+{frequency(one.gain_hz)}", one.what]
+
+
+def plan_data(plan: Plan) -> dict[str, Any]:
+    """Return the plan as data."""
+    return {
+        "within": plan.kit.within,
+        "limit_hz": plan.kit.limit.limit_hz,
+        "reason": plan.kit.limit.reason,
+        "held_back_by": plan.standard,
+        "at_hz": plan.at_hz,
+        "bound": plan.bound,
+        "misfit": plan.misfit,
+        "sources": [{"name": one.name, "part": one.part, "alone": one.alone} for one in plan.contributions],
+        "remedies": [
+            {"what": one.what, "limit_hz": one.limit_hz, "gain_hz": one.gain_hz, "at_most": one.at_most}
+            for one in plan.remedies
+        ],
+    }
