@@ -29,13 +29,13 @@ def _parser() -> _Parser:
     parser = _Parser(
         prog="stdfit",
         description="Turn readings of home-made open, short and load standards into a calibration kit with "
-        "95 %% bounds and the frequency up to which it can be trusted.",
+        "95 % bounds and the frequency up to which it can be trusted.",
     )
     parser.add_argument("--version", action="store_true", help="print the version and stop")
     commands = parser.add_subparsers(dest="command", metavar="COMMAND", parser_class=_Parser)
 
     def add(name: str, what: str, run: Callable[[argparse.Namespace], int]) -> _Parser:
-        command = commands.add_parser(name, help=what, description=what)
+        command = commands.add_parser(name, help=what.replace("%", "%%"), description=what)
         command.set_defaults(run=run)
         command.add_argument("--json", action="store_true", help="print the result as JSON")
         return command
@@ -82,7 +82,7 @@ def _parser() -> _Parser:
     show = add("show", "show a kit file: what to type in, how sure, how far", _show)
     show.add_argument("kit", metavar="KIT", type=Path)
 
-    curve = add("curve", "print reflection and 95 %% bound over frequency as CSV", _curve)
+    curve = add("curve", "print reflection and 95 % bound over frequency as CSV", _curve)
     curve.add_argument("kit", metavar="KIT", type=Path)
     curve.add_argument(
         "--standard", metavar="NAME", action="append", help="only this standard; may be repeated"
@@ -204,14 +204,25 @@ def _warn(kit: "Kit") -> None:
         _tell(f"warning: {warning}")
 
 
+def _check_target(path: Path) -> None:
+    """Refuse a place where no kit file can go, before the work is done: only kit files are overwritten."""
+    from stdfit.base.errors import RequestError
+    from stdfit.writing.kit_file import is_kit_file
+
+    if path.is_dir():
+        raise RequestError("a folder stands where the file should go", "name a file", file=path)
+    if not path.parent.is_dir():
+        raise RequestError("no such folder", "make it, or name another place with -o", file=path.parent)
+    if path.exists() and not is_kit_file(path):
+        raise RequestError("exists and is no kit file", "name another file with -o", file=path)
+
+
 def _write_kit(kit: "Kit", path: Path) -> None:
     """Write a kit file, over nothing but a kit file."""
-    from stdfit.base.errors import RequestError
-    from stdfit.writing.kit_file import is_kit_file, kit_text
+    from stdfit.writing.kit_file import kit_text
     from stdfit.writing.safely import write_whole
 
-    if path.exists() and not path.is_dir() and not is_kit_file(path):
-        raise RequestError("exists and is no kit file", "name another file with -o", file=path)
+    _check_target(path)
     write_whole(path, kit_text(kit))
 
 
@@ -223,6 +234,7 @@ def _fit(asked: argparse.Namespace) -> int:
 
     bench = read_bench(asked.bench)
     target = asked.output if asked.output is not None else bench.path.parent / "kit.toml"
+    _check_target(target)
     with _progress("draws") as tell:
         kit = fit_bench(bench, within=asked.within, draws=asked.monte_carlo, tell=tell)
     _write_kit(kit, target)

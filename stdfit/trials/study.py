@@ -15,8 +15,8 @@ from stdfit.trials.families import Family, demo_scenario, families
 from stdfit.trials.scenario import Scenario
 from stdfit.trials.score import Score, score
 
-NOT_STATED = "nothing stated"
-"""A family in which the user states no residuals, and the true ones are those of a modest calibration."""
+NOT_STATED = {"nothing stated": "plain", "nothing stated, one connection": "one connection"}
+"""Families in which the user states no residuals, and the families whose benches they are."""
 
 DEMO = "demo"
 LIKE = "like the bench"
@@ -59,7 +59,9 @@ class Row:
 
 def family_table() -> dict[str, Family]:
     """Return all families by name."""
-    return {**families(), DEMO: lambda rng: demo_scenario(), NOT_STATED: families()["plain"]}
+    plain = families()
+    unstated = {name: plain[like] for name, like in NOT_STATED.items()}
+    return {**plain, DEMO: lambda rng: demo_scenario(), **unstated}
 
 
 def trial(
@@ -72,7 +74,7 @@ def trial(
     rng = np.random.default_rng([zlib.crc32(family.encode()), seed, number])
     simulated = draw_bench(like if like is not None else family_table()[family](rng), rng)
     try:
-        _, scores = score(simulated, within, stated=family != NOT_STATED)
+        _, scores = score(simulated, within, stated=family not in NOT_STATED)
     except StdfitError:
         return None
     return scores

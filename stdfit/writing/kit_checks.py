@@ -89,7 +89,12 @@ def _definitions(kit: Kit) -> Faults:
                 yield f"{key}.combination[{c}]", "the value lies outside its own 95 % interval"
         if not 0.0 < definition.read_low_hz < definition.read_top_hz < np.inf:
             yield f"{key}.read_to_hz", "the band of the readings is empty or not finite"
-        if not definition.fit_low_hz < definition.fit_top_hz <= definition.read_top_hz:
+        if (
+            not definition.read_low_hz
+            <= definition.fit_low_hz
+            < definition.fit_top_hz
+            <= definition.read_top_hz
+        ):
             yield f"{key}.fit_to_hz", "the fit range does not lie within the readings"
         if not definition.limit.limit_hz <= definition.read_top_hz * ABOVE:
             yield f"{key}.limit_hz", "the limit lies above the last reading"

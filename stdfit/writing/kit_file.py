@@ -160,6 +160,8 @@ def rows_of(triangle: Sequence[float], count: int) -> list[list[float]]:
 def is_kit_file(path: Path) -> bool:
     """Return whether a file says of itself, near its top, that it is a kit file."""
     try:
+        if not path.is_file():  # to open a pipe would wait for ever
+            return False
         with path.open("rb") as stream:
             return b'format = "stdfit-kit/' in stream.read(4096)
     except OSError:
