@@ -116,8 +116,8 @@ def _tolerance(text: str) -> float:
 
 def _count(text: str) -> int:
     value = _number(text)
-    if not 1 <= value <= 1_000_000 or value != int(value):
-        raise argparse.ArgumentTypeError(f"{text!r} is no whole number between 1 and 1000000")
+    if not 1 <= value <= 100_000 or value != int(value):
+        raise argparse.ArgumentTypeError(f"{text!r} is no whole number between 1 and 100000")
     return int(value)
 
 
@@ -226,6 +226,12 @@ def _write_kit(kit: "Kit", path: Path) -> None:
     write_whole(path, kit_text(kit))
 
 
+def _default_target(bench: Path) -> Path:
+    """Return where the kit of a bench file goes: kit.toml beside bench.toml, NAME.kit.toml beside NAME.toml."""
+    name = "kit.toml" if bench.name == "bench.toml" else f"{bench.stem}.kit.toml"
+    return bench.parent / name
+
+
 def _fit(asked: argparse.Namespace) -> int:
     from stdfit.data.bench import read_bench
     from stdfit.pipeline import fit_bench
@@ -233,7 +239,7 @@ def _fit(asked: argparse.Namespace) -> int:
     from stdfit.writing.summary import summary, verdict
 
     bench = read_bench(asked.bench)
-    target = asked.output if asked.output is not None else bench.path.parent / "kit.toml"
+    target = asked.output if asked.output is not None else _default_target(bench.path)
     _check_target(target)
     with _progress("draws") as tell:
         kit = fit_bench(bench, within=asked.within, draws=asked.monte_carlo, tell=tell)
