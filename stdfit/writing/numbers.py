@@ -41,7 +41,13 @@ def decimals(kit: Kit, definition: Definition) -> list[int]:
 
 def plus_minus(value: float, half: float, digits: int) -> str:
     """Return value ± half-width, the value with the given decimals, the half-width with two digits."""
-    return f"{value:.{digits}f} ± {half:.2g}" if half < 99.5 else f"{value:.{digits}f} ± {half:.0f}"
+    return f"{rounded(value, digits)} ± {half:.2g}" if half < 99.5 else f"{rounded(value, digits)} ± {half:.0f}"
+
+
+def rounded(value: float, digits: int) -> str:
+    """Return a value with that many decimals, and no minus before a zero."""
+    text = f"{value:.{digits}f}"
+    return text.lstrip("-") if float(text) == 0.0 else text
 
 
 def label_of(kind: str, name: str) -> str:

@@ -4,7 +4,7 @@ from collections.abc import Sequence
 
 from stdfit.validity.kit import Definition, Kit
 from stdfit.validity.limit import Limit
-from stdfit.writing.numbers import decimals, frequency, label_of, plus_minus
+from stdfit.writing.numbers import decimals, frequency, label_of, plus_minus, rounded
 
 
 def aligned(rows: Sequence[Sequence[str]], indent: str = "  ") -> list[str]:
@@ -47,7 +47,7 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
             ),
         ]
     )
-    lines += ["", "What to type in (± 95 %)"]
+    lines += ["", "What to type in (± 95 %); take all values of a standard together, since single ones trade off"]
     for definition in kit.definitions:
         lines += _definition(kit, definition)
     lines += ["", *ladder_lines(kit)]
@@ -71,7 +71,7 @@ def _definition(kit: Kit, definition: Definition) -> list[str]:
         half = max(parameter.high - parameter.value, parameter.value - parameter.low)
         role = "" if parameter.role == "free" else parameter.role
         if parameter.role == "held":
-            rows.append([label, f"{parameter.value:.{digits}f}", parameter.unit, role])
+            rows.append([label, rounded(parameter.value, digits), parameter.unit, role])
         else:
             rows.append([label, plus_minus(parameter.value, half, digits), parameter.unit, role])
     for one in definition.combinations:
