@@ -356,10 +356,8 @@ def _new(asked: argparse.Namespace) -> int:
 
 
 def _trials(asked: argparse.Namespace) -> int:
-    from dataclasses import asdict
-
     from stdfit.trials.like import scenario_like
-    from stdfit.trials.study import run, study_table
+    from stdfit.trials.study import run, study_data, study_table
 
     like = None if asked.like is None else scenario_like(asked.like)
     with _progress("benches") as tell:
@@ -367,7 +365,7 @@ def _trials(asked: argparse.Namespace) -> int:
             asked.family or [], asked.benches, seed=asked.seed, within=asked.within, like=like, tell=tell
         )
     if asked.json:
-        _print_json({"families": [asdict(row) for row in rows]})
+        _print_json(study_data(rows))
     else:
         print(study_table(rows))
     return DONE

@@ -4,11 +4,12 @@ import re
 import shlex
 import shutil
 import tomllib
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
 
-from stdfit import kit_text, limits
+from stdfit import cli, kit_text, limits
 from stdfit.base.errors import BenchError
 from stdfit.cli import main
 from stdfit.data.bench import parse_bench
@@ -50,7 +51,7 @@ def test_python_blocks_run_in_order(page, tmp_path, monkeypatch):
 def bench_folder(folder, text):
     """Make every file that a bench text names, so that it can be parsed."""
     for standard in tomllib.loads(text)["standard"]:
-        wanted = [name.replace("*", "1") for name in standard["readings"]]
+        wanted = [name.replace("*", "1") for name in standard.get("readings", [])]
         for name in [*wanted, *([standard["from_kit"]] if "from_kit" in standard else [])]:
             (folder / name).touch()
     return folder / "bench.toml"
@@ -186,6 +187,49 @@ def test_every_key_of_a_kit_file_is_described():
     assert {"format", "correlation_of_parts", "lower_triangles", "sha256"} <= keys
     for key in keys:
         assert re.search(rf"[`.]{key}`", page), key
+
+
+def test_every_key_of_a_plan_is_described(tmp_path):
+    (text,) = [text for _, text in blocks(FILES, "toml") if "\nplan = " in text]
+    bench = parse_bench(text, tmp_path / "bench.toml")
+    assert (bench.plan.points, bench.plan.connections) == (201, 4)
+    assert all(entry.files == () for entry in bench.standards)
+    with pytest.raises(BenchError) as refused:
+        parse_bench(text.replace("plan = {", "plan = { qqqqqqqq = 1,"), tmp_path / "bench.toml")
+    keys = refused.value.mend.removeprefix("use one of: ").split(", ")
+    assert keys == ["from_hz", "to_hz", "points", "connections"]
+    section = FILES.read_text(encoding="utf-8").partition("### `[plan]`")[2].partition("###")[0]
+    assert all(f"`{key}`" in section for key in keys)
+
+
+def test_the_key_of_a_check_is_described():
+    text = blocks(FILES, "toml")[-1][1]
+    checked = replace(parse_kit(text, FILES), checks=("load: agree",))
+    assert tomllib.loads(kit_text(checked))["kit"]["checks"] == ["load: agree"]
+    assert "\n| `checks` |" in FILES.read_text(encoding="utf-8")
+
+
+def commands_of(text):
+    """Return the commands that the help of the program names."""
+    return re.findall(r"^    ([a-z]+) ", text, re.MULTILINE)
+
+
+def test_every_command_and_option_is_described(capsys):
+    page = (ROOT / "docs" / "commands.md").read_text(encoding="utf-8")
+    commands = commands_of(help_of(capsys))
+    assert {"demo", "fit", "plan", "trials"} <= set(commands)
+    for command in commands:
+        section = page.partition(f"## `stdfit {command}`\n")[2].partition("\n## ")[0]
+        assert f"$ stdfit {command}" in section, command
+        options = set(re.findall(r"(?<![\w-])--[a-z][a-z-]*", help_of(capsys, command)))
+        for option in options - {"--help", "--json"}:
+            assert re.search(rf"`{option} [A-Z]", section) or f", `{option} " in section, (command, option)
+
+
+def test_exit_codes_are_described():
+    page = (ROOT / "docs" / "commands.md").read_text(encoding="utf-8")
+    told = {int(code) for code in re.findall(r"^\| (\d+) \|", page, re.MULTILINE)}
+    assert told == {cli.DONE, cli.ANSWER_IS_NO, cli.WRONG_INPUT, cli.OWN_FAULT, cli.STOPPED_BY_USER}
 
 
 def test_defaults_of_a_bench_file(tmp_path):

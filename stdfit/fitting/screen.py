@@ -48,9 +48,9 @@ def screen_points(frequency_hz: FloatArray, readings: ComplexArray) -> Screened:
     """Replace single points that stand out in one connection and not in the others.
 
     A point is foretold by the median of its neighbours, after the phase that grows with frequency is turned
-    back. It is left out when it is off by more than `TIMES_USUAL` times what is usual about it, and its
-    deviation differs from the median deviation of the connections by more than half of itself. Readings of one
-    connection are returned as they are: a narrow resonance would look the same.
+    back. It is left out when it is off by more than `TIMES_USUAL` times what is usual about it, its deviation
+    differs from the median deviation of the connections by more than half of itself, and it is off from both
+    of its sides. Readings of one connection are returned as they are: a narrow resonance would look the same.
 
     Parameters
     ----------
@@ -73,6 +73,7 @@ def screen_points(frequency_hz: FloatArray, readings: ComplexArray) -> Screened:
         typical = np.where(size[0] < size[1], off[0], off[1])
     bar = np.maximum(TIMES_USUAL * usual, SMALLEST)
     replaced = (size > bar) & (np.abs(off - typical) > 0.5 * size)
+    replaced &= _off_from_both_sides(straight, replaced, size)
     replaced &= ~_in_long_runs(replaced)
     mended = readings.copy()
     for k, row in enumerate(replaced):
@@ -81,14 +82,41 @@ def screen_points(frequency_hz: FloatArray, readings: ComplexArray) -> Screened:
     return Screened(mended, replaced)
 
 
+def _off_from_both_sides(
+    straight: ComplexArray, marked: npt.NDArray[np.bool_], size: FloatArray
+) -> npt.NDArray[np.bool_]:
+    """Return which marked points are far from what stands to their left and to their right.
+
+    Where a connection jumps and stays there, the points beside the jump are off from the median of their
+    neighbours, and belong to one side all the same. Common structure is taken out first, as the median of the
+    connections; of two that leaves half a glitch, so a quarter of its size is asked for.
+    """
+    apart = straight - np.median(straight.real, axis=0) - 1j * np.median(straight.imag, axis=0)
+    stands = np.zeros_like(marked)
+    for k, row in enumerate(marked):
+        if not row.any():
+            continue
+        sound = np.flatnonzero(~row)
+        for i in np.flatnonzero(row):
+            sides = [sound[sound < i][-NEIGHBOURS:], sound[sound > i][:NEIGHBOURS]]
+            levels = [
+                np.median(apart[k, side].real) + 1j * np.median(apart[k, side].imag)
+                for side in sides
+                if side.size
+            ]
+            stands[k, i] = all(abs(apart[k, i] - level) > 0.25 * size[k, i] for level in levels)
+    return stands
+
+
 def _in_long_runs(marked: npt.NDArray[np.bool_]) -> npt.NDArray[np.bool_]:
     """Return which marked points stand in runs longer than `LONGEST_RUN`."""
     long = np.zeros_like(marked)
-    for shift in range(LONGEST_RUN + 1):
-        inside = np.ones_like(marked)
-        for step in range(LONGEST_RUN + 1):
-            inside &= np.roll(marked, shift - step, axis=1)
-        long |= inside
+    width = marked.shape[1] - LONGEST_RUN
+    starts = np.ones((marked.shape[0], width), dtype=bool)
+    for step in range(LONGEST_RUN + 1):
+        starts &= marked[:, step : step + width]
+    for step in range(LONGEST_RUN + 1):
+        long[:, step : step + width] |= starts
     return long
 
 

@@ -107,6 +107,8 @@ def least_squares(residual: Function, jacobian: Function, start: FloatArray) -> 
 
 def inverse_of_normal(design: FloatArray) -> FloatArray:
     """Return (JᵀJ)⁻¹ by singular values, columns scaled first; unreachable directions get none of it."""
+    if design.shape[1] == 0:
+        return np.zeros((0, 0))
     scale = np.linalg.norm(design, axis=0)
     scale[scale == 0.0] = 1.0
     _, singular, right = np.linalg.svd(design / scale, full_matrices=False)

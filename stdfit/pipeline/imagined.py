@@ -1,6 +1,6 @@
 """A bench on which nothing has been measured yet, with the readings that one would expect."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -10,8 +10,13 @@ from stdfit.base.errors import BenchError
 from stdfit.base.records import Sweep
 from stdfit.circuits.standard import PARAMETERS, reflection
 from stdfit.data.bench import Bench, StandardEntry
+from stdfit.fitting.observed import Observed
+from stdfit.pipeline.path import kit_of
 from stdfit.pipeline.plan import with_connections
 from stdfit.pipeline.prepare import Prepared, prepare
+from stdfit.pipeline.settle import choose_all, settle
+from stdfit.uncertainty.smooth import LENGTHS_PER_SPAN, bumps
+from stdfit.uncertainty.sources import SmoothSource
 
 USUAL: dict[str, dict[str, float]] = {
     "open": {"offset_delay_ps": 20.0, "offset_loss_gohm_per_s": 1.0, "c0": 40.0},
@@ -20,9 +25,20 @@ USUAL: dict[str, dict[str, float]] = {
 }
 """What a standard is taken to be where the bench does not say (common practice, no source)."""
 
+DRAWS_PER_LENGTH = 3
+"""Analysers that are imagined for each correlation length; of all, the one with the middle limit is taken."""
+
+SEED = 1
+"""The same analysers are imagined every time, so that a plan can be made again."""
+
 
 def imagine(bench: Bench) -> Prepared:
     """Return a bench without readings as it is expected to be, with as many connections as are planned.
+
+    Standards follow their models, but no analyser reads them so: what its residuals do to the readings passes
+    for misfit in part, and costs as much of the band as the residuals' own bound. So analysers are drawn with
+    errors of the stated size and any correlation length, and the readings of the one whose kit has the middle
+    limit are taken.
 
     Raises
     ------
@@ -38,7 +54,42 @@ def imagine(bench: Bench) -> Prepared:
     if bench.residual is None:
         told.append("no analyser residuals are stated: those of a modest calibration are assumed")
     connections = bench.plan.connections if bench.plan is not None else 1
-    return replace(with_connections(prepared, connections), warnings=tuple(told))
+    expected = replace(with_connections(prepared, connections), warnings=tuple(told))
+    rng = np.random.default_rng(SEED)
+    common = sum(isinstance(source, SmoothSource) and source.common for source in expected.sources)
+    # Each residual has each length equally often, in an order of its own.
+    lengths = [rng.permutation(np.tile(LENGTHS_PER_SPAN, DRAWS_PER_LENGTH)) for _ in range(common)]
+    drawn = [as_read(expected, own, rng) for own in zip(*lengths, strict=True)]
+    limits = [kit_of(one, settle(one, choose_all(one))).limit.limit_hz for one in drawn]
+    return drawn[int(np.argsort(limits)[len(limits) // 2])]
+
+
+def as_read(prepared: Prepared, lengths_per_span: Sequence[float], rng: np.random.Generator) -> Prepared:
+    """Return the bench as an analyser reads it whose residuals are drawn.
+
+    Parameters
+    ----------
+    prepared : Prepared
+    lengths_per_span : sequence of float
+        Correlation length of each common source, in units of the span of the readings.
+    rng : numpy Generator
+    """
+    low = min(float(one.frequency_hz[0]) for one in prepared.observed)
+    high = max(float(one.frequency_hz[-1]) for one in prepared.observed)
+    gammas = [one.gamma for one in prepared.observed]
+    common = [source for source in prepared.sources if isinstance(source, SmoothSource) and source.common]
+    for source, length in zip(common, lengths_per_span, strict=True):
+        bases = [bumps(one.frequency_hz, low, high, length * (high - low)) for one in prepared.observed]
+        heights = rng.standard_normal((bases[0].shape[1], 2)) @ np.array([1.0, 1j])
+        gammas = [
+            gamma + (basis @ heights) * profile
+            for gamma, basis, profile in zip(gammas, bases, source.profiles, strict=True)
+        ]
+    observed = tuple(
+        Observed(one.name, one.kind, one.frequency_hz, gamma, one.deviations)
+        for one, gamma in zip(prepared.observed, gammas, strict=True)
+    )
+    return replace(prepared, observed=observed)
 
 
 def imagined_sweeps(bench: Bench) -> Mapping[str, list[Sweep]]:

@@ -21,7 +21,9 @@ def plan_text(plan: Plan, *, measured: bool) -> str:
     """
     lines = [("" if measured else "predicted, before any reading: ") + verdict(plan.kit)]
     if not measured:
-        lines.append("  (parts that follow their models; what only readings can show comes on top)")
+        lines.append(
+            "  (parts that follow their models, a typical analyser with errors of the stated or assumed size)"
+        )
     lines += ["", f"What makes up the bound of '{plan.standard}' at {frequency(plan.at_hz)}"]
     rows = [["source", "part of variance", "alone (95 %)"]]
     rows += [

@@ -15,7 +15,7 @@ from stdfit.uncertainty.region import CIRCULAR
 from stdfit.uncertainty.sources import SmoothSource, reading_variance
 from stdfit.validity.choose import Choice, choose, thin, weights_for
 from stdfit.validity.define import Settled
-from stdfit.validity.misfit import expected_power, misfit
+from stdfit.validity.misfit import misfit
 
 MISFIT_POINTS = 200
 """About how many values of the misfit a kit keeps for each standard."""
@@ -86,33 +86,20 @@ def settle(prepared: Prepared, choices: Sequence[Choice]) -> Settled:
         push(design, weight, one.gamma - gamma, one.frequency_hz, span, sources, k, [one.frequency_hz.size])
         for k, ((gamma, design), weight, one) in enumerate(zip(models, weights, observed, strict=True))
     ]
-    inverse, stacked = shares_of(pushed, sources, precision, places_of(problem))
+    _, stacked = shares_of(pushed, sources, precision, places_of(problem))
     shares = [replace(share, covariances=share.covariances[:, 0]) for share in stacked]
     misfits = []
-    for k, ((gamma, design), one) in enumerate(zip(models, observed, strict=True)):
-        points = slice(None, None, max(1, one.frequency_hz.size // MISFIT_POINTS))
-        f = one.frequency_hz[points]
-        expected = expected_power(design[points], f, points, span, sources, pushed, inverse, k)
-        misfits.append(
-            (
-                f,
-                misfit(
-                    one.gamma - gamma,
-                    one.frequency_hz,
-                    float(reading_variance(sources, k)[1]),
-                    expected,
-                    points,
-                )[0],
-            )
-        )
-    wrong = SmoothSource(
-        "misfit",
-        tuple(
-            np.interp(one.frequency_hz, *own) / CIRCULAR + 0j
-            for one, own in zip(observed, misfits, strict=True)
-        ),
-        common=False,
-    )
+    for k, ((gamma, _), one, choice) in enumerate(zip(models, observed, choices, strict=True)):
+        f = one.frequency_hz
+        points = slice(None, None, max(1, f.size // MISFIT_POINTS))
+        explained = np.interp(f[points], choice.explained_hz, choice.explained)
+        _, white = reading_variance(sources, k)
+        misfits.append((f[points], misfit(one.gamma - gamma, f, float(white), explained, points)))
+    profiles = [
+        np.asarray(np.interp(one.frequency_hz, *own) / CIRCULAR, dtype=complex)
+        for one, own in zip(observed, misfits, strict=True)
+    ]
+    wrong = SmoothSource("misfit", tuple(profiles), common=False)
     repushed = [
         push(design, weight, one.gamma - gamma, one.frequency_hz, span, [wrong], k, [one.frequency_hz.size])
         for k, ((gamma, design), weight, one) in enumerate(zip(models, weights, observed, strict=True))

@@ -4,7 +4,8 @@ import os
 import zlib
 from collections.abc import Callable, Iterable, Sequence
 from concurrent.futures import ProcessPoolExecutor
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
+from typing import Any
 
 import numpy as np
 
@@ -20,6 +21,7 @@ NOT_STATED = {"nothing stated": "plain", "nothing stated, one connection": "one 
 
 DEMO = "demo"
 LIKE = "like the bench"
+ALL = "all"
 
 
 @dataclass(frozen=True, slots=True)
@@ -139,7 +141,7 @@ def run(
     rows = [row_of(name, found[name]) for name in chosen]
     if len(rows) == 1:
         return rows
-    return [*rows, row_of("all", [scores for name in chosen for scores in found[name]])]
+    return [*rows, row_of(ALL, [scores for name in chosen for scores in found[name]])]
 
 
 def _trial_of(job: tuple[str, int, int, float, Scenario | None]) -> list[Score] | None:
@@ -180,4 +182,20 @@ def study_table(rows: Sequence[Row]) -> str:
         f"| {100 * row.quantities:.1f} % | {100 * row.limits_true:.1f} % | {row.limit:.2f} | {row.sharpness:.2f} |"
         for row in rows
     ]
+    failed = sum(row.failed for row in rows if row.family != ALL)
+    if failed:
+        lines += ["", f"{failed} of the benches gave no kit, and are left out of the figures."]
     return "\n".join(lines)
+
+
+def study_data(rows: Sequence[Row]) -> dict[str, Any]:
+    """Return the figures as data; None where no kit came out and there are none."""
+    return {
+        "families": [
+            {
+                key: None if isinstance(value, float) and np.isnan(value) else value
+                for key, value in asdict(row).items()
+            }
+            for row in rows
+        ]
+    }

@@ -7,11 +7,14 @@ they can be known from few repeats.
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import TypeVar
 
 import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray, as_pairs, frozen_float
 from stdfit.fitting.observed import Observed, noise_of
+
+Array = TypeVar("Array", FloatArray, ComplexArray)
 
 PARTS = ("contact resistance", "plane shift", "contact reactance")
 """The lumped parts: series resistance in Ω, shift of the plane in ps, imbalance L/Z0 − C·Z0 in ps."""
@@ -153,10 +156,12 @@ def _leftover(one: Observed, variance: FloatArray, floor: float, reference_ohm: 
     return np.asarray(np.sqrt(np.maximum(excess, 0.0)))
 
 
-def running_mean(values: FloatArray, window: int) -> FloatArray:
-    """Return the mean over a centred window, shorter at the ends, for values of shape (n,)."""
+def running_mean(values: Array, window: int) -> Array:
+    """Return the mean over a centred window along the last axis, shorter at the ends."""
     half = window // 2
-    sums = np.concatenate([[0.0], np.cumsum(values)])
-    place = np.arange(values.size)
-    low, high = np.maximum(place - half, 0), np.minimum(place + half + 1, values.size)
-    return np.asarray((sums[high] - sums[low]) / (high - low))
+    start = np.zeros((*values.shape[:-1], 1), dtype=values.dtype)
+    sums = np.concatenate([start, np.cumsum(values, axis=-1)], axis=-1)
+    place = np.arange(values.shape[-1])
+    low, high = np.maximum(place - half, 0), np.minimum(place + half + 1, place.size)
+    mean: Array = (sums[..., high] - sums[..., low]) / (high - low)
+    return mean

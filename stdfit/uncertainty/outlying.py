@@ -77,15 +77,17 @@ def without_outlying(
     -------
     observed : list of Observed
     left_out : list of (standard, connection, distance)
-        Connections counted from 0 in the order of the original readings, with the mean distance |ΔΓ| from the
-        others.
+        Connections counted from 0 in the order of the original readings, with the root mean square distance
+        |ΔΓ| from the mean of the others.
     """
     kept = list(observed)
     numbers = [list(range(one.connections)) for one in observed]
     left_out = []
     while (found := outlying_connection(kept, reference_ohm, assumed_sd)) is not None:
         s, k = found
-        distance = float(np.sqrt(np.mean(np.abs(kept[s].deviations[k]) ** 2)))
+        # As in the test: from the mean of the others, not from a mean that it is part of.
+        apart = kept[s].connections / (kept[s].connections - 1)
+        distance = apart * float(np.sqrt(np.mean(np.abs(kept[s].deviations[k]) ** 2)))
         left_out.append((s, numbers[s].pop(k), distance))
         kept[s] = kept[s].without(k)
     return kept, left_out

@@ -10,12 +10,12 @@ from functools import partial
 
 import numpy as np
 
-from stdfit.base.arrays import FloatArray
+from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.fitting.observed import Observed
 from stdfit.fitting.problem import Problem
 from stdfit.fitting.roles import SHAPES, Wish, build_problem, places_of, starting_values
 from stdfit.fitting.solve import least_squares
-from stdfit.uncertainty.budget import expanded, radius, shares_of
+from stdfit.uncertainty.budget import Share, expanded, radius, shares_of
 from stdfit.uncertainty.push import push
 from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source, WhiteSource, reading_variance
 from stdfit.validity.limit import first_gap
@@ -46,7 +46,7 @@ INDEPENDENT_PIECES = 4.0
 """Independent values of a smooth error over the sweep, when readings are weighed against evidence."""
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Choice:
     """What to fit, over which range.
 
@@ -62,6 +62,8 @@ class Choice:
         Offset parameters, value and standard uncertainty, for standards that share the line.
     tried : tuple of (order, limit in Hz)
         The best limit of each order that was tried, simplest first.
+    explained_hz, explained : arrays of shape (m,)
+        Power that the sources are expected to leave in the residual of the richest order, fitted to all readings.
     """
 
     shape: str
@@ -69,6 +71,8 @@ class Choice:
     limit_hz: float
     offset: dict[str, tuple[float, float | None]]
     tried: tuple[tuple[str, float], ...]
+    explained_hz: FloatArray
+    explained: FloatArray
 
 
 def weights_for(sources: Sequence[Source], index: int, count: int) -> FloatArray:
@@ -142,9 +146,26 @@ def choose(
         Tolerance.
     reference_ohm : float
     """
-    candidates = []
-    for rank, shape in enumerate(shapes_for(observed.kind, polynomial, wish)):
-        candidates += _ranges(observed, sources, wish, shape, rank, within, reference_ohm)
+    f = observed.frequency_hz
+    shapes = shapes_for(observed.kind, polynomial, wish)
+    most = max(len(SHAPES[observed.kind][shape]) for shape in shapes)
+    cuts = [cut for cut in (round(f.size * k / CUTS) for k in range(2, CUTS + 1)) if cut >= max(8, 2 * most)]
+    cuts = sorted(set(cuts)) or [f.size]
+    points = slice(None, None, max(1, f.size // BOUND_POINTS))
+
+    def fit(shape: str) -> _Order:
+        return _fit_order(observed, sources, wish, shape, cuts, points, reference_ohm)
+
+    orders = [fit(shape) for shape in shapes]
+    # What the richest order can follow, fitted to all readings, is no excuse for any order and range.
+    richest = shapes_for(observed.kind, "chosen", wish)[-1]
+    reference = orders[-1] if richest == shapes[-1] else fit(richest)
+    explained = reference.expected()[-1]
+    candidates = [
+        candidate
+        for rank, order in enumerate(orders)
+        for candidate in _candidates(observed, sources, order, rank, explained, cuts, points, within)
+    ]
     best = max(candidate.limit_hz for candidate in candidates)
     near = [candidate for candidate in candidates if candidate.limit_hz >= NEAR * best]
     tightest = min(candidate.mean_bound for candidate in near)
@@ -156,86 +177,111 @@ def choose(
     furthest: dict[str, float] = {}
     for candidate in candidates:
         furthest[candidate.shape] = max(candidate.limit_hz, furthest.get(candidate.shape, 0.0))
-    return Choice(chosen.shape, chosen.top_hz, chosen.limit_hz, chosen.offset(), tuple(furthest.items()))
+    return Choice(
+        shape=chosen.shape,
+        top_hz=float(f[cuts[chosen.cut] - 1]),
+        limit_hz=chosen.limit_hz,
+        offset=_offset(orders[chosen.rank], chosen.cut),
+        tried=tuple(furthest.items()),
+        explained_hz=f[points],
+        explained=explained,
+    )
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class _Order:
+    """One order, fitted once, and what follows from it for c ranges at m points."""
+
+    shape: str
+    problem: Problem
+    scaled: FloatArray  # (c, p)
+    shares: list[Share]
+    radius: FloatArray  # (c, m)
+    left: ComplexArray  # (c, n)
+    expected: Callable[[], FloatArray]  # (c, m)
 
 
 @dataclass(frozen=True, slots=True)
 class _Candidate:
+    """One order over one range."""
+
     shape: str
     rank: int
-    top_hz: float
+    cut: int
     limit_hz: float
     mean_bound: float
-    offset: Callable[[], dict[str, tuple[float, float | None]]]
 
 
-def _ranges(
+def _fit_order(
     observed: Observed,
     sources: Sequence[Source],
     wish: Wish,
     shape: str,
-    rank: int,
-    within: float,
+    cuts: Sequence[int],
+    points: slice,
     reference_ohm: float,
-) -> list[_Candidate]:
-    """Fit one order, then work out limit and bound of every range."""
+) -> _Order:
+    """Fit one order, then work out what every range would give."""
     f = observed.frequency_hz
     weight = weights_for(sources, 0, f.size)
     alone = replace(wish, same_offset_as=None)
     first = f <= f[0] + FIRST_FIT * (f[-1] - f[0])
     first &= np.arange(f.size) % max(1, f.size // FIRST_POINTS) == 0
+    starts = starting_values([observed], reference_ohm)
     problem = build_problem(
-        [observed],
-        [alone],
-        [shape],
-        [np.where(first, weight, 0.0)],
-        starting_values([observed], reference_ohm),
-        reference_ohm,
+        [observed], [alone], [shape], [np.where(first, weight, 0.0)], starts, reference_ohm
     )
     target, precision = problem.evidence()
     solution = least_squares(problem.residual, problem.jacobian, target)
     gamma, design = problem.model(0, problem.expand(solution.values))
     residual = observed.gamma - gamma
 
-    fewest = max(8, 2 * target.size)
-    cuts = sorted({round(f.size * k / CUTS) for k in range(2, CUTS + 1)})
-    cuts = [cut for cut in cuts if cut >= fewest] or [f.size]
     span = (float(f[0]), float(f[-1]))
     pushed = push(design, weight, residual, f, span, sources, 0, cuts)
     inverse, shares = shares_of([pushed], sources, precision, places_of(problem))
     pull = precision * (target - solution.values)
     step = np.einsum("cpq,cq->cp", inverse, pushed.projected + pull)
+    return _Order(
+        shape=shape,
+        problem=problem,
+        scaled=solution.values + step,
+        shares=shares,
+        radius=radius(design[points], shares),
+        left=residual - step @ design.T,
+        expected=partial(
+            expected_power, design[points], f[points], points, span, sources, pushed, inverse, 0
+        ),
+    )
 
-    points = slice(None, None, max(1, f.size // BOUND_POINTS))
-    left = residual - step @ design.T
-    noise = sum(source.variances[0] for source in sources if isinstance(source, WhiteSource))
-    expected = expected_power(design[points], f[points], points, span, sources, [pushed], inverse, 0)
-    bound = radius(design[points], shares) + misfit(left, f, noise, expected, points)
 
+def _candidates(
+    observed: Observed,
+    sources: Sequence[Source],
+    order: _Order,
+    rank: int,
+    explained: FloatArray,
+    cuts: Sequence[int],
+    points: slice,
+    within: float,
+) -> list[_Candidate]:
+    """Return limit and mean bound of one order over every range."""
+    f = observed.frequency_hz
+    _, white = reading_variance(sources, 0)
+    bound = order.radius + misfit(order.left, f, float(white), explained, points)
     candidates = []
-    for c, cut in enumerate(cuts):
-        limit, _ = first_gap(f[points], bound[c], within)
+    for cut in range(len(cuts)):
+        limit, _ = first_gap(f[points], bound[cut], within)
         below = f[points] <= max(limit, f[points][min(4, bound.shape[1] - 1)])
-        candidates.append(
-            _Candidate(
-                shape=shape,
-                rank=rank,
-                top_hz=float(f[cut - 1]),
-                limit_hz=limit,
-                mean_bound=float(bound[c][below].mean()),
-                offset=partial(_offset, problem, solution.values + step[c], shares, c),
-            )
-        )
+        candidates.append(_Candidate(order.shape, rank, cut, limit, float(bound[cut][below].mean())))
     return candidates
 
 
-def _offset(
-    problem: Problem, scaled: FloatArray, shares: Sequence[object], cut: int
-) -> dict[str, tuple[float, float | None]]:
-    """Return the offset parameters of a candidate with their standard uncertainties."""
-    values = problem.expand(scaled)
-    one_cut = [replace(share, covariances=share.covariances[:, cut]) for share in shares]  # type: ignore[attr-defined,type-var]
-    u, _ = expanded(np.eye(scaled.size), one_cut)  # type: ignore[arg-type]
+def _offset(order: _Order, cut: int) -> dict[str, tuple[float, float | None]]:
+    """Return the offset parameters of an order over one range, with their standard uncertainties."""
+    problem = order.problem
+    values = problem.expand(order.scaled[cut])
+    one_cut = [replace(share, covariances=share.covariances[:, cut]) for share in order.shares]
+    u, _ = expanded(np.eye(order.scaled.shape[1]), one_cut)
     place = {i: k for k, i in enumerate(problem.fitted)}
     return {
         quantity.parameter.name: (

@@ -16,14 +16,17 @@ NEAR_ZERO = 2.0
 CHANCE = 3.0
 """And beyond this many times the chance spread of a quantile from so many draws."""
 
+SPREAD = 0.95
+"""Relative standard deviation of a 95 % radius from N draws, times √N: on a line; 0.73 where they are circular."""
+
 
 def check_lines(compared: Sequence[Compared], draws: int) -> tuple[str, ...]:
     """Return one or two lines for each standard.
 
-    The relative spread of a 95 % radius from N draws is about 1/√N for a circular normal value: the quantile's
-    variance 0.05·0.95/(N·p²) with the density p = 0.05·2.448 per unit of the component's standard deviation.
+    A quantile from N draws has the variance 0.05·0.95/(N·p²), p the density there: p = 0.1169/σ at 1.960 σ of a
+    normal value on a line, and 0.1224/σ at 2.448 σ per component of a circular one.
     """
-    bar = max(DIFFERENT, CHANCE * 0.73 / np.sqrt(draws))
+    bar = max(DIFFERENT, CHANCE * SPREAD / np.sqrt(draws))
     lines = []
     for one in compared:
         ratio = one.drawn / np.maximum(one.linear, 1e-300)

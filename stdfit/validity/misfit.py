@@ -8,7 +8,7 @@ from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.uncertainty.connections import running_mean
 from stdfit.uncertainty.push import Pushed
 from stdfit.uncertainty.region import CIRCULAR
-from stdfit.uncertainty.smooth import LENGTHS_PER_SPAN, bumps
+from stdfit.uncertainty.smooth import bumps, correlation_lengths
 from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source
 
 NOISE_WINDOWS = 200
@@ -23,8 +23,8 @@ ELECTRICALLY_SHORT = 0.1
 LINE_PER_POWER = float(CIRCULAR / np.sqrt(2.0))
 """95 % radius of a circular complex value in units of its total standard deviation: 1.73."""
 
-LONGEST = 0
-"""Place of the longest correlation length, which explains the least once the fit has followed it."""
+EULER = 0.5772
+"""Mean of the standard Gumbel law: the largest of k exponential variables has the mean ln k + 0.5772."""
 
 
 def expected_power(
@@ -33,15 +33,14 @@ def expected_power(
     points: slice,
     span: tuple[float, float],
     sources: Sequence[Source],
-    pushed: Sequence[Pushed],
+    pushed: Pushed,
     inverse: FloatArray,
     index: int,
 ) -> FloatArray:
     """Return E|r|² that smooth and lumped sources leave in one standard's residual after the fit.
 
-    r = δ − J·M⁻¹·Σ Re(Jᴴ W δ): what the fit cannot follow of each basis vector of each source. Smooth sources
-    are taken at the longest correlation length: it leaves the least, so that nothing is explained away which
-    only a convenient choice of length would explain.
+    r = δ − J·M⁻¹·Σ Re(Jᴴ W δ): what the fit cannot follow of each basis vector of each source. The correlation
+    length of a smooth source is not known; the power is the mean over the lengths that are tried.
 
     Parameters
     ----------
@@ -53,8 +52,8 @@ def expected_power(
         Where they lie in the readings.
     span : (float, float)
     sources : sequence of Source
-    pushed : sequence of Pushed
-        One for each standard.
+    pushed : Pushed
+        The sums over the readings of this standard, fitted on its own.
     inverse : array of shape (c, p, p)
         M⁻¹ at each cut.
     index : int
@@ -65,21 +64,23 @@ def expected_power(
     array of shape (c, m)
     """
     power = np.zeros((inverse.shape[0], frequency_hz.size))
-    basis = bumps(frequency_hz, span[0], span[1], LENGTHS_PER_SPAN[LONGEST] * (span[1] - span[0]))
+    lengths = correlation_lengths(span[1] - span[0])
     for k, source in enumerate(sources):
         if isinstance(source, SmoothSource):
-            acting = source.profiles[index][points, None] * basis
-            direct = np.concatenate([acting, 1j * acting], axis=1)
-            images = [one.images[k][LONGEST] for one in pushed]
-            image = sum(images) if source.common else images[index]
+            for image, length in zip(pushed.images[k], lengths, strict=True):
+                acting = source.profiles[index][points, None] * bumps(frequency_hz, *span, float(length))
+                direct = np.concatenate([acting, 1j * acting], axis=1)
+                power += _left(direct, design, inverse @ image) / lengths.size
         elif isinstance(source, LumpedSource):
             direct = source.vectors[index][points, None]
-            image = pushed[index].images[k][0]
-        else:
-            continue
-        left = direct - design @ (inverse @ image)
-        power += np.sum(left.real**2 + left.imag**2, axis=-1)
+            power += _left(direct, design, inverse @ pushed.images[k][0])
     return power
+
+
+def _left(direct: ComplexArray, design: ComplexArray, step: FloatArray) -> FloatArray:
+    """Return the summed power of what is left of some vectors after the fit has made its steps."""
+    left = direct - design @ step
+    return np.asarray(np.sum(left.real**2 + left.imag**2, axis=-1))
 
 
 def misfit(
@@ -103,20 +104,19 @@ def misfit(
     frequency_hz : array of shape (n,)
     noise_variance : float
         White noise of the mean reading, per component.
-    expected : array of shape (..., m)
+    expected : array of shape (m,)
         From `expected_power`.
     points : slice
         Which of the n readings are wanted.
     """
     count = residual.shape[-1]
     window = 1 + 2 * (count // (2 * NOISE_WINDOWS))
-    flat = residual.reshape(-1, count)
-    averaged = np.array(
-        [running_mean(row.real, window) + 1j * running_mean(row.imag, window) for row in flat]
-    )
+    averaged = running_mean(residual, window)
     reach = max(1, count // REACH_WINDOWS)
-    largest = running_maximum(np.abs(averaged) ** 2, reach)[:, points].reshape(expected.shape)
-    explained = expected + 2.0 * noise_variance / window
+    largest = running_maximum(np.abs(averaged) ** 2, reach)[..., points]
+    # The largest of k independent powers of noise is about ln k + 0.58 times their mean (Gumbel's law).
+    independent = max(1.0, (2 * reach + 1) / window)
+    explained = expected + (np.log(independent) + EULER) * 2.0 * noise_variance / window
     excess = np.sqrt(np.maximum(largest - explained, 0.0))
     bound = excess * (excess + LINE_PER_POWER * np.sqrt(explained)) / np.sqrt(np.maximum(largest, 1e-300))
     return vanishing_at_zero(np.asarray(bound), frequency_hz[points])

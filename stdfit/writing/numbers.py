@@ -41,7 +41,9 @@ def decimals(kit: Kit, definition: Definition) -> list[int]:
 
 def plus_minus(value: float, half: float, digits: int) -> str:
     """Return value ± half-width, the value with the given decimals, the half-width with two digits."""
-    return f"{rounded(value, digits)} ± {half:.2g}" if half < 99.5 else f"{rounded(value, digits)} ± {half:.0f}"
+    return (
+        f"{rounded(value, digits)} ± {half:.2g}" if half < 99.5 else f"{rounded(value, digits)} ± {half:.0f}"
+    )
 
 
 def rounded(value: float, digits: int) -> str:

@@ -47,7 +47,10 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
             ),
         ]
     )
-    lines += ["", "What to type in (± 95 %); take all values of a standard together, since single ones trade off"]
+    lines += [
+        "",
+        "What to type in (± 95 %); take all values of a standard together, since single ones trade off",
+    ]
     for definition in kit.definitions:
         lines += _definition(kit, definition)
     lines += ["", *ladder_lines(kit)]

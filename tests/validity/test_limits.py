@@ -1,0 +1,143 @@
+"""Limits of kits and standards: each cause has its words, and every route gives the same limit."""
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from stdfit.base.errors import RequestError
+from stdfit.uncertainty.budget import Share
+from stdfit.validity.kit import curve, total_covariance
+from stdfit.validity.limits import TOLERANCES, ladder, largest_share, limits, shares_at
+from stdfit.writing.kit_file import kit_text
+from stdfit.writing.kit_reading import parse_kit
+
+
+def of(kit, name, within):
+    ((_, each),) = limits(kit, [within])
+    return each[[one.name for one in kit.definitions].index(name)]
+
+
+def test_the_readings_end(modest_kit):
+    limit = of(modest_kit, "load", 0.1)
+    assert limit.limit_hz == modest_kit.definition("load").read_top_hz
+    assert limit.reason == "the readings end here"
+
+
+def test_the_connector_ends_first(modest_kit):
+    limit = of(replace(modest_kit, top_hz=4e9), "load", 0.1)
+    assert limit.limit_hz == 4e9
+    assert "next mode of the connector" in limit.reason
+
+
+def test_a_connector_that_ends_above_the_readings_does_not_matter(modest_kit):
+    for top_hz in (6e9, 18e9, np.inf):
+        assert of(replace(modest_kit, top_hz=top_hz), "load", 0.1).reason == "the readings end here"
+
+
+def test_a_connector_that_ends_below_the_readings(modest_kit):
+    """Nothing may be said above the connector's top, not even at the first reading."""
+    limit = of(replace(modest_kit, top_hz=10e6), "load", 0.1)
+    assert limit.limit_hz <= 50e6
+
+
+def test_a_source_is_named_with_its_part(modest_kit):
+    limit = of(modest_kit, "short", 0.015)
+    assert 0.0 < limit.limit_hz < 6e9
+    name, _, part = limit.reason.rpartition(", ")
+    assert name in {share.name for share in modest_kit.shares}
+    assert 0 < float(part.split(" %")[0]) <= 100
+
+
+def with_misfit(kit, bound):
+    first = kit.definitions[0]
+    misfit = replace(first, misfit_hz=np.array([50e6, 3e9, 3.1e9, 6e9]), misfit=np.array(bound))
+    return replace(kit, definitions=(misfit, *kit.definitions[1:]))
+
+
+def test_the_misfit_ends_it(modest_kit):
+    limit = of(with_misfit(modest_kit, [0.0, 0.0, 0.5, 0.5]), "open", 0.05)
+    assert 3e9 < limit.limit_hz < 3.1e9
+    assert limit.reason == "the readings leave the model here (misfit)"
+
+
+def test_a_misfit_at_one_point_alone_is_not_stepped_over(modest_kit):
+    kit = with_misfit(modest_kit, [0.0, 0.0, 0.5, 0.0])
+    assert of(kit, "open", 0.05).limit_hz < 3.1e9
+
+
+def test_the_kit_ends_with_its_worst_standard(modest_kit):
+    for whole, each in limits(modest_kit, TOLERANCES):
+        assert whole.limit_hz == min(one.limit_hz for one in each)
+        names = [
+            d.name
+            for d, one in zip(modest_kit.definitions, each, strict=True)
+            if one.limit_hz == whole.limit_hz
+        ]
+        assert whole.reason.split(": ")[0] in names
+
+
+def test_the_bound_keeps_the_tolerance_up_to_the_limit(modest_kit):
+    for definition in modest_kit.definitions:
+        limit = of(modest_kit, definition.name, 0.02)
+        below = np.linspace(definition.read_low_hz, limit.limit_hz, 777)
+        assert (curve(modest_kit, definition, below)[1] <= 0.02 * (1 + 1e-3)).all()
+        if limit.limit_hz < definition.read_top_hz:
+            above = curve(modest_kit, definition, np.array([limit.limit_hz * 1.01]))[1]
+            assert above[0] > 0.02
+
+
+def test_a_bound_that_fails_from_the_first_reading_on_gives_0(modest_kit):
+    limit = of(modest_kit, "open", 1e-9)
+    assert limit.limit_hz == 0.0
+    assert limit.reason
+
+
+def test_the_ladder_rises_with_the_tolerance_and_holds_the_one_asked_for(modest_kit):
+    rungs = ladder(replace(modest_kit, within=0.017))
+    tolerances = [rung.within for rung in rungs]
+    assert tolerances == sorted({*TOLERANCES, 0.017})
+    for column in [[rung.kit_hz for rung in rungs], *np.array([rung.standards_hz for rung in rungs]).T]:
+        assert (np.diff(column) >= 0.0).all()
+    assert rungs[0].kit_hz < rungs[-1].kit_hz
+
+
+def test_the_kit_carries_its_own_limits(modest_kit):
+    ((whole, each),) = limits(modest_kit, [modest_kit.within])
+    assert modest_kit.limit == whole
+    assert [definition.limit for definition in modest_kit.definitions] == each
+    assert modest_kit.ladder == ladder(modest_kit)
+
+
+def test_a_kit_file_gives_the_limits_of_the_fit(modest_kit):
+    """No command goes back to the readings: the file must hold all that a limit needs, to the last digit."""
+    read = parse_kit(kit_text(modest_kit), "kit.toml")
+    assert limits(read, TOLERANCES) == limits(modest_kit, TOLERANCES)
+    for definition, other in zip(read.definitions, modest_kit.definitions, strict=True):
+        grid = np.linspace(10e6, 6e9, 99)
+        for one, two in zip(curve(read, definition, grid), curve(modest_kit, other, grid), strict=True):
+            np.testing.assert_array_equal(one, two)
+
+
+@pytest.mark.parametrize("hertz", [0.0, -1e9, 6e9 + 1.0, np.nan, np.inf])
+def test_no_bound_is_given_where_nothing_is_known(modest_kit, hertz):
+    with pytest.raises(RequestError, match="lies outside the readings of 'open'") as caught:
+        curve(modest_kit, modest_kit.definition("open"), np.array([1e9, hertz]))
+    assert "up to 6000000000 Hz" in caught.value.mend
+
+
+def test_an_unknown_standard(modest_kit):
+    with pytest.raises(RequestError, match="no standard named 'thru'") as caught:
+        modest_kit.definition("thru")
+    assert caught.value.mend == "it holds: open, short, load"
+
+
+def test_parts_of_the_variance(modest_kit):
+    """By hand: one quantity acts on the real part, the other on the imaginary part."""
+    design = np.array([1.0, 1.0j])
+    one = Share("one", np.inf, np.array([[[3.0, 0.0], [0.0, 0.0]]]))
+    other = Share("other", np.inf, np.array([[[0.0, 0.0], [0.0, 0.5]], [[0.0, 0.0], [0.0, 1.0]]]))
+    np.testing.assert_allclose(shares_at(design, [one, other]), [0.75, 0.25])
+    assert largest_share(design, [other, one]) == ("one", 0.75)
+    assert total_covariance([one, other]).tolist() == [[3.0, 0.0], [0.0, 1.0]]
+    assert shares_at(np.zeros(2), [one, other]).tolist() == [0.0, 0.0]
