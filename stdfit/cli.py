@@ -103,7 +103,7 @@ def _parser() -> _Parser:
     trials.add_argument("--benches", metavar="N", type=_count, default=25, help="benches of each family (25)")
     trials.add_argument("--family", metavar="NAME", action="append", help="only this family; may be repeated")
     trials.add_argument("--within", metavar="X", type=_tolerance, default=0.02, help="tolerance (0.02)")
-    trials.add_argument("--seed", metavar="S", type=int, default=1, help="seed of all chance (1)")
+    trials.add_argument("--seed", metavar="S", type=_seed, default=1, help="seed of all chance (1)")
     return parser
 
 
@@ -126,6 +126,13 @@ def _number(text: str) -> float:
         return float(text)
     except ValueError:
         raise argparse.ArgumentTypeError(f"{text!r} is not a number") from None
+
+
+def _seed(text: str) -> int:
+    value = int(text)
+    if not 0 <= value < 2**63:
+        raise argparse.ArgumentTypeError(f"'{text}' is no whole number from 0 on")
+    return value
 
 
 def _draws(text: str) -> int:
@@ -356,9 +363,12 @@ def _new(asked: argparse.Namespace) -> int:
 
 
 def _trials(asked: argparse.Namespace) -> int:
+    from stdfit.base.errors import RequestError
     from stdfit.trials.like import scenario_like
     from stdfit.trials.study import run, study_data, study_table
 
+    if asked.like is not None and asked.family:
+        raise RequestError("a bench and families are asked for at once", "leave one of them out")
     like = None if asked.like is None else scenario_like(asked.like)
     with _progress("benches") as tell:
         rows = run(

@@ -59,10 +59,20 @@ class Observed:
 
 def without_delay(frequency_hz: FloatArray, gamma: ComplexArray) -> ComplexArray:
     """Turn back the phase that grows with frequency, so that what is left is smooth from point to point."""
-    step = gamma[1:] * gamma[:-1].conj()
-    spacing = float(np.median(np.diff(frequency_hz)))
-    turn = np.angle(step.sum()) / spacing
-    return np.asarray(gamma * np.exp(-1j * turn * frequency_hz))
+    return np.asarray(gamma * np.exp(-1j * phase_slope(frequency_hz, gamma) * frequency_hz))
+
+
+def phase_slope(frequency_hz: FloatArray, gamma: ComplexArray) -> float:
+    """Return the slope of the phase in rad/Hz, a straight line through it weighted by |Γ|.
+
+    The phase is unwrapped step by step, so that it must turn by less than half a turn between points.
+    """
+    phase = np.unwrap(np.angle(gamma))
+    weight = np.abs(gamma)
+    if not weight.any():
+        return 0.0
+    offset = frequency_hz - np.average(frequency_hz, weights=weight)
+    return float(np.sum(weight * offset * phase) / np.sum(weight * offset**2))
 
 
 def noise_of(values: ComplexArray) -> float:

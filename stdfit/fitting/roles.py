@@ -7,7 +7,7 @@ import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.circuits.standard import PARAMETERS, Parameter
-from stdfit.fitting.observed import Observed
+from stdfit.fitting.observed import Observed, phase_slope
 from stdfit.fitting.problem import Problem, Quantity
 
 LINE = ("offset_delay_ps", "offset_loss_gohm_per_s")
@@ -99,7 +99,7 @@ def build_problem(
     places: dict[tuple[str, str], int] = {}
     by_name = {one.name: wish for one, wish in zip(observed, wishes, strict=True)}
     columns = []
-    top = max(float(one.frequency_hz[-1]) for one in observed)
+    tops = {one.name: float(one.frequency_hz[-1]) for one in observed}
     lent = {wish.same_offset_as for wish in wishes}
     kinds = {one.name: (one.kind, shape) for one, shape in zip(observed, shapes, strict=True)}
     for one in observed:
@@ -120,7 +120,7 @@ def build_problem(
                         parameter,
                         by_name[owner],
                         starts,
-                        top,
+                        tops[owner],
                         reference_ohm,
                         owner in lent,
                     )
@@ -195,17 +195,8 @@ def starting_values(observed: Sequence[Observed], reference_ohm: float) -> dict[
 
 
 def equivalent_delay(frequency_hz: FloatArray, gamma: ComplexArray) -> float:
-    """Return the one-way delay in s that fits the phase of a full reflection best.
-
-    The phase is unwrapped step by step, so that it must turn by less than half a turn between points; a
-    line through it, weighted by the reflection, gives the delay −φ'/4π.
-    """
-    phase = np.unwrap(np.angle(gamma))
-    weight = np.abs(gamma)
-    middle = np.average(frequency_hz, weights=weight)
-    offset = frequency_hz - middle
-    slope = np.sum(weight * offset * phase) / np.sum(weight * offset**2)
-    return float(-slope / (4.0 * np.pi))
+    """Return the one-way delay in s that fits the phase of a full reflection best: −φ'/4π."""
+    return -phase_slope(frequency_hz, gamma) / (4.0 * np.pi)
 
 
 def places_of(problem: Problem) -> list[tuple[str, list[int]]]:

@@ -18,7 +18,7 @@ NEIGHBOURS = 3
 """Points on each side from which a reading is foretold."""
 
 SCALE_WINDOW = 50
-"""Points on each side from which the usual error of that foretelling is taken."""
+"""Points in a block from which the usual error of that foretelling is taken."""
 
 TIMES_USUAL = 12.0
 """A point stands out beyond this multiple of the usual error,"""

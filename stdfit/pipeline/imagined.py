@@ -45,7 +45,7 @@ def imagine(bench: Bench) -> Prepared:
     BenchError
         The bench has no [plan] that tells the sweep.
     """
-    prepared = prepare(bench, imagined_sweeps(bench))
+    prepared = prepare(bench, imagined_sweeps(bench), imagined=True)
     resistance, shift, _ = prepared.family.repeatability
     told = [
         f"nothing is measured yet: connections are taken to scatter by {1e3 * resistance:.0f} mΩ and {shift:g} ps "

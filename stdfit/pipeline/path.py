@@ -68,7 +68,9 @@ def fit_bench(
         for entry in bench.standards
         for file in entry.files
     )
-    return characterise(bench, sweeps, files=files, created=created, draws=draws, tell=tell)
+    kit = characterise(bench, sweeps, files=files, created=created, draws=draws, tell=tell)
+    notes = [f"{Path(one.name).name}: {note}" for own in sweeps.values() for one in own for note in one.notes]
+    return replace(kit, warnings=(*kit.warnings, *notes))
 
 
 def read_sweeps(bench: Bench) -> dict[str, list[Sweep]]:

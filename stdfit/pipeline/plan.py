@@ -134,7 +134,7 @@ def _remedies(prepared: Prepared, kit: Kit, held_back: Definition) -> Iterator[t
     yield (
         f"correct the analyser with a kit whose residuals are {BETTER_DB:.0f} dB smaller",
         with_better_reference(prepared, 10.0 ** (-BETTER_DB / 20.0)),
-        False,
+        True,
     )
     for one in kit.definitions:
         delay = one.parameters[0]
@@ -235,7 +235,11 @@ def with_longer_sweep(prepared: Prepared, kit: Kit, top_hz: float) -> Prepared:
     )
     scatter = replace(prepared.scatter, leftover=leftover)
     sources = sources_of(observed, prepared.residual, scatter, prepared.bench.reference_ohm)
-    return replace(prepared, observed=tuple(observed), scatter=scatter, sources=sources)
+    longer = replace(
+        prepared, observed=tuple(observed), scatter=scatter, sources=sources, imagined_connections=0
+    )
+    planned = prepared.imagined_connections
+    return with_connections(longer, planned) if planned else longer
 
 
 def with_model_for(prepared: Prepared, kit: Kit, definition: Definition) -> Prepared:

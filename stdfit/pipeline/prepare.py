@@ -63,8 +63,16 @@ class Prepared:
         return max(self.imagined_connections, *(one.connections for one in self.observed))
 
 
-def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> Prepared:
+def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]], *, imagined: bool = False) -> Prepared:
     """Verify and screen readings, and gather the sources of error.
+
+    Parameters
+    ----------
+    bench : Bench
+    sweeps : mapping
+        For each standard, one sweep for each connection.
+    imagined : bool
+        True for readings that nobody took, which need no check of what they are.
 
     Raises
     ------
@@ -80,8 +88,12 @@ def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> Prepared:
         )
     if not 0.0 < bench.within < 1.0:
         raise RequestError("the tolerance must lie between 0 and 1", "try 0.02", key="within")
-    warnings = list(
-        verify_standards({entry.name: (entry.kind, sweeps[entry.name]) for entry in bench.standards})
+    warnings = (
+        []
+        if imagined
+        else list(
+            verify_standards({entry.name: (entry.kind, sweeps[entry.name]) for entry in bench.standards})
+        )
     )
     family = family_of(bench.connector)
     observed, left_out = _observe(bench, sweeps, family)
@@ -157,7 +169,7 @@ def _repeatability(observed: Sequence[Observed], family: Family, reference_ohm: 
     if any(one.connections > 1 for one in observed):
         return pooled_repeatability(observed, reference_ohm, family.repeatability)
     noise = float(np.median([noise_of(without_delay(one.frequency_hz, one.gamma)) for one in observed]))
-    return assumed_repeatability(observed, family.repeatability, np.inf, noise)
+    return assumed_repeatability(observed, family.repeatability, noise)
 
 
 def _cautions(

@@ -9,7 +9,7 @@ from stdfit.base.errors import FitError
 from stdfit.fitting.roles import build_problem, places_of, starting_values
 from stdfit.fitting.solve import least_squares
 from stdfit.pipeline.prepare import Prepared
-from stdfit.uncertainty.budget import shares_of
+from stdfit.uncertainty.budget import radius, shares_of
 from stdfit.uncertainty.push import push
 from stdfit.uncertainty.region import CIRCULAR
 from stdfit.uncertainty.sources import SmoothSource, reading_variance
@@ -36,7 +36,13 @@ def choose_all(prepared: Prepared) -> list[Choice]:
             wish = replace(wish, given={**settle_one(wish.same_offset_as).offset, **wish.given})
         thinned, alone = thin(observed[k], sources, k)
         choices[name] = choose(
-            thinned, alone, wish, bench.standards[k].polynomial, bench.within, bench.reference_ohm
+            thinned,
+            alone,
+            wish,
+            bench.standards[k].polynomial,
+            bench.within,
+            bench.reference_ohm,
+            prepared.family.top_hz,
         )
         return choices[name]
 
@@ -89,22 +95,35 @@ def settle(prepared: Prepared, choices: Sequence[Choice]) -> Settled:
     _, stacked = shares_of(pushed, sources, precision, places_of(problem))
     shares = [replace(share, covariances=share.covariances[:, 0]) for share in stacked]
     misfits = []
-    for k, ((gamma, _), one, choice) in enumerate(zip(models, observed, choices, strict=True)):
+    for k, ((gamma, design), one, choice) in enumerate(zip(models, observed, choices, strict=True)):
         f = one.frequency_hz
         points = slice(None, None, max(1, f.size // MISFIT_POINTS))
         explained = np.interp(f[points], choice.explained_hz, choice.explained)
         _, white = reading_variance(sources, k)
-        misfits.append((f[points], misfit(one.gamma - gamma, f, float(white), explained, points)))
+        wrong = misfit(one.kind, one.gamma - gamma, f, float(white), explained, points)
+        # What the order's own uncertainty lacks against the richest order's goes to the error of the model.
+        least = np.interp(f[points], choice.explained_hz, choice.least_radius)
+        lacking = np.maximum(least - radius(design[points], shares), 0.0)
+        misfits.append((f[points], wrong + lacking))
     profiles = [
         np.asarray(np.interp(one.frequency_hz, *own) / CIRCULAR, dtype=complex)
         for one, own in zip(observed, misfits, strict=True)
     ]
-    wrong = SmoothSource("misfit", tuple(profiles), common=False)
+    model_error = SmoothSource("misfit", tuple(profiles), common=False)
     repushed = [
-        push(design, weight, one.gamma - gamma, one.frequency_hz, span, [wrong], k, [one.frequency_hz.size])
+        push(
+            design,
+            weight,
+            one.gamma - gamma,
+            one.frequency_hz,
+            span,
+            [model_error],
+            k,
+            [one.frequency_hz.size],
+        )
         for k, ((gamma, design), weight, one) in enumerate(zip(models, weights, observed, strict=True))
     ]
-    _, (misfit_stack,) = shares_of(repushed, [wrong], precision, [])
+    _, (misfit_stack,) = shares_of(repushed, [model_error], precision, [])
     misfit_share = replace(misfit_stack, covariances=misfit_stack.covariances[:, 0])
     return Settled(
         problem, values, tuple(bounded), solution, tuple(shares), misfit_share, tuple(choices), tuple(misfits)

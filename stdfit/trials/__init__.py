@@ -6,7 +6,7 @@ asked for and `families` names the kinds of bench. Nothing here uses the models 
 made of steps, skin effect, pads and radiation, not of polynomials.
 """
 
-from stdfit.trials.analyser import StatedResidual
+from stdfit.trials.analyser import StatedDecibels
 from stdfit.trials.bench import Evidence, SimulatedBench, draw_bench
 from stdfit.trials.families import demo_scenario, families
 from stdfit.trials.files import write_bench
@@ -18,7 +18,7 @@ __all__ = [
     "Part",
     "Scenario",
     "SimulatedBench",
-    "StatedResidual",
+    "StatedDecibels",
     "demo_scenario",
     "draw_bench",
     "draw_part",

@@ -16,7 +16,7 @@ LENGTHS = {"any": (1 / 30, 3.0), "long": (1.0, 3.0), "short": (1 / 30, 1 / 8)}  
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class StatedResidual:
+class StatedDecibels:
     """95 % bounds of the analyser's residual errors, as stated to the user.
 
     Attributes
@@ -39,7 +39,7 @@ class StatedResidual:
             object.__setattr__(self, key, frozen_float(getattr(self, key)))
 
     @classmethod
-    def perfect(cls) -> "StatedResidual":
+    def perfect(cls) -> "StatedDecibels":
         """A correction without any error worth the name: 400 dB."""
         return cls(frozen_float([1e9]), frozen_float([400]), frozen_float([400]), frozen_float([0.0]))
 
@@ -132,7 +132,7 @@ def ripple(frequency_hz: FloatArray, length_hz: float, rng: np.random.Generator)
 
 
 def draw_residuals(
-    stated: StatedResidual,
+    stated: StatedDecibels,
     frequency_hz: FloatArray,
     rng: np.random.Generator,
     *,
@@ -144,7 +144,7 @@ def draw_residuals(
 
     Parameters
     ----------
-    stated : StatedResidual
+    stated : StatedDecibels
         The bounds.
     frequency_hz : array of shape (n,)
         In hertz.

@@ -6,7 +6,7 @@ import numpy as np
 import numpy.typing as npt
 
 from stdfit.base.arrays import ComplexArray, FloatArray, frozen_complex
-from stdfit.trials.analyser import Residuals, StatedResidual, draw_residuals, imperfect_correction
+from stdfit.trials.analyser import Residuals, StatedDecibels, draw_residuals, imperfect_correction
 from stdfit.trials.parts import Part, draw_body, draw_part, reflection, with_resonance
 from stdfit.trials.scenario import KINDS, Scenario
 from stdfit.trials.session import (
@@ -71,7 +71,7 @@ class SimulatedBench:
         Standard's name -> key of a bench file's `given` table -> evidence in that key's unit.
     same_offset_as : dict of str
         Standard's name -> the standard whose line it shares.
-    residual : StatedResidual
+    residual : StatedDecibels
         What the user is told of the analyser.
     scenario : Scenario
         What was asked for.
@@ -86,7 +86,7 @@ class SimulatedBench:
     readings: dict[str, ComplexArray]
     given: dict[str, dict[str, Evidence]]
     same_offset_as: dict[str, str]
-    residual: StatedResidual
+    residual: StatedDecibels
     scenario: Scenario
     drawn: Drawn
 

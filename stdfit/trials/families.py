@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 
 from stdfit.base.arrays import FloatArray, frozen_float
-from stdfit.trials.analyser import StatedResidual
+from stdfit.trials.analyser import StatedDecibels
 from stdfit.trials.scenario import KINDS, Scenario
 
 Family = Callable[[np.random.Generator], Scenario]
@@ -18,9 +18,9 @@ def sweep(start_hz: float, stop_hz: float, points: int) -> FloatArray:
     return frozen_float(np.round(np.linspace(start_hz, stop_hz, points)))
 
 
-def economy_residual() -> StatedResidual:
+def economy_residual() -> StatedDecibels:
     """Residuals of an economy calibration of a low-cost analyser to 6 GHz, invented but of a common size."""
-    return StatedResidual(
+    return StatedDecibels(
         frequency_hz=frozen_float([50e6, 3e9, 6e9]),
         directivity_db=frozen_float([46, 44, 40]),
         source_match_db=frozen_float([46, 39, 34]),
@@ -28,10 +28,10 @@ def economy_residual() -> StatedResidual:
     )
 
 
-def draw_residual_table(top_hz: float, rng: np.random.Generator) -> StatedResidual:
+def draw_residual_table(top_hz: float, rng: np.random.Generator) -> StatedDecibels:
     """Draw stated residuals that vary about the economy ones, stretched over the sweep."""
     better = rng.uniform(-3, 5)
-    return StatedResidual(
+    return StatedDecibels(
         frequency_hz=frozen_float(np.array([50e6 / 6e9, 0.5, 1.0]) * top_hz),
         directivity_db=frozen_float(np.array([46, 44, 40]) + better),
         source_match_db=frozen_float(np.array([46, 39, 34]) + better),
@@ -120,6 +120,11 @@ def families() -> dict[str, Family]:
         "radiating open": partial(draw_plain, open_kind="radiating", radiation_drop=(0.01, 0.02)),
         "skin effect": draw_skin_effect,
         "chip load": partial(draw_plain, load_reflection=(0.04, 0.08)),
+        "good load": partial(draw_plain, load_reflection=(0.005, 0.02)),
+        "good load, multimeter": partial(
+            draw_plain, load_reflection=(0.005, 0.02), given_resistance_u_ohm=0.02, body="own"
+        ),
+        "long offsets": partial(draw_plain, offset_delay_ps=(80.0, 300.0)),
         "resonance": draw_resonance,
         "glitches": draw_glitches,
         "drift": draw_drift,

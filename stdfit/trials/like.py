@@ -9,7 +9,7 @@ from stdfit.base.errors import RequestError
 from stdfit.data.bench import read_bench
 from stdfit.data.readings import read_reading
 from stdfit.pipeline import prepare
-from stdfit.trials.analyser import StatedResidual
+from stdfit.trials.analyser import StatedDecibels
 from stdfit.trials.scenario import KINDS, Scenario
 
 
@@ -40,7 +40,7 @@ def scenario_like(path: Path) -> Scenario:
     ruler = next((table["offset_delay_ps"] for table in given.values() if "offset_delay_ps" in table), None)
     return Scenario(
         frequency_hz=prepared.observed[0].frequency_hz,
-        residual=StatedResidual(
+        residual=StatedDecibels(
             told.frequency_hz,
             -20.0 * np.log10(told.directivity),
             -20.0 * np.log10(told.source_match),

@@ -8,7 +8,7 @@ import numpy as np
 
 from stdfit.base.arrays import FloatArray, frozen_float
 from stdfit.base.errors import RequestError
-from stdfit.trials.analyser import Correlation, ResidualKind, StatedResidual
+from stdfit.trials.analyser import Correlation, ResidualKind, StatedDecibels
 
 KINDS = ("open", "short", "load")
 SIZES = ("residual_scale", "scatter_ps", "scatter_ohm", "scatter_ff", "noise", "trace_noise", "drift_deg")
@@ -59,7 +59,7 @@ class Scenario:
     ----------
     frequency_hz : array of shape (n,)
         Sweep, strictly rising, in hertz.
-    residual : StatedResidual
+    residual : StatedDecibels
         95 % bounds of the analyser's residual errors, as the user is told them.
     residual_scale : float
         True size of the residuals against the stated one; 1 is an honest statement.
@@ -119,7 +119,7 @@ class Scenario:
     """
 
     frequency_hz: FloatArray
-    residual: StatedResidual
+    residual: StatedDecibels
     residual_scale: float = 1.0
     connector: str = "SMA"
     reference_ohm: float = 50.0

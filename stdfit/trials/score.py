@@ -31,7 +31,7 @@ class Score:
     standard : str
     error, bound, alone : arrays of shape (m,)
         |fitted − true|, its bound, and the bound that the fit's own covariance alone would claim, over the fit
-        range.
+        range or up to the limit, whichever is more.
     quantities : tuple of bool
         For each determined quantity (resistance, and the sum that the readings fix) whether its 95 % interval
         covers the truth.
@@ -122,7 +122,8 @@ def score(simulated: SimulatedBench, within: float = 0.02, *, stated: bool = Tru
     alone = fit_alone(settled)
     scores = []
     for k, definition in enumerate(kit.definitions):
-        grid = np.linspace(definition.fit_low_hz, definition.fit_top_hz, POINTS)
+        top = min(max(definition.fit_top_hz, definition.limit.limit_hz), definition.read_top_hz)
+        grid = np.linspace(definition.fit_low_hz, top, POINTS)
         gamma, bound = curve(kit, definition, grid)
         _, design = settled.problem.model(k, settled.values, grid)
         scores.append(

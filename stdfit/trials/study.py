@@ -39,7 +39,7 @@ class Row:
     quantities : float
         Part of the determined quantities whose 95 % interval covers the truth.
     limits_true : float
-        Part of the benches all of whose limits hold.
+        Part of the benches all of whose limits hold; limits of 0 say nothing and do not count.
     limit : float
         Mean limit as part of the sweep.
     sharpness : float
@@ -155,6 +155,7 @@ def row_of(family: str, benches: Sequence[list[Score] | None]) -> Row:
     if not each:
         none = float("nan")
         return Row(family, len(benches), none, none, none, none, none, none, failed=len(benches))
+    limited = [scores for scores in sound if any(one.limit > 0.0 for one in scores)]
     quantities = [inside for one in each for inside in one.quantities]
     error = np.concatenate([one.error for one in each])
     return Row(
@@ -163,11 +164,16 @@ def row_of(family: str, benches: Sequence[list[Score] | None]) -> Row:
         coverage=float(np.mean([one.inside for one in each])),
         coverage_alone=float(np.mean([one.inside_alone for one in each])),
         quantities=float(np.mean(quantities)),
-        limits_true=float(np.mean([all(one.limit_true for one in scores) for scores in sound])),
+        limits_true=_mean([all(one.limit_true for one in scores if one.limit > 0.0) for scores in limited]),
         limit=float(np.mean([one.limit for one in each])),
         sharpness=float(np.mean(np.concatenate([one.bound for one in each])) / np.quantile(error, 0.95)),
         failed=len(benches) - len(sound),
     )
+
+
+def _mean(values: Sequence[bool]) -> float:
+    """Return the mean, or NaN of nothing."""
+    return float(np.mean(values)) if values else float("nan")
 
 
 def study_table(rows: Sequence[Row]) -> str:

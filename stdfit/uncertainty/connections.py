@@ -76,12 +76,10 @@ class Repeatability:
         object.__setattr__(self, "freedom", frozen_float(self.freedom))
 
 
-def assumed_repeatability(
-    observed: Sequence[Observed], sd: Sequence[float], freedom: float, noise: float
-) -> Repeatability:
+def assumed_repeatability(observed: Sequence[Observed], sd: Sequence[float], noise: float) -> Repeatability:
     """Return a stated default for readings of one connection each."""
     nothing = tuple(np.zeros(one.frequency_hz.size) for one in observed)
-    return Repeatability(np.array(sd), np.full(len(PARTS), freedom), False, nothing, noise)
+    return Repeatability(np.array(sd), np.full(len(PARTS), np.inf), False, nothing, noise)
 
 
 def pooled_repeatability(
@@ -133,11 +131,19 @@ def pooled_repeatability(
     told = np.clip(1.0 - spread / variance, 0.0, 1.0)
     freedom = np.array([contrasts for contrasts, _, _ in systems]) @ told
     shown = freedom > SHOWN
+    leftover = [_leftover(one, variance, floor, reference_ohm) for one in observed]
+    powers = [
+        float(np.mean(own**2)) for one, own in zip(observed, leftover, strict=True) if one.connections > 1
+    ]
+    usual = float(np.sqrt(np.mean(powers)))
     return Repeatability(
         sd=np.where(shown, np.sqrt(variance), np.asarray(assumed_sd)),
         freedom=np.where(shown, np.maximum(freedom, 1.0), np.inf),
         measured=True,
-        leftover=tuple(_leftover(one, variance, floor, reference_ohm) for one in observed),
+        leftover=tuple(
+            own if one.connections > 1 else np.full(own.size, usual)
+            for one, own in zip(observed, leftover, strict=True)
+        ),
         noise=noise,
     )
 

@@ -15,7 +15,7 @@ from stdfit.circuits.standard import reflection
 from stdfit.fitting.observed import Observed
 from stdfit.fitting.problem import Problem
 from stdfit.fitting.roles import places_of
-from stdfit.uncertainty.budget import Share, inverse_of, plane, radius, shares_of
+from stdfit.uncertainty.budget import Share, inverse_of, radius, shares_of
 from stdfit.uncertainty.push import push
 from stdfit.uncertainty.smooth import LENGTHS_PER_SPAN, bumps, correlation_lengths
 from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source, WhiteSource
@@ -91,33 +91,39 @@ def compare_with_linear(
     """
     trial = _Trial.of(problem, values, sources)
     clouds: list[list[ComplexArray]] = [[] for _ in problem.observed]
+    straight: list[list[ComplexArray]] = [[] for _ in problem.observed]
+    designs = [trial.model(s, trial.start[None], grid)[1][0] for s, grid in enumerate(trial.grids)]
     unsettled = 0
     for first in range(0, draws, BATCH):
         count = min(BATCH, draws - first)
-        fitted, settled = trial.fit(*trial.draw(count, rng))
+        fitted, first_step, settled = trial.fit(*trial.draw(count, rng))
         unsettled += int(np.count_nonzero(~settled))
-        for s, cloud in enumerate(clouds):
-            cloud.append(trial.model(s, fitted[settled], trial.grids[s])[0])
+        for s, grid in enumerate(trial.grids):
+            clouds[s].append(trial.model(s, fitted[settled], grid)[0])
+            straight[s].append(first_step[settled] @ designs[s].T)
         if tell:
             tell(min(first + count, draws), draws)
-    return [_compare(trial, s, np.concatenate(cloud), unsettled / draws) for s, cloud in enumerate(clouds)]
+    return [
+        _compare(trial, s, np.concatenate(cloud), np.concatenate(line), unsettled / draws)
+        for s, (cloud, line) in enumerate(zip(clouds, straight, strict=True))
+    ]
 
 
-def _compare(trial: "_Trial", s: int, cloud: ComplexArray, unsettled: float) -> Compared:
-    """Return the figures of one standard from its cloud of curves, shape (draws, m)."""
+def _compare(trial: "_Trial", s: int, cloud: ComplexArray, line: ComplexArray, unsettled: float) -> Compared:
+    """Return the figures of one standard from its curves and from their linear changes, each of shape (draws, m).
+
+    Both come from the same draws, so that neither chance nor the tails of Student's t pass for curvature.
+    """
     grid = trial.grids[s]
-    best, design = trial.model(s, trial.start[None], grid)
-    best, design = best[0], design[0]
-    total = np.array([plane(design, share.covariances[0]) for share in trial.shares]).sum(axis=0)
-    real, imag, cross = np.moveaxis(total, -1, 0)
-    cos, sin = np.cos(np.angle(best)), np.sin(np.angle(best))
+    best = trial.model(s, trial.start[None], grid)[0][0]
+    along = (line * np.exp(-1j * np.angle(best))).real
     return Compared(
         standard=trial.problem.observed[s].name,
         frequency_hz=grid,
         drawn=np.quantile(np.abs(cloud - best), 0.95, axis=0),
-        linear=radius(design, trial.shares),
+        linear=np.quantile(np.abs(line), 0.95, axis=0),
         drawn_magnitude_u=np.abs(cloud).std(axis=0),
-        linear_magnitude_u=np.sqrt(np.maximum(real * cos**2 + imag * sin**2 + 2.0 * cross * cos * sin, 0.0)),
+        linear_magnitude_u=along.std(axis=0),
         magnitude=np.abs(best),
         unsettled=unsettled,
     )
@@ -130,7 +136,6 @@ class _Trial:
     problem: Problem
     start: FloatArray
     sources: tuple[Source, ...]
-    shares: list[Share]
     length: float
     span: tuple[float, float]
     grids: list[FloatArray]
@@ -163,7 +168,6 @@ class _Trial:
             problem=thin_problem,
             start=values[thin_problem.fitted] / thin_problem.scales,
             sources=tuple(thin_sources),
-            shares=by_length[widest],
             length=float(correlation_lengths(span[1] - span[0])[widest]),
             span=span,
             grids=grids,
@@ -218,10 +222,19 @@ class _Trial:
 
     def fit(
         self, readings: Sequence[ComplexArray], evidence: FloatArray
-    ) -> tuple[FloatArray, npt.NDArray[np.bool_]]:
-        """Fit all draws by Gauss and Newton, each with its own derivatives; return values and which settled."""
+    ) -> tuple[FloatArray, FloatArray, npt.NDArray[np.bool_]]:
+        """Fit all draws by Gauss and Newton, each with its own derivatives.
+
+        Returns
+        -------
+        values : array of shape (b, p)
+        first_step : array of shape (b, p)
+            What linear propagation gives: the step from the solution with the derivatives there.
+        settled : bool array of shape (b,)
+        """
         _, precision = self.problem.evidence()
         scaled = np.repeat(self.start[None], evidence.shape[0], axis=0)
+        first_step = np.zeros_like(scaled)
         moving = np.arange(scaled.shape[0])
         for turn in range(ROUNDS):
             pull = precision * (evidence[moving] - scaled[moving])
@@ -235,6 +248,8 @@ class _Trial:
                 pull = pull + (across @ np.concatenate([off.real, off.imag], axis=1)[..., None])[..., 0]
                 normal = normal + across @ rows
             step = (inverse_of(normal) @ pull[..., None])[..., 0]
+            if turn == 0:
+                first_step = step
             # Full steps that have not settled by then swing from side to side: shorter ones do not.
             scaled[moving] += step if turn < FULL_STEPS else DAMPED * step
             moving = moving[np.abs(step).max(axis=1) > SETTLED]
@@ -242,7 +257,7 @@ class _Trial:
                 break
         settled = np.ones(scaled.shape[0], dtype=bool)
         settled[moving] = False
-        return scaled, settled
+        return scaled, first_step, settled
 
 
 def _at(share: Share, length: int) -> Share:

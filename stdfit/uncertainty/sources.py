@@ -63,7 +63,8 @@ Source = SmoothSource | LumpedSource | WhiteSource
 def analyser_sources(observed: Sequence[Observed], residual: StatedResidual) -> list[Source]:
     """Return directivity, tracking and source match residuals, common to all standards.
 
-    A stated bound is the 95 % radius of a circular complex value: 2.448 standard deviations per component.
+    A stated bound is the 95 % radius of a circular complex value: 2.448 standard deviations per component. Between
+    the stated frequencies it is interpolated in dB, beyond them held.
     """
     bounds = {
         "analyser residuals (directivity)": residual.directivity,
@@ -74,13 +75,18 @@ def analyser_sources(observed: Sequence[Observed], residual: StatedResidual) -> 
         SmoothSource(
             name,
             tuple(
-                np.interp(one.frequency_hz, residual.frequency_hz, bound) / CIRCULAR * one.gamma**power
+                in_decibels(one.frequency_hz, residual.frequency_hz, bound) / CIRCULAR * one.gamma**power
                 for one in observed
             ),
             common=True,
         )
         for power, (name, bound) in enumerate(bounds.items())
     ]
+
+
+def in_decibels(frequency_hz: FloatArray, knots_hz: FloatArray, bound: FloatArray) -> FloatArray:
+    """Interpolate a positive bound as a straight line in dB."""
+    return np.asarray(np.exp(np.interp(frequency_hz, knots_hz, np.log(bound))))
 
 
 def connection_sources(

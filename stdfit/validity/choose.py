@@ -64,6 +64,8 @@ class Choice:
         The best limit of each order that was tried, simplest first.
     explained_hz, explained : arrays of shape (m,)
         Power that the sources are expected to leave in the residual of the richest order, fitted to all readings.
+    least_radius : array of shape (m,)
+        95 % radius that the richest order has there, fitted to all readings: no order is surer than that.
     """
 
     shape: str
@@ -73,6 +75,7 @@ class Choice:
     tried: tuple[tuple[str, float], ...]
     explained_hz: FloatArray
     explained: FloatArray
+    least_radius: FloatArray
 
 
 def weights_for(sources: Sequence[Source], index: int, count: int) -> FloatArray:
@@ -129,6 +132,7 @@ def choose(
     polynomial: str,
     within: float,
     reference_ohm: float,
+    ceiling_hz: float = np.inf,
 ) -> Choice:
     """Choose order and range of one standard by the limit they give.
 
@@ -145,6 +149,8 @@ def choose(
     within : float
         Tolerance.
     reference_ohm : float
+    ceiling_hz : float
+        Top of the connector family: no limit beyond it counts.
     """
     f = observed.frequency_hz
     shapes = shapes_for(observed.kind, polynomial, wish)
@@ -161,10 +167,14 @@ def choose(
     richest = shapes_for(observed.kind, "chosen", wish)[-1]
     reference = orders[-1] if richest == shapes[-1] else fit(richest)
     explained = reference.expected()[-1]
+    # A simpler order is surer only because it takes the terms that it leaves out for zero, which nobody measured.
+    least = reference.radius[-1]
     candidates = [
         candidate
         for rank, order in enumerate(orders)
-        for candidate in _candidates(observed, sources, order, rank, explained, cuts, points, within)
+        for candidate in _candidates(
+            observed, sources, order, rank, explained, least, cuts, points, within, ceiling_hz
+        )
     ]
     best = max(candidate.limit_hz for candidate in candidates)
     near = [candidate for candidate in candidates if candidate.limit_hz >= NEAR * best]
@@ -185,6 +195,7 @@ def choose(
         tried=tuple(furthest.items()),
         explained_hz=f[points],
         explained=explained,
+        least_radius=least,
     )
 
 
@@ -260,17 +271,20 @@ def _candidates(
     order: _Order,
     rank: int,
     explained: FloatArray,
+    least: FloatArray,
     cuts: Sequence[int],
     points: slice,
     within: float,
+    ceiling_hz: float,
 ) -> list[_Candidate]:
     """Return limit and mean bound of one order over every range."""
     f = observed.frequency_hz
     _, white = reading_variance(sources, 0)
-    bound = order.radius + misfit(order.left, f, float(white), explained, points)
+    wrong = misfit(observed.kind, order.left, f, float(white), explained, points)
+    bound = np.maximum(order.radius, least) + wrong
     candidates = []
     for cut in range(len(cuts)):
-        limit, _ = first_gap(f[points], bound[cut], within)
+        limit = min(first_gap(f[points], bound[cut], within)[0], ceiling_hz)
         below = f[points] <= max(limit, f[points][min(4, bound.shape[1] - 1)])
         candidates.append(_Candidate(order.shape, rank, cut, limit, float(bound[cut][below].mean())))
     return candidates

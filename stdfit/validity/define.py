@@ -78,7 +78,10 @@ def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], t
                     of=names[i] if i in place else "",
                 )
             )
-        combinations = _combinations(one.kind, parameters, order, [*shares, wrong], problem.reference_ohm)
+        top_hz = float(one.frequency_hz[-1])
+        combinations = _combinations(
+            one.kind, parameters, order, [*shares, wrong], problem.reference_ohm, top_hz
+        )
         misfit_hz, misfit = settled.misfits[s]
         definitions.append(
             Definition(
@@ -108,30 +111,46 @@ def _combinations(
     order: Sequence[str],
     shares: Sequence[Share],
     reference_ohm: float,
+    top_hz: float,
 ) -> tuple[Combination, ...]:
     """Return the combination that the readings fix, where both of its parts were fitted.
 
     To first order an open's C0 is a delay of C0·Z0, a short's L0 a delay of L0/Z0, and of a load only
-    L − C·Z0² shows.
+    L − C·Z0² shows. A fitted Z0 of the line counts too.
     """
     by_name = {parameter.name: parameter for parameter in parameters}
-    z0 = by_name["offset_z0_ohm"].value
-    label, unit, first, second, factor = {
-        "open": ("offset delay + Z0·C0", "ps", "offset_delay_ps", "c0", 1e-3 * z0),
-        "short": ("offset delay + L0/Z0", "ps", "offset_delay_ps", "l0", 1.0 / z0),
-        "load": ("L − C·Z0²", "pH", "inductance_ph", "capacitance_ff", -1e-3 * reference_ohm**2),
+    delay, z0 = by_name["offset_delay_ps"].value, by_name["offset_z0_ohm"].value
+    if kind != "load" and 4.0 * np.pi * top_hz * abs(delay) * 1e-12 > 2.0 * np.pi:
+        # Over more than half a turn of phase no one sum stands for the parts.
+        return ()
+    zr = reference_ohm
+    # Of a whole at low frequency: Zr·(τ/Z0 + C0) for an open, (τ·Z0 + L0)/Zr for a short.
+    label, unit, weights = {
+        "open": (
+            "offset delay + Z0·C0" if z0 == zr else "Zr·(offset delay/Z0 + C0)",
+            "ps",
+            {"offset_delay_ps": zr / z0, "c0": 1e-3 * zr, "offset_z0_ohm": -zr * delay / z0**2},
+        ),
+        "short": (
+            "offset delay + L0/Z0" if z0 == zr else "(offset delay·Z0 + L0)/Zr",
+            "ps",
+            {"offset_delay_ps": z0 / zr, "l0": 1.0 / zr, "offset_z0_ohm": delay / zr},
+        ),
+        "load": ("L − C·Z0²", "pH", {"inductance_ph": 1.0, "capacitance_ff": -1e-3 * zr**2}),
     }[kind]
+    first, second, *_ = weights
     one, other = by_name[first], by_name[second]
     if not one.of or not other.of:
         return ()
     direction = np.zeros((1, len(order)))
-    direction[0, order.index(one.of)] += 1.0
-    direction[0, order.index(other.of)] += factor
+    for name, weight in weights.items():
+        if by_name[name].of:
+            direction[0, order.index(by_name[name].of)] += weight
     u, u95 = expanded(direction, shares)
     covariance = total_covariance(shares)
     i, j = order.index(one.of), order.index(other.of)
     correlation = covariance[i, j] / np.sqrt(covariance[i, i] * covariance[j, j])
-    value = one.value + factor * other.value
+    value = weights[first] * one.value + weights[second] * other.value
     return (
         Combination(
             label, unit, value, float(u[0]), value - float(u95[0]), value + float(u95[0]), float(correlation)

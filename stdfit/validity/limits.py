@@ -66,6 +66,10 @@ def _limit(
     misfit: FloatArray,
 ) -> Limit:
     """Return the limit of one standard."""
+    if kit.top_hz < definition.read_low_hz:
+        return Limit(
+            within, 0.0, f"the readings begin above the top of the connector family, {kit.top_hz / 1e9:g} GHz"
+        )
     limit_hz, place = first_gap(grid, spread + misfit, within)
     if place is None:
         if kit.top_hz < definition.read_top_hz:
@@ -73,8 +77,7 @@ def _limit(
         return Limit(within, limit_hz, "the readings end here")
     if misfit[place] >= spread[place]:
         return Limit(within, limit_hz, "the readings leave the model here (misfit)")
-    name, part = largest_share(design[place], kit.shares)
-    return Limit(within, limit_hz, f"{name}, {100 * part:.0f} % of the variance")
+    return Limit(within, limit_hz, largest_source(design[place], kit.shares))
 
 
 def shares_at(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
@@ -93,8 +96,18 @@ def shares_at(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
     return np.asarray(worst / worst.sum() if worst.sum() > 0.0 else worst)
 
 
-def largest_share(design: ComplexArray, shares: Sequence[Share]) -> tuple[str, float]:
-    """Return the name of the source with the largest part of the variance of Γ, and that part."""
+def largest_source(design: ComplexArray, shares: Sequence[Share]) -> str:
+    """Say which kind of source has the largest part of the variance of Γ at one frequency, and which of that kind.
+
+    Sources whose names begin alike, "analyser residuals (directivity)" and so on, are of one kind.
+    """
     parts = shares_at(design, shares)
-    place = int(np.argmax(parts))
-    return shares[place].name, float(parts[place])
+    kinds: dict[str, list[tuple[float, str]]] = {}
+    for share, part in zip(shares, parts, strict=True):
+        kind, _, member = share.name.partition(" (")
+        kinds.setdefault(kind, []).append((float(part), member.rstrip(")")))
+    kind = max(kinds, key=lambda one: sum(part for part, _ in kinds[one]))
+    total = sum(part for part, _ in kinds[kind])
+    _, most = max(kinds[kind])
+    said = f"{kind}, {100 * total:.0f} % of the variance"
+    return f"{said}, most of it {most}" if most and len(kinds[kind]) > 1 else said

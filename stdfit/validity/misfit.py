@@ -7,7 +7,6 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.uncertainty.connections import running_mean
 from stdfit.uncertainty.push import Pushed
-from stdfit.uncertainty.region import CIRCULAR
 from stdfit.uncertainty.smooth import bumps, correlation_lengths
 from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source
 
@@ -19,9 +18,6 @@ REACH_WINDOWS = 50
 
 ELECTRICALLY_SHORT = 0.1
 """Part of the sweep in which what the models leave out is still proportional to √f or f."""
-
-LINE_PER_POWER = float(CIRCULAR / np.sqrt(2.0))
-"""95 % radius of a circular complex value in units of its total standard deviation: 1.73."""
 
 EULER = 0.5772
 """Mean of the standard Gumbel law: the largest of k exponential variables has the mean ln k + 0.5772."""
@@ -84,6 +80,7 @@ def _left(direct: ComplexArray, design: ComplexArray, step: FloatArray) -> Float
 
 
 def misfit(
+    kind: str,
     residual: ComplexArray,
     frequency_hz: FloatArray,
     noise_variance: float,
@@ -92,13 +89,14 @@ def misfit(
 ) -> FloatArray:
     """Return a bound on what the model itself is wrong by, at the chosen points.
 
-    The residual is r = e + η, the model's error and what the sources leave. With s² = |r|² − E|η|², the power
-    that the sources do not explain (the largest in the neighbourhood counts), and both parts normal, e given r
-    has the mean r·s²/|r|² and the variance s²·E|η|²/|r|²; the bound is |mean| + 1.73 standard deviations:
-    s·(s + 1.73·√E|η|²)/|r|. It is s where the sources explain little, and 0 where they explain all.
+    The residual is r = e + η, the model's error and what the sources leave: |e|² ≈ |r|² − E|η|², the power that
+    the sources do not explain. The largest power in the neighbourhood counts. An error that hides within E|η|²
+    is no larger than what the readings cannot exclude, which the radius of the richest order holds.
 
     Parameters
     ----------
+    kind : str
+        Of an open and a short the bound falls towards f = 0.
     residual : complex array of shape (..., n)
         Mean reading minus model, at all readings.
     frequency_hz : array of shape (n,)
@@ -117,16 +115,16 @@ def misfit(
     # The largest of k independent powers of noise is about ln k + 0.58 times their mean (Gumbel's law).
     independent = max(1.0, (2 * reach + 1) / window)
     explained = expected + (np.log(independent) + EULER) * 2.0 * noise_variance / window
-    excess = np.sqrt(np.maximum(largest - explained, 0.0))
-    bound = excess * (excess + LINE_PER_POWER * np.sqrt(explained)) / np.sqrt(np.maximum(largest, 1e-300))
-    return vanishing_at_zero(np.asarray(bound), frequency_hz[points])
+    excess: FloatArray = np.sqrt(np.maximum(largest - explained, 0.0))
+    return excess if kind == "load" else vanishing_at_zero(excess, frequency_hz[points])
 
 
 def vanishing_at_zero(bound: FloatArray, frequency_hz: FloatArray) -> FloatArray:
     """Let a bound on the model's error fall towards f = 0 as physics makes it fall.
 
-    At f → 0 an open, a short and a resistor are exactly what their models say; what is left out grows in
-    proportion to f (reactance, delay) or to √f (skin effect). In the lowest part of the sweep, where the parts
+    At f → 0 an open and a short are exactly what their models say; what is left out grows in proportion to f
+    (reactance, delay) or to √f (skin effect). A load has a fitted resistance, which takes up errors from all of
+    the sweep, and is no such case. In the lowest part of the sweep, where the parts
     are electrically short, the bound therefore need not exceed √(f/f₀) times its largest value about f₀: what
     the readings show beyond that is the analyser's.
 

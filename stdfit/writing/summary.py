@@ -6,6 +6,9 @@ from stdfit.validity.kit import Definition, Kit
 from stdfit.validity.limit import Limit
 from stdfit.writing.numbers import decimals, frequency, label_of, plus_minus, rounded
 
+TOLD_FROM = 0.1
+"""Where the readings begin is told when it is above this part of the limit."""
+
 
 def aligned(rows: Sequence[Sequence[str]], indent: str = "  ") -> list[str]:
     """Return rows as lines whose columns stand below each other."""
@@ -22,7 +25,11 @@ def verdict(kit: Kit) -> str:
     """Return the answer in one line."""
     if kit.limit.limit_hz <= 0.0:
         return f"within {kit.within:g} the kit cannot be trusted at any frequency: {kit.limit.reason}"
-    return f"within {kit.within:g} the kit is good to {frequency(kit.limit.limit_hz)}: {kit.limit.reason}"
+    low = max(one.read_low_hz for one in kit.definitions)
+    start = f"from {frequency(low)} " if low > TOLD_FROM * kit.limit.limit_hz else ""
+    return (
+        f"within {kit.within:g} the kit is good {start}to {frequency(kit.limit.limit_hz)}: {kit.limit.reason}"
+    )
 
 
 def summary(kit: Kit, *, warnings: bool = True) -> str:

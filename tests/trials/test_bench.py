@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from stdfit.base.errors import RequestError
-from stdfit.trials import Scenario, StatedResidual, demo_scenario, draw_bench, families, write_bench
+from stdfit.trials import Scenario, StatedDecibels, demo_scenario, draw_bench, families, write_bench
 from stdfit.trials.scenario import KINDS
 
 
@@ -87,7 +87,7 @@ def test_evidence_is_drawn_around_the_truth_with_its_uncertainty(body):
 
 def test_many_connections_average_to_the_truth_behind_the_residuals():
     scenario = Scenario(
-        frequency_hz=np.linspace(50e6, 6e9, 101), residual=StatedResidual.perfect(), connections=400
+        frequency_hz=np.linspace(50e6, 6e9, 101), residual=StatedDecibels.perfect(), connections=400
     )
     bench = draw_bench(scenario, np.random.default_rng(57))
     for name in KINDS:

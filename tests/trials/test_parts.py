@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from stdfit.base.errors import RequestError
-from stdfit.trials import Scenario, StatedResidual, draw_bench, draw_part, families, reflection
+from stdfit.trials import Scenario, StatedDecibels, draw_bench, draw_part, families, reflection
 from stdfit.trials.parts import with_resonance
 from stdfit.trials.scenario import KINDS
 
@@ -12,7 +12,7 @@ SWEEP = np.linspace(10e6, 6e9, 401)
 
 
 def plain(**fixed):
-    return Scenario(frequency_hz=SWEEP, residual=StatedResidual.perfect(), **fixed)
+    return Scenario(frequency_hz=SWEEP, residual=StatedDecibels.perfect(), **fixed)
 
 
 @pytest.mark.parametrize("family", families())

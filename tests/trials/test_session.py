@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from stdfit.trials import Scenario, StatedResidual, draw_bench
+from stdfit.trials import Scenario, StatedDecibels, draw_bench
 from stdfit.trials.scenario import KINDS
 from stdfit.trials.session import Connections, connect, draw_connections, draw_drift
 
@@ -12,7 +12,7 @@ QUIET = {"scatter_ps": 0.0, "scatter_ohm": 0.0, "scatter_ff": 0.0, "noise": 0.0,
 
 
 def scenario(**fixed):
-    return Scenario(**{"frequency_hz": SWEEP, "residual": StatedResidual.perfect(), **QUIET, **fixed})
+    return Scenario(**{"frequency_hz": SWEEP, "residual": StatedDecibels.perfect(), **QUIET, **fixed})
 
 
 def test_readings_without_any_error_are_the_truth():

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from stdfit.trials import Scenario, StatedResidual, draw_bench
+from stdfit.trials import Scenario, StatedDecibels, draw_bench
 from stdfit.trials.families import sweep
 from stdfit.trials.score import score
 
@@ -15,7 +15,7 @@ def limits_of_the_open(seed, resonance_hz):
     good = np.array([GOOD_DB])
     scenario = Scenario(
         frequency_hz=sweep(50e6, 6e9, 239),
-        residual=StatedResidual(np.array([1e9]), good, good, 20 * np.log10(1 + 10 ** (-good / 20))),
+        residual=StatedDecibels(np.array([1e9]), good, good, 20 * np.log10(1 + 10 ** (-good / 20))),
         connections=4,
         offset_delay_ps=(12.0, 30.0),
         resonance_hz=resonance_hz,
