@@ -66,27 +66,24 @@ def analyser_sources(observed: Sequence[Observed], residual: StatedResidual) -> 
     A stated bound is the 95 % radius of a circular complex value: 2.448 standard deviations per component. Between
     the stated frequencies it is interpolated in dB, beyond them held.
     """
+
+    def between(logarithm: FloatArray) -> list[FloatArray]:
+        return [np.interp(one.frequency_hz, residual.frequency_hz, logarithm) for one in observed]
+
     bounds = {
-        "analyser residuals (directivity)": residual.directivity,
-        "analyser residuals (tracking)": residual.reflection_tracking,
-        "analyser residuals (source match)": residual.source_match,
+        "directivity": [np.exp(own) for own in between(np.log(residual.directivity))],
+        # A tracking bound is stated as the dB of 1 + |δT|.
+        "tracking": [np.expm1(own) for own in between(np.log1p(residual.reflection_tracking))],
+        "source match": [np.exp(own) for own in between(np.log(residual.source_match))],
     }
     return [
         SmoothSource(
-            name,
-            tuple(
-                in_decibels(one.frequency_hz, residual.frequency_hz, bound) / CIRCULAR * one.gamma**power
-                for one in observed
-            ),
+            f"analyser residuals ({name})",
+            tuple(bound / CIRCULAR * one.gamma**power for one, bound in zip(observed, each, strict=True)),
             common=True,
         )
-        for power, (name, bound) in enumerate(bounds.items())
+        for power, (name, each) in enumerate(bounds.items())
     ]
-
-
-def in_decibels(frequency_hz: FloatArray, knots_hz: FloatArray, bound: FloatArray) -> FloatArray:
-    """Interpolate a positive bound as a straight line in dB."""
-    return np.asarray(np.exp(np.interp(frequency_hz, knots_hz, np.log(bound))))
 
 
 def connection_sources(

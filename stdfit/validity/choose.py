@@ -39,7 +39,7 @@ FIRST_POINTS = 200
 NEAR = 0.97
 """Limits above this part of the best are as good as equal; then the simpler order is taken."""
 
-SLACK = 1.2
+SLACK = 1.1
 """Among those, mean bounds below this multiple of the smallest are as good as equal."""
 
 INDEPENDENT_PIECES = 4.0

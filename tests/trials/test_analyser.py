@@ -6,7 +6,7 @@ import pytest
 from stdfit.trials.analyser import (
     LENGTHS,
     Residuals,
-    StatedResidual,
+    StatedDecibels,
     draw_residuals,
     gaussian_process,
     imperfect_correction,
@@ -97,7 +97,7 @@ def test_correction_of_ideal_standards_to_first_order():
 
 
 def test_perfect_correction_does_nothing_visible():
-    drawn = draw_residuals(StatedResidual.perfect(), SWEEP, np.random.default_rng(35))
+    drawn = draw_residuals(StatedDecibels.perfect(), SWEEP, np.random.default_rng(35))
     gamma = np.full(SWEEP.size, 0.8 - 0.3j)
     np.testing.assert_allclose(imperfect_correction(gamma, drawn), gamma, atol=1e-15)
 

@@ -135,7 +135,7 @@ def test_the_magnitude_of_an_ideal_load_is_not_linear():
     mean = np.sqrt(2.0 / np.pi) * large * ellipe(1.0 - (small / large) ** 2)
     expected = np.sqrt(large**2 + small**2 - mean**2)
     np.testing.assert_allclose(one.drawn_magnitude_u, expected, rtol=4.0 / np.sqrt(DRAWS))
-    np.testing.assert_allclose(one.linear_magnitude_u, real, rtol=1e-6)
+    np.testing.assert_allclose(one.linear_magnitude_u, real, rtol=4.0 / np.sqrt(2.0 * DRAWS))
     at = int(np.argmin(np.abs(imag / real - 1.0)))
     assert imag[at] / real[at] == pytest.approx(1.0, abs=0.03)
     assert one.drawn_magnitude_u[at] == pytest.approx(SIGMA * np.sqrt(2.0 - np.pi / 2.0), rel=0.07)
@@ -173,7 +173,9 @@ def test_a_part_of_few_degrees_of_freedom_gives_students_factor(freedom):
     quantile = t.ppf(0.975, freedom)
     spread = np.sqrt(0.05 * 0.95 / DRAWS) / (2.0 * t.pdf(quantile, freedom)) / quantile
     np.testing.assert_allclose(one.drawn / sd, student(freedom), rtol=4.0 * spread)
-    np.testing.assert_allclose(one.linear / sd, student(freedom), rtol=1e-4)
+    np.testing.assert_allclose(one.linear / sd, student(freedom), rtol=4.0 * spread)
+    # Both are of the same draws: the tails of Student's t are no curvature.
+    np.testing.assert_allclose(one.drawn, one.linear, rtol=0.01)
 
 
 @pytest.mark.parametrize("freedom", [3.0, 5.0, 12.0])
@@ -191,7 +193,7 @@ def test_scatter_of_few_degrees_of_freedom_gives_the_factor_of_a_circle(freedom)
     spread = np.sqrt(0.05 * 0.95 / DRAWS) / p / circular(freedom)
     growth = circular(freedom) / CIRCULAR
     assert one.drawn[at] / plain.linear[at] == pytest.approx(growth, rel=0.03 + 4.0 * spread)
-    assert one.linear[at] / plain.linear[at] == pytest.approx(growth, rel=0.03)
+    assert one.linear[at] / plain.linear[at] == pytest.approx(growth, rel=0.03 + 4.0 * spread)
 
 
 def test_the_kit_keeps_what_the_check_said(workshop):

@@ -47,7 +47,14 @@ def test_the_stated_bound_is_a_95_per_cent_radius(word, field, power):
     (source,) = (source for source in analyser_sources([observed(1)], STATED) if word in source.name)
     variance = np.abs(source.profiles[0]) ** 2
     circle = radius_95(np.stack([variance, variance, np.zeros(FREQUENCY.size)], axis=-1))
-    expected = np.interp(FREQUENCY, STATED.frequency_hz, getattr(STATED, field)) * 0.7**power
+    bound = getattr(STATED, field)
+    # Straight lines in the decibels in which each is stated: of |δ|, but of 1 + |δ| for tracking.
+    if word == "tracking":
+        expected = np.interp(FREQUENCY, STATED.frequency_hz, 20 * np.log10(1 + bound))
+        expected = (10 ** (expected / 20) - 1) * 0.7**power
+    else:
+        expected = np.interp(FREQUENCY, STATED.frequency_hz, 20 * np.log10(bound))
+        expected = 10 ** (expected / 20) * 0.7**power
     np.testing.assert_allclose(circle, expected, rtol=1e-9)
     assert source.common
     assert source.freedom == np.inf

@@ -41,9 +41,12 @@ def test_the_uncertainty_of_a_combination_comes_from_the_joint_covariance(kit):
     direction[0, kit.order.index("open.offset_delay_ps")] = 1.0
     direction[0, kit.order.index("open.c0")] = 0.05
     u, u95 = expanded(direction, kit.shares)
-    assert combination.u == pytest.approx(u[0], rel=1e-9)
-    assert combination.high - combination.value == pytest.approx(u95[0], rel=1e-9)
-    assert combination.value - combination.low == pytest.approx(u95[0], rel=1e-9)
+    # What is left of a misfit comes on top; on readings that the model follows it is little.
+    assert u[0] <= combination.u == pytest.approx(u[0], rel=0.02)
+    assert u95[0] <= combination.high - combination.value == pytest.approx(u95[0], rel=0.02)
+    assert combination.value - combination.low == pytest.approx(
+        combination.high - combination.value, rel=1e-9
+    )
     parts = by_name(opened)
     assert combination.u < 0.2 * parts["offset_delay_ps"].u  # the readings fix the sum, hardly the parts
 

@@ -8,7 +8,7 @@ import pytest
 from stdfit.base.errors import RequestError
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import curve, total_covariance
-from stdfit.validity.limits import TOLERANCES, ladder, largest_share, limits, shares_at
+from stdfit.validity.limits import TOLERANCES, ladder, largest_source, limits, shares_at
 from stdfit.writing.kit_file import kit_text
 from stdfit.writing.kit_reading import parse_kit
 
@@ -44,8 +44,8 @@ def test_a_connector_that_ends_below_the_readings(modest_kit):
 def test_a_source_is_named_with_its_part(modest_kit):
     limit = of(modest_kit, "short", 0.015)
     assert 0.0 < limit.limit_hz < 6e9
-    name, _, part = limit.reason.rpartition(", ")
-    assert name in {share.name for share in modest_kit.shares}
+    name, part, *_ = limit.reason.split(", ")
+    assert name in {share.name.partition(" (")[0] for share in modest_kit.shares}
     assert 0 < float(part.split(" %")[0]) <= 100
 
 
@@ -138,6 +138,10 @@ def test_parts_of_the_variance(modest_kit):
     one = Share("one", np.inf, np.array([[[3.0, 0.0], [0.0, 0.0]]]))
     other = Share("other", np.inf, np.array([[[0.0, 0.0], [0.0, 0.5]], [[0.0, 0.0], [0.0, 1.0]]]))
     np.testing.assert_allclose(shares_at(design, [one, other]), [0.75, 0.25])
-    assert largest_share(design, [other, one]) == ("one", 0.75)
+    assert largest_source(design, [other, one]) == "one, 75 % of the variance"
+    half = Share("pair (a)", np.inf, np.array([[[2.0, 0.0], [0.0, 0.0]]]))
+    rest = Share("pair (b)", np.inf, np.array([[[1.5, 0.0], [0.0, 0.0]]]))
+    # Neither half of the pair is the largest source, but together they are.
+    assert largest_source(design, [one, half, rest]) == "pair, 54 % of the variance, most of it a"
     assert total_covariance([one, other]).tolist() == [[3.0, 0.0], [0.0, 1.0]]
     assert shares_at(np.zeros(2), [one, other]).tolist() == [0.0, 0.0]
