@@ -125,7 +125,7 @@ def _number(text: str) -> float:
     try:
         return float(text)
     except ValueError:
-        raise argparse.ArgumentTypeError(f"{text!r} is not a number") from None
+        raise argparse.ArgumentTypeError(f"{text!r} is not a number: write it like 0.02 or 1e9") from None
 
 
 def _seed(text: str) -> int:
@@ -259,7 +259,8 @@ def _fit(asked: argparse.Namespace) -> int:
     print(summary(kit, warnings=False))
     print(f"kit file: {target}")
     print(verdict(kit))
-    print(f"next: stdfit show {target}, stdfit curve {target}, stdfit limit {target} --within 0.01 0.05")
+    print(f"next: stdfit plan {bench.path}   (what would push it further)")
+    print(f"      stdfit limit {target} --within 0.01 0.05   (how far at other tolerances)")
     return DONE
 
 

@@ -138,7 +138,7 @@ def _parse_toml(text: str, path: Path) -> dict[str, object]:
         column = f", column {place[2]}" if place else ""
         raise BenchError(
             f"not valid TOML{column}: {quoted(what, 100)[1:-1]}",
-            "mend the line; text needs quotes",
+            "mend the line; text needs quotes, and numbers a decimal point",
             file=path,
             line=line,
         ) from fault

@@ -23,6 +23,9 @@ from stdfit.validity.linear_check import check_lines
 
 Told = Callable[[int, int], None]
 
+GIVEN = "you gave"
+"""A note that evidence of the user's and readings disagree is a warning too."""
+
 CHECK_SEED = 1
 """The check draws the same numbers every time, so that a kit can be made again."""
 
@@ -156,7 +159,10 @@ def kit_of(
             shares=shares,
             ladder=(),
             files=files,
-            warnings=prepared.warnings,
+            warnings=(
+                *prepared.warnings,
+                *(f"{one.name}: {note}" for one in definitions for note in one.notes if GIVEN in note),
+            ),
         )
     )
 

@@ -25,6 +25,9 @@ RULER_PS = 0.1
 RESISTANCE_OHM = 0.02
 """Standard uncertainty of a DC resistance in the remedy that asks for one."""
 
+SMALLEST_GAIN = 0.05
+"""Gains below this part of the present limit are none."""
+
 LONGER = 1.5
 """How much longer a sweep is in the remedy that asks for one."""
 
@@ -129,21 +132,21 @@ def _kit(prepared: Prepared) -> Kit:
 def _remedies(prepared: Prepared, kit: Kit, held_back: Definition) -> Iterator[tuple[str, Prepared, bool]]:
     """Yield each remedy in words, the bench as it would then be, and whether the prediction is at most."""
     most = prepared.connections
-    for count in sorted({5, 10, 2 * most} - set(range(most + 1))):
+    for count in [count for count in (3, 5, 10, 20, 40) if count > most][:2]:
         yield f"make {count} connections of each standard", with_connections(prepared, count), False
     yield (
         f"correct the analyser with a kit whose residuals are {BETTER_DB:.0f} dB smaller",
         with_better_reference(prepared, 10.0 ** (-BETTER_DB / 20.0)),
         True,
     )
+    lengths = [one for one in kit.definitions if one.kind != "load" and one.parameters[0].role == "free"]
+    if lengths:
+        ruled = prepared
+        for one in lengths:
+            ruled = with_given(ruled, one.name, "offset_delay_ps", one.parameters[0].value, RULER_PS)
+        names = " and ".join(f"'{one.name}'" for one in lengths)
+        yield f"measure the offset length of {names} to {RULER_PS:g} ps (0.03 mm in air)", ruled, False
     for one in kit.definitions:
-        delay = one.parameters[0]
-        if one.kind != "load" and delay.role == "free":
-            yield (
-                f"measure the offset length of '{one.name}' to {RULER_PS:g} ps (0.03 mm in air)",
-                with_given(prepared, one.name, "offset_delay_ps", delay.value, RULER_PS),
-                False,
-            )
         resistance = next((p for p in one.parameters if p.name == "resistance_ohm"), None)
         if resistance is not None and resistance.role == "free":
             yield (
@@ -155,7 +158,7 @@ def _remedies(prepared: Prepared, kit: Kit, held_back: Definition) -> Iterator[t
     if kit.limit.limit_hz >= 0.999 * min(one.read_top_hz for one in kit.definitions) and top < kit.top_hz:
         reach = min(LONGER * top, kit.top_hz)
         yield f"read on up to {reach / 1e9:.3g} GHz", with_longer_sweep(prepared, kit, reach), True
-    if held_back.misfit.max() > 0.0:
+    if held_back.misfit.max() > 0.0 and not prepared.imagined_connections:
         yield (
             f"make '{held_back.name}' so that it follows its model (fewer steps, shorter leads, no resonance)",
             with_model_for(prepared, kit, held_back),
@@ -259,7 +262,7 @@ def _reading(one: Observed, gamma: ComplexArray) -> Observed:
     return Observed(one.name, one.kind, one.frequency_hz, gamma, one.deviations)
 
 
-def ranked(remedies: Sequence[Remedy], smallest_hz: float = 1e6) -> tuple[list[Remedy], list[Remedy]]:
-    """Return the remedies that help, best first, and those that do not."""
-    helping = [one for one in remedies if one.gain_hz > smallest_hz]
-    return helping, [one for one in remedies if one.gain_hz <= smallest_hz]
+def ranked(remedies: Sequence[Remedy]) -> tuple[list[Remedy], list[Remedy]]:
+    """Return the remedies that help, best first, and those that move the limit by less than `SMALLEST_GAIN`."""
+    helping = [one for one in remedies if one.gain_hz > SMALLEST_GAIN * (one.limit_hz - one.gain_hz)]
+    return helping, [one for one in remedies if one not in helping]

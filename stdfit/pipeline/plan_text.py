@@ -22,7 +22,7 @@ def plan_text(plan: Plan, *, measured: bool) -> str:
     lines = [("" if measured else "predicted, before any reading: ") + verdict(plan.kit)]
     if not measured:
         lines.append(
-            "  (parts that follow their models, a typical analyser with errors of the stated or assumed size)"
+            "  (usual parts that follow their models, read by a typical analyser whose errors pass for misfit in part)"
         )
     lines += ["", f"What makes up the bound of '{plan.standard}' at {frequency(plan.at_hz)}"]
     rows = [["source", "part of variance", "alone (95 %)"]]

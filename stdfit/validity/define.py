@@ -6,12 +6,18 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from stdfit.base.arrays import FloatArray
-from stdfit.fitting.problem import Problem
+from stdfit.fitting.problem import Problem, Quantity
 from stdfit.fitting.solve import Solution
 from stdfit.uncertainty.budget import Share, expanded
 from stdfit.validity.choose import Choice
 from stdfit.validity.kit import Combination, Definition, Fitted, total_covariance
 from stdfit.validity.limit import Limit
+
+SMALLEST_DELAY_PS = 0.05
+"""Negative delays below this are nothing to explain: 0.015 mm of air."""
+
+DISAGREES = 3.0
+"""Standard uncertainties beyond which evidence and readings are said to disagree."""
 
 TRADED = 0.9
 """Correlation above which two parts are said to trade off."""
@@ -82,6 +88,8 @@ def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], t
         combinations = _combinations(
             one.kind, parameters, order, [*shares, wrong], problem.reference_ohm, top_hz
         )
+        said = [contradiction(problem.quantities[i], settled.values[i], one.name) for i in problem.columns[s]]
+        contradictions = [line for line in said if line]
         misfit_hz, misfit = settled.misfits[s]
         definitions.append(
             Definition(
@@ -98,11 +106,26 @@ def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], t
                 misfit_hz=misfit_hz,
                 misfit=misfit,
                 limit=Limit(0.0, 0.0, ""),
-                notes=_notes(one.kind, parameters, combinations, settled.solution),
+                notes=_notes(one.kind, parameters, combinations, settled.solution, contradictions),
                 tried=settled.choices[s].tried,
             )
         )
     return tuple(definitions), order, shares
+
+
+def contradiction(quantity: Quantity, value: float, standard: str) -> str:
+    """Say that readings and evidence on a quantity disagree, or nothing; once, at the standard that owns it."""
+    if quantity.evidence_u is None or quantity.standard != standard:
+        return ""
+    off = abs(value - quantity.value) / quantity.evidence_u
+    if off <= DISAGREES:
+        return ""
+    parameter = quantity.parameter
+    who = "you gave" if quantity.role == "given" else "assumed was"
+    return (
+        f"{parameter.label}: {who} {quantity.value:g} ± {quantity.evidence_u:.2g} {parameter.unit}, and the readings "
+        f"pull it to {value:.4g}, {off:.0f} standard uncertainties away: check the value, its unit (one way?), the file"
+    )
 
 
 def _combinations(
@@ -159,7 +182,11 @@ def _combinations(
 
 
 def _notes(
-    kind: str, parameters: Sequence[Fitted], combinations: Sequence[Combination], solution: Solution
+    kind: str,
+    parameters: Sequence[Fitted],
+    combinations: Sequence[Combination],
+    solution: Solution,
+    contradictions: Sequence[str],
 ) -> tuple[str, ...]:
     """Say in words what a user must know of this fit."""
     notes = []
@@ -167,10 +194,10 @@ def _notes(
     if not solution.converged:
         notes.append(f"the fit did not converge: {solution.message}")
     delay = by_name["offset_delay_ps"]
-    if delay.value < 0.0:
+    if delay.value < -SMALLEST_DELAY_PS:
         notes.append(
-            f"the delay is negative ({delay.value:.2f} ps): the reference plane of the readings lies behind this "
-            "standard's own, which is real where the analyser was calibrated with a kit whose planes lie further out"
+            "the delay is negative: the reference plane of the readings lies behind this standard's own, which is "
+            "real where the analyser was calibrated with a kit whose planes lie further out"
         )
     if by_name["offset_loss_gohm_per_s"].role == "at its bound":
         notes.append(
@@ -183,6 +210,7 @@ def _notes(
                 f"{parts} trade off (correlation {combination.correlation:+.3f}): the readings fix "
                 f"{combination.label}, hardly the parts; a ruler or a drawing tells them apart"
             )
+    notes += contradictions
     assumed = [parameter.name for parameter in parameters if parameter.role == "assumed"]
     if assumed:
         notes.append(f"rests on weak assumed evidence (common practice): {', '.join(assumed)}")

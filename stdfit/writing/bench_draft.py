@@ -152,10 +152,8 @@ def draft(folder_name: str, found: Sequence[Found]) -> str:
         ]
         if one.kind == "load":
             lines.append(
-                "# given.resistance_ohm = { value = 50.0, u = 0.05 }   # <-- a multimeter's, if you have it"
+                "# given.resistance_ohm = { value = …, u = 0.05 }   # <-- a multimeter's, if you have it"
             )
         else:
-            lines.append(
-                "# given.offset_delay_ps = { value = 18.0, u = 0.5 }   # <-- a ruler's, if you have it"
-            )
+            lines.append("# given.offset_delay_ps = { value = …, u = 0.5 }   # <-- a ruler's, if you have it")
     return "\n".join(lines) + "\n"

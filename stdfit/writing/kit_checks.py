@@ -81,6 +81,11 @@ def _definitions(kit: Kit) -> Faults:
         wanted = [parameter.name for parameter in PARAMETERS[definition.kind]]
         if [parameter.name for parameter in definition.parameters] != wanted:
             yield f"{key}.parameter", f"the parameters of this kind are {', '.join(wanted)}, in this order"
+        for p, (own, known) in enumerate(
+            zip(definition.parameters, PARAMETERS[definition.kind], strict=True)
+        ):
+            if own.unit != known.unit:
+                yield f"{key}.parameter[{p}].unit", f"{own.name} is in {known.unit}"
         yield from _parameters(definition, kit.order, key)
         for c, one in enumerate(definition.combinations):
             if not np.isfinite([one.value, one.u, one.low, one.high]).all():

@@ -61,9 +61,12 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
     for definition in kit.definitions:
         lines += _definition(kit, definition)
     lines += ["", *ladder_lines(kit)]
-    notes = [f"{one.name}: {note}" for one in kit.definitions for note in one.notes]
+    notes: dict[str, list[str]] = {}
+    for one in kit.definitions:
+        for note in one.notes:
+            notes.setdefault(note, []).append(one.name)
     if notes:
-        lines += ["", "Notes", *(f"  {note}" for note in notes)]
+        lines += ["", "Notes", *(f"  {', '.join(names)}: {note}" for note, names in notes.items())]
     if kit.checks:
         lines += ["", "Checked", *(f"  {check}" for check in kit.checks)]
     if warnings and kit.warnings:
@@ -97,7 +100,9 @@ def _definition(kit: Kit, definition: Definition) -> list[str]:
         f"{order} {frequency(limit_hz)}" for order, limit_hz in definition.tried if order != definition.shape
     ]
     tried = [f"    order {definition.shape}; others would be good to: {', '.join(others)}"] if others else []
-    return [f"  {definition.name}", *aligned(rows, indent="    "), *tried]
+    unused = any(parameter.role == "unused" for parameter in definition.parameters)
+    zero = ["    all others: 0"] if unused else []
+    return [f"  {definition.name}", *aligned(rows, indent="    "), *zero, *tried]
 
 
 def ladder_lines(kit: Kit) -> list[str]:
@@ -105,7 +110,10 @@ def ladder_lines(kit: Kit) -> list[str]:
     names = [definition.name for definition in kit.definitions]
     rows = [["within", "kit", *names]]
     rows += [
-        [f"{rung.within:g}", frequency(rung.kit_hz), *(frequency(one) for one in rung.standards_hz)]
+        [
+            f"{rung.within:g}",
+            *(frequency(one) if one > 0.0 else "none" for one in (rung.kit_hz, *rung.standards_hz)),
+        ]
         for rung in kit.ladder
     ]
     return ["How far at which tolerance on |error of Γ|", *aligned(rows)]

@@ -43,9 +43,10 @@ def test_fit_ends_with_verdict_and_next_command(shed):
     folder, _, fit = shed
     assert fit.returncode == 0
     lines = fit.stdout.splitlines()
-    assert lines[-3] == "kit file: kit.toml"
-    assert lines[-2].startswith("within 0.02 the kit is good to ")
-    assert lines[-1].startswith("next: stdfit show kit.toml")
+    assert lines[-4] == "kit file: kit.toml"
+    assert lines[-3].startswith("within 0.02 the kit is good to ")
+    assert lines[-2].startswith("next: stdfit plan bench.toml")
+    assert lines[-1].lstrip().startswith("stdfit limit kit.toml")
     assert (folder / "kit.toml").exists()
 
 

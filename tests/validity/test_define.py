@@ -104,7 +104,7 @@ def test_a_negative_delay_is_kept_and_explained(workshop):
     delay = by_name(short)["offset_delay_ps"]
     assert delay.value == pytest.approx(-3.0, abs=delay.high - delay.value)
     assert delay.value < 0.0
-    assert any(note.startswith("the delay is negative (-") for note in short.notes)
+    assert any(note.startswith("the delay is negative: ") for note in short.notes)
     assert not any("the delay is negative" in note for note in kit.definition("load").notes)
 
 
@@ -118,3 +118,18 @@ def test_a_loss_at_its_bound_is_told(workshop):
     assert loss.role == "at its bound"
     assert loss.u > 0.0
     assert any("held at 0 with the uncertainty of the free fit" in note for note in short.notes)
+
+
+def test_a_given_value_that_the_readings_contradict_is_told_loudly(workshop):
+    """A ruler that is 7 ps off at u = 0.5 ps: note and warning name value, unit and distance; a right one is quiet."""
+    values = workshop().values
+    true = values["short"][1][0]
+    wrong, right = (
+        workshop(given={"short": {"offset_delay_ps": (true + off, 0.5)}}).kit() for off in (7.0, 0.3)
+    )
+    (said,) = [line for line in wrong.warnings if "you gave" in line]
+    assert said.startswith(
+        f"short: offset delay: you gave {true + 7.0:g} ± 0.5 ps, and the readings pull it to "
+    )
+    assert "check the value, its unit" in said
+    assert not any("you gave" in line for line in right.warnings)

@@ -145,11 +145,14 @@ def test_what_was_guessed_is_marked(tmp_path):
 
 
 def test_the_offers_in_the_comments_are_good_bench_lines(tmp_path):
-    """A user who only takes the comment sign away must get a bench that is read."""
+    """A user who takes the comment sign away and puts in a number must get a bench that is read.
+
+    No number stands there: one that looks likely would be left in, and contradict the readings.
+    """
     for kind in VALUES:
         put(tmp_path, f"{kind}.s1p", gamma_of(kind))
     found, _ = find_standards(tmp_path)
-    text = draft("Shed", found).replace("# given.", "given.")
+    text = draft("Shed", found).replace("# given.", "given.").replace("value = …", "value = 20.0")
     bench = parse_bench(text, tmp_path / "bench.toml")
     assert [list(entry.given) for entry in bench.standards] == [
         ["offset_delay_ps"],

@@ -136,6 +136,7 @@ VALUES = {
     ),
     "kind": ('kind = "open"', 'kind = "thru"', "standard[0].kind", "there are open, short and load"),
     "kind of another": ('kind = "open"', 'kind = "short"', "standard[0].parameter", "are offset_delay_ps"),
+    "unit": ('unit = "ps"', 'unit = "ns"', "standard[0].parameter[0].unit", "offset_delay_ps is in ps"),
     "role": ('role = "free"', 'role = "fre"', "standard[0].parameter[0].role", "there are free, given"),
     "covariance name": (
         'name = "open.c0"',

@@ -22,10 +22,12 @@ What to type in (± 95 %); take all values of a standard together, since single 
     offset Z0             50.00          Ω        held
     C0                    45.50 ± 8      1e-15 F  given
     offset delay + Z0·C0  22.525 ± 0.25  ps       the sum that the readings fix
+    all others: 0
     order constant; others would be good to: even 3.25 GHz
   load
     offset Z0   50            Ω  held
     resistance  50.25 ± 0.12  Ω
+    all others: 0
 
 How far at which tolerance on |error of Γ|
   within  kit      open     load
@@ -87,7 +89,7 @@ def test_a_standard_of_which_nothing_is_used(small_kit):
         tried=(),
     )
     text = summary(replace(small_kit, definitions=(nothing, small_kit.definitions[1])))
-    assert "  open\n  load\n" in text
+    assert "  open\n    all others: 0\n  load\n" in text
 
 
 def test_data_says_what_the_text_says(small_kit):
