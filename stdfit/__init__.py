@@ -7,9 +7,8 @@ reflection and its 95 % bound at any frequency, `limits` the validity limits at 
 `read_kit` write and read kit files.
 """
 
-from importlib import import_module
-from typing import TYPE_CHECKING, Any
-
+# typing alone takes as long to import as the rest of `stdfit --help`.
+TYPE_CHECKING = False
 if TYPE_CHECKING:
     from stdfit.base.errors import FitError, InputError, StdfitError
     from stdfit.data.bench import read_bench
@@ -51,8 +50,10 @@ __all__ = [  # noqa: RUF022 — in the order of use
 ]
 
 
-def __getattr__(name: str) -> Any:
+def __getattr__(name: str) -> object:
     """Import a public name when it is first used: `stdfit --help` must not wait for scipy."""
     if name in _HOMES:
+        from importlib import import_module
+
         return getattr(import_module(_HOMES[name]), name)
     raise AttributeError(f"module 'stdfit' has no attribute {name!r}")

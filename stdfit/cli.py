@@ -3,15 +3,20 @@
 Nothing heavy is imported before it is needed, so that help and wrong usage answer at once.
 """
 
+from __future__ import annotations
+
 import argparse
 import os
 import sys
-from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
-from pathlib import Path
-from typing import TYPE_CHECKING, NoReturn
 
+# typing and pathlib alone take as long to import as the rest of `--help`.
+TYPE_CHECKING = False
 if TYPE_CHECKING:
+    from collections.abc import Callable, Iterator, Sequence
+    from pathlib import Path
+    from typing import NoReturn
+
     from stdfit.validity.kit import Kit
 
 DONE, ANSWER_IS_NO, WRONG_INPUT, OWN_FAULT = 0, 1, 2, 3
@@ -44,18 +49,18 @@ def _parser() -> _Parser:
         "demo", "simulate a bench with a known truth, characterise it, show fitted against true", _demo
     )
     demo.add_argument(
-        "--out", metavar="DIR", type=Path, default=Path("stdfit-demo"), help="where to write (stdfit-demo)"
+        "--out", metavar="DIR", type=_path, default="stdfit-demo", help="where to write (stdfit-demo)"
     )
 
     new = add("new", "write a commented bench.toml from the readings found in a folder", _new)
-    new.add_argument("folder", metavar="DIR", type=Path)
+    new.add_argument("folder", metavar="DIR", type=_path)
 
     fit = add("fit", "characterise a kit: readings in, a kit file with bounds and a limit out", _fit)
     fit.add_argument(
-        "bench", metavar="BENCH", type=Path, help="a bench file, or a folder that holds bench.toml"
+        "bench", metavar="BENCH", type=_path, help="a bench file, or a folder that holds bench.toml"
     )
     fit.add_argument(
-        "-o", "--output", metavar="KIT", type=Path, help="kit file to write (kit.toml beside the bench file)"
+        "-o", "--output", metavar="KIT", type=_path, help="kit file to write (kit.toml beside the bench file)"
     )
     fit.add_argument(
         "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the bench file's, 0.02)"
@@ -73,17 +78,17 @@ def _parser() -> _Parser:
         "plan", "say what holds a kit back, and what would move its limit; before or after measuring", _plan
     )
     plan.add_argument(
-        "bench", metavar="BENCH", type=Path, help="a bench file, or a folder that holds bench.toml"
+        "bench", metavar="BENCH", type=_path, help="a bench file, or a folder that holds bench.toml"
     )
     plan.add_argument(
         "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the bench file's)"
     )
 
     show = add("show", "show a kit file: what to type in, how sure, how far", _show)
-    show.add_argument("kit", metavar="KIT", type=Path)
+    show.add_argument("kit", metavar="KIT", type=_path)
 
     curve = add("curve", "print reflection and 95 % bound over frequency as CSV", _curve)
-    curve.add_argument("kit", metavar="KIT", type=Path)
+    curve.add_argument("kit", metavar="KIT", type=_path)
     curve.add_argument(
         "--standard", metavar="NAME", action="append", help="only this standard; may be repeated"
     )
@@ -93,18 +98,24 @@ def _parser() -> _Parser:
     curve.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="these frequencies instead")
 
     limit = add("limit", "print the frequency-validity limit of kit and standards, with reasons", _limit)
-    limit.add_argument("kit", metavar="KIT", type=Path)
+    limit.add_argument("kit", metavar="KIT", type=_path)
     limit.add_argument("--within", metavar="X", type=_tolerance, nargs="+", help="tolerances (the kit's own)")
 
     trials = add("trials", "score the bounds on simulated benches with a known truth", _trials)
     trials.add_argument(
-        "like", metavar="BENCH", type=Path, nargs="?", help="simulate benches like this one (all families)"
+        "like", metavar="BENCH", type=_path, nargs="?", help="simulate benches like this one (all families)"
     )
     trials.add_argument("--benches", metavar="N", type=_count, default=25, help="benches of each family (25)")
     trials.add_argument("--family", metavar="NAME", action="append", help="only this family; may be repeated")
     trials.add_argument("--within", metavar="X", type=_tolerance, default=0.02, help="tolerance (0.02)")
     trials.add_argument("--seed", metavar="S", type=_seed, default=1, help="seed of all chance (1)")
     return parser
+
+
+def _path(text: str) -> Path:
+    from pathlib import Path
+
+    return Path(text)
 
 
 def _tolerance(text: str) -> float:
@@ -144,10 +155,10 @@ def _draws(text: str) -> int:
 
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command; return its exit code."""
-    from stdfit.base.errors import FitError, StdfitError
-
     parser = _parser()
     asked = parser.parse_args(arguments)
+    from stdfit.base.errors import FitError, StdfitError
+
     try:
         if asked.version:
             from stdfit.pipeline import program_version
@@ -206,7 +217,7 @@ def _tell(text: str) -> None:
     print(f"stdfit: {text}", file=sys.stderr)
 
 
-def _warn(kit: "Kit") -> None:
+def _warn(kit: Kit) -> None:
     for warning in kit.warnings:
         _tell(f"warning: {warning}")
 
@@ -224,7 +235,7 @@ def _check_target(path: Path) -> None:
         raise RequestError("exists and is no kit file", "name another file with -o", file=path)
 
 
-def _write_kit(kit: "Kit", path: Path) -> None:
+def _write_kit(kit: Kit, path: Path) -> None:
     """Write a kit file, over nothing but a kit file."""
     from stdfit.writing.kit_file import kit_text
     from stdfit.writing.safely import write_whole
