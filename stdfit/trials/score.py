@@ -33,7 +33,7 @@ class Score:
         |fitted − true|, its bound, and the bound that the fit's own covariance alone would claim, over the fit
         range or up to the limit, whichever is more.
     quantities : tuple of bool
-        For each determined quantity (resistance, and the sum that the readings fix) whether its 95 % interval
+        For each determined quantity (resistance, and the combination that the readings fix) whether its 95 % interval
         covers the truth.
     limit : float
         The validity limit as part of the last reading's frequency.
@@ -164,6 +164,10 @@ def quantities_inside(kit: Kit, definition: Definition, simulated: SimulatedBenc
     if definition.kind == "load":
         resistance = next(one for one in definition.parameters if one.name == "resistance_ohm")
         inside.append(resistance.low <= true_resistance(simulated, definition.name, kit) <= resistance.high)
+        # Behind a line of its own a load's L and C are no longer those that show at low frequency.
+        behind_line = definition.values[0] != 0.0
+        for one in () if behind_line else definition.combinations:
+            inside.append(one.low <= true_imbalance_ph(simulated, definition.name, kit) <= one.high)
     elif definition.combinations:
         (one,) = definition.combinations
         true = true_equivalent_delay(simulated, definition.name, definition.kind)
@@ -183,10 +187,28 @@ def true_equivalent_delay(simulated: SimulatedBench, name: str, kind: str) -> fl
     Over the lowest tenth of the sweep the phase is −4πfτ − k√f; the second term is the skin effect's, which
     the fit gives to the loss.
     """
-    top = float(simulated.frequency_hz[-1]) / 10.0
-    f = np.linspace(top / 50.0, top, 50)
+    f = low_grid(simulated)
     gamma = simulated.truth_at(name, f)
     phase = np.unwrap(np.angle(gamma if kind == "open" else -gamma))
-    terms = np.stack([f, np.sqrt(f)], axis=1)
-    (slope, _), *_ = np.linalg.lstsq(terms / terms[-1], phase, rcond=None)
-    return float(-1e12 * slope / terms[-1, 0] / (4.0 * np.pi))
+    return -1e12 * slope_beside_skin(f, phase) / (4.0 * np.pi)
+
+
+def true_imbalance_ph(simulated: SimulatedBench, name: str, kit: Kit) -> float:
+    """Return the true L − C·Z0² of a load in pH: the part of its reactance that grows as f."""
+    f = low_grid(simulated)
+    gamma = simulated.truth_at(name, f)
+    reactance = kit.reference_ohm * ((1.0 + gamma) / (1.0 - gamma)).imag
+    return 1e12 * slope_beside_skin(f, reactance) / (2.0 * np.pi)
+
+
+def low_grid(simulated: SimulatedBench) -> FloatArray:
+    """Return frequencies in the lowest tenth of the sweep."""
+    top = float(simulated.frequency_hz[-1]) / 10.0
+    return np.linspace(top / 50.0, top, 50)
+
+
+def slope_beside_skin(frequency_hz: FloatArray, values: FloatArray) -> float:
+    """Return the slope of what grows as f, beside what the skin effect makes grow as √f."""
+    terms = np.stack([frequency_hz, np.sqrt(frequency_hz)], axis=1)
+    (slope, _), *_ = np.linalg.lstsq(terms / terms[-1], values, rcond=None)
+    return float(slope / terms[-1, 0])
