@@ -16,15 +16,12 @@ from stdfit.data.readings import read_reading
 from stdfit.pipeline.prepare import Prepared, prepare
 from stdfit.pipeline.settle import choose_all, settle
 from stdfit.uncertainty.monte_carlo import compare_with_linear
-from stdfit.validity.define import Settled, define
+from stdfit.validity.define import Settled, define, given_contradictions
 from stdfit.validity.kit import Kit, SourceFile
 from stdfit.validity.limits import ladder, limits
 from stdfit.validity.linear_check import check_lines
 
 Told = Callable[[int, int], None]
-
-GIVEN = "you gave"
-"""A note that evidence of the user's and readings disagree is a warning too."""
 
 CHECK_SEED = 1
 """The check draws the same numbers every time, so that a kit can be made again."""
@@ -161,7 +158,7 @@ def kit_of(
             files=files,
             warnings=(
                 *prepared.warnings,
-                *(f"{one.name}: {note}" for one in definitions for note in one.notes if GIVEN in note),
+                *given_contradictions(settled),
             ),
         )
     )

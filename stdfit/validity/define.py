@@ -113,6 +113,15 @@ def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], t
     return tuple(definitions), order, shares
 
 
+def given_contradictions(settled: Settled) -> tuple[str, ...]:
+    """Return a line for each value that the user gave and the readings contradict."""
+    return tuple(
+        f"{quantity.standard}: {line}"
+        for quantity, value in zip(settled.problem.quantities, settled.values, strict=True)
+        if quantity.role == "given" and (line := contradiction(quantity, float(value), quantity.standard))
+    )
+
+
 def contradiction(quantity: Quantity, value: float, standard: str) -> str:
     """Say that readings and evidence on a quantity disagree, or nothing; once, at the standard that owns it."""
     if quantity.evidence_u is None or quantity.standard != standard:

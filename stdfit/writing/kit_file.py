@@ -1,6 +1,5 @@
 """Kit files: a kit as TOML, so that reading one back and writing it again gives the same bytes."""
 
-import math
 from collections.abc import Sequence
 from pathlib import Path
 from typing import Any
@@ -136,7 +135,7 @@ def _source(share: Share) -> Any:
     triangles.multiline(True)
     return _table(
         name=share.name,
-        degrees_of_freedom=share.freedom if math.isfinite(share.freedom) else math.inf,
+        degrees_of_freedom=share.freedom,
         lower_triangles=triangles,
     )
 
