@@ -1,0 +1,91 @@
+"""Commands that take a bench: new, fit, plan."""
+
+from __future__ import annotations
+
+from stdfit.cli.exit_codes import DONE
+from stdfit.cli.screen import print_json, progress, tell, warn
+from stdfit.cli.targets import check_target, default_target, write_kit
+
+# typing and pathlib alone take as long to import as the rest of `--help`.
+TYPE_CHECKING = False
+if TYPE_CHECKING:
+    import argparse
+
+
+def new(asked: argparse.Namespace) -> int:
+    """Write a commented bench file."""
+    from stdfit.base.errors import RequestError
+    from stdfit.writing.bench_draft import draft, find_standards
+    from stdfit.writing.safely import write_whole
+
+    target = asked.folder / "bench.toml"
+    if target.exists():
+        raise RequestError("exists already, and is not overwritten", "edit it, or move it away", file=target)
+    found, left_out = find_standards(asked.folder)
+    write_whole(target, draft(asked.folder.resolve().name, found))
+    for line in left_out:
+        tell(f"left out: {line}")
+    if asked.json:
+        print_json(
+            {
+                "bench_file": str(target),
+                "standards": [{"kind": f.kind, "files": list(f.files)} for f in found],
+            }
+        )
+        return DONE
+    for one in found:
+        print(f"{one.kind}: {', '.join(one.files)}{'' if one.by_name else '  (guessed from the readings)'}")
+    print(f"bench file: {target}")
+    print(f"next: look at the lines marked '<--' in it, then: stdfit fit {asked.folder}")
+    return DONE
+
+
+def fit(asked: argparse.Namespace) -> int:
+    """Characterise a kit."""
+    from stdfit.data.bench import read_bench
+    from stdfit.pipeline import fit_bench
+    from stdfit.writing.plain_data import kit_data
+    from stdfit.writing.summary import summary, verdict
+
+    bench = read_bench(asked.bench)
+    target = asked.output if asked.output is not None else default_target(bench.path)
+    check_target(target)
+    with progress("draws") as told:
+        kit = fit_bench(bench, within=asked.within, draws=asked.monte_carlo, tell=told)
+    write_kit(kit, target)
+    if asked.json:
+        warn(kit)
+        print_json({**kit_data(kit), "kit_file": str(target)})
+        return DONE
+    warn(kit)
+    print(summary(kit, warnings=False))
+    print(f"kit file: {target}")
+    print(verdict(kit))
+    print(f"next: stdfit plan {bench.path}   (what would push it further)")
+    print(f"      stdfit limit {target} --within 0.01 0.05   (how far at other tolerances)")
+    return DONE
+
+
+def plan(asked: argparse.Namespace) -> int:
+    """Say what holds a kit back."""
+    from dataclasses import replace
+
+    from stdfit.data.bench import read_bench
+    from stdfit.pipeline import prepare, read_sweeps
+    from stdfit.pipeline.imagined import imagine
+    from stdfit.pipeline.plan import plan
+    from stdfit.pipeline.plan_text import plan_data, plan_text
+
+    bench = read_bench(asked.bench)
+    if asked.within is not None:
+        bench = replace(bench, within=asked.within)
+    measured = any(entry.files for entry in bench.standards)
+    prepared = prepare(bench, read_sweeps(bench)) if measured else imagine(bench)
+    with progress("remedies") as told:
+        found = plan(prepared, told)
+    warn(found.kit)
+    if asked.json:
+        print_json(plan_data(found))
+    else:
+        print(plan_text(found, measured=measured), end="")
+    return DONE
