@@ -12,7 +12,7 @@ from stdfit.pipeline.path import kit_of
 from stdfit.pipeline.prepare import Prepared, sources_of
 from stdfit.pipeline.settle import choose_all, settle
 from stdfit.uncertainty.budget import radius
-from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source, WhiteSource
+from stdfit.uncertainty.sources import LumpedSource, SharedSource, SmoothSource, Source, WhiteSource
 from stdfit.validity.kit import Definition, Kit, misfit_at, model
 from stdfit.validity.limits import shares_at
 
@@ -186,7 +186,7 @@ def with_connections(prepared: Prepared, count: int) -> Prepared:
         if isinstance(source, LumpedSource):
             vectors = tuple(v * k for v, k in zip(source.vectors, shrink, strict=True))
             return replace(source, vectors=vectors, freedom=source.freedom * more)
-        if not source.common:
+        if isinstance(source, SmoothSource) and not source.common:
             profiles = tuple(p * k for p, k in zip(source.profiles, shrink, strict=True))
             return replace(source, profiles=profiles, freedom=source.freedom * more)
         return source
@@ -204,6 +204,9 @@ def with_better_reference(prepared: Prepared, factor: float) -> Prepared:
     def change(source: Source) -> Source:
         if isinstance(source, SmoothSource) and source.common:
             return replace(source, profiles=tuple(factor * profile for profile in source.profiles))
+        if isinstance(source, SharedSource):
+            scaled = tuple(tuple(factor * vector for vector in own) for own in source.vectors)
+            return replace(source, vectors=scaled)
         return source
 
     kit = _kit(prepared)

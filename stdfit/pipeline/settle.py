@@ -10,7 +10,7 @@ from stdfit.fitting.roles import build_problem, places_of, starting_values
 from stdfit.fitting.solve import least_squares
 from stdfit.pipeline.prepare import Prepared
 from stdfit.uncertainty.budget import radius, shares_of
-from stdfit.uncertainty.push import push
+from stdfit.uncertainty.push import push, weighted
 from stdfit.uncertainty.region import CIRCULAR
 from stdfit.uncertainty.sources import SmoothSource, reading_variance
 from stdfit.validity.choose import Choice, choose, thin, weights_for
@@ -89,7 +89,16 @@ def settle(prepared: Prepared, choices: Sequence[Choice]) -> Settled:
     )
     models = [problem.model(k, values) for k in range(len(observed))]
     pushed = [
-        push(design, weight, one.gamma - gamma, one.frequency_hz, span, sources, k, [one.frequency_hz.size])
+        push(
+            design,
+            weighted(design, weight),
+            one.gamma - gamma,
+            one.frequency_hz,
+            span,
+            sources,
+            k,
+            [one.frequency_hz.size],
+        )
         for k, ((gamma, design), weight, one) in enumerate(zip(models, weights, observed, strict=True))
     ]
     _, stacked = shares_of(pushed, sources, precision, places_of(problem))
@@ -113,7 +122,7 @@ def settle(prepared: Prepared, choices: Sequence[Choice]) -> Settled:
     repushed = [
         push(
             design,
-            weight,
+            weighted(design, weight),
             one.gamma - gamma,
             one.frequency_hz,
             span,

@@ -8,7 +8,7 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.uncertainty.push import Pushed
 from stdfit.uncertainty.region import effective_freedom, radius_95, student
-from stdfit.uncertainty.sources import SmoothSource, Source
+from stdfit.uncertainty.sources import SharedSource, SmoothSource, Source
 
 UNREACHED = 1e-14
 """Smallest eigenvalue of a normal matrix, against its largest, that is more than rounding."""
@@ -54,7 +54,7 @@ def shares_of(
     inverse = inverse_of(np.asarray(normal))
     shares = []
     for k, source in enumerate(sources):
-        common = isinstance(source, SmoothSource) and source.common
+        common = isinstance(source, SharedSource) or (isinstance(source, SmoothSource) and source.common)
         choices = []
         for length in range(len(pushed[0].images[k])):
             images = [one.images[k][length] for one in pushed]
@@ -98,12 +98,32 @@ def radius(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
     Returns
     -------
     array of shape (..., n)
+        Zero where there are no shares: nothing is known of the uncertainty.
     """
+    if not shares:
+        return np.zeros(design.shape[:-1])
     planes = [plane(design, share.covariances) for share in shares]
-    freedoms = np.array([share.freedom for share in shares])
+    return radius_of_planes(planes, [share.freedom for share in shares])
+
+
+def radius_of_planes(planes: Sequence[FloatArray], freedoms: Sequence[float]) -> FloatArray:
+    """Return the 95 % radius of a sum of sources, the largest over the correlation lengths.
+
+    Parameters
+    ----------
+    planes : sequence of arrays of shape (a, ..., 3)
+        For each source the variance of the real part, of the imaginary part, and their covariance, for each
+        correlation length; a = 1 where the source has none.
+    freedoms : sequence of float
+        Degrees of freedom of each source.
+
+    Returns
+    -------
+    array of shape (...)
+    """
     lengths = max(own.shape[0] for own in planes)
     stack = np.array([np.broadcast_to(own, (lengths, *own.shape[1:])) for own in planes])
-    freedom = effective_freedom(stack[..., 0] + stack[..., 1], freedoms)
+    freedom = effective_freedom(stack[..., 0] + stack[..., 1], np.array(freedoms))
     return np.asarray(radius_95(stack.sum(axis=0), freedom).max(axis=0))
 
 

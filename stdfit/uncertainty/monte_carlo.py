@@ -16,9 +16,9 @@ from stdfit.fitting.observed import Observed
 from stdfit.fitting.problem import Problem
 from stdfit.fitting.roles import places_of
 from stdfit.uncertainty.budget import Share, inverse_of, radius, shares_of
-from stdfit.uncertainty.push import push
+from stdfit.uncertainty.push import push, weighted
 from stdfit.uncertainty.smooth import LENGTHS_PER_SPAN, bumps, correlation_lengths
-from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source, WhiteSource
+from stdfit.uncertainty.sources import LumpedSource, SharedSource, SmoothSource, Source
 
 FIT_POINTS = 100
 """Readings of each standard that are refitted; the linear band is computed on the same ones."""
@@ -136,6 +136,7 @@ class _Trial:
     problem: Problem
     start: FloatArray
     sources: tuple[Source, ...]
+    place: int
     length: float
     span: tuple[float, float]
     grids: list[FloatArray]
@@ -153,7 +154,14 @@ class _Trial:
             gamma, design = thin_problem.model(s, values)
             pushed.append(
                 push(
-                    design, weight, one.gamma - gamma, one.frequency_hz, span, thin_sources, s, [weight.size]
+                    design,
+                    weighted(design, weight),
+                    one.gamma - gamma,
+                    one.frequency_hz,
+                    span,
+                    thin_sources,
+                    s,
+                    [weight.size],
                 )
             )
             grids.append(np.linspace(one.frequency_hz[0], one.frequency_hz[-1], BAND_POINTS))
@@ -168,6 +176,7 @@ class _Trial:
             problem=thin_problem,
             start=values[thin_problem.fitted] / thin_problem.scales,
             sources=tuple(thin_sources),
+            place=widest,
             length=float(correlation_lengths(span[1] - span[0])[widest]),
             span=span,
             grids=grids,
@@ -207,10 +216,14 @@ class _Trial:
             if np.isfinite(source.freedom):
                 tail = np.sqrt(source.freedom / rng.chisquare(source.freedom, (count, 1)))
             shared = _complex_normal(rng, (count, bases[0].shape[1]))
+            if isinstance(source, SharedSource):
+                numbers = tail * rng.standard_normal((count, source.vectors[0][0].shape[1]))
             for s, one in enumerate(problem.observed):
                 if isinstance(source, SmoothSource):
                     heights = shared if source.common else _complex_normal(rng, (count, bases[s].shape[1]))
                     readings[s] = readings[s] + tail * (heights @ bases[s].T) * source.profiles[s]
+                elif isinstance(source, SharedSource):
+                    readings[s] = readings[s] + numbers @ source.at_length(self.place)[s].T
                 elif isinstance(source, LumpedSource):
                     readings[s] = readings[s] + tail * rng.standard_normal((count, 1)) * source.vectors[s]
                 else:
@@ -284,16 +297,7 @@ def _thinned(problem: Problem, sources: Sequence[Source]) -> tuple[Problem, list
             Observed(one.name, one.kind, one.frequency_hz[part], one.gamma[part], one.deviations[:, part])
         )
         weights.append(weight[part] * step)
-    thinned: list[Source] = []
-    for source in sources:
-        if isinstance(source, SmoothSource):
-            profiles = tuple(own[part] for own, part in zip(source.profiles, parts, strict=True))
-            thinned.append(replace(source, profiles=profiles))
-        elif isinstance(source, LumpedSource):
-            vectors = tuple(own[part] for own, part in zip(source.vectors, parts, strict=True))
-            thinned.append(replace(source, vectors=vectors))
-        elif isinstance(source, WhiteSource):
-            # One reading stands for `step` of them, whose mean has less noise.
-            quieter = tuple(variance / step for variance, step in zip(source.variances, steps, strict=True))
-            thinned.append(replace(source, variances=quieter))
+    # One reading stands for `step` of them, whose mean has less noise.
+    everything = range(len(parts))
+    thinned = [source.taken(everything, parts, steps) for source in sources]
     return replace(problem, observed=tuple(observed), weights=tuple(weights)), thinned

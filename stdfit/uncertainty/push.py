@@ -10,8 +10,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
-from stdfit.uncertainty.smooth import bumps, correlation_lengths
-from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source, WhiteSource
+from stdfit.uncertainty.smooth import LENGTHS_PER_SPAN, bumps, correlation_lengths
+from stdfit.uncertainty.sources import LumpedSource, SharedSource, SmoothSource, Source, WhiteSource
 
 BLOCK = 4096
 """Points handled at once, which bounds the memory of the basis functions."""
@@ -36,9 +36,21 @@ class Pushed:
     images: tuple[tuple[FloatArray, ...], ...]
 
 
+def weighted(design: ComplexArray, weight: FloatArray) -> ComplexArray:
+    """Return Jᴴ W of one standard whose readings stand for themselves, transposed: shape (n, p).
+
+    Parameters
+    ----------
+    design : complex array of shape (n, p)
+    weight : array of shape (n,)
+        1/variance per component.
+    """
+    return np.asarray(design.conj() * weight[:, None])
+
+
 def push(
     design: ComplexArray,
-    weight: FloatArray,
+    acting: ComplexArray,
     residual: ComplexArray,
     frequency_hz: FloatArray,
     span: tuple[float, float],
@@ -52,8 +64,8 @@ def push(
     ----------
     design : complex array of shape (n, p)
         Derivatives of Γ by the scaled fitted quantities.
-    weight : array of shape (n,)
-        1/variance per component.
+    acting : complex array of shape (n, p)
+        How a change of each reading of this standard acts on the fit: the rows of Jᴴ W that belong to it.
     residual : complex array of shape (n,)
         Mean reading minus model.
     frequency_hz : array of shape (n,)
@@ -65,34 +77,33 @@ def push(
     cuts : sequence of c ints
         Rising numbers of points after which a sum is kept.
     """
-    weighted = design.conj() * weight[:, None]
     lengths = correlation_lengths(span[1] - span[0])
     smooth = [k for k, source in enumerate(sources) if isinstance(source, SmoothSource)]
     # All smooth sources side by side, so that each basis function is computed once.
-    acting = np.concatenate(
-        [weighted * source.profiles[index][:, None] for source in sources if isinstance(source, SmoothSource)]
+    smoothly = np.concatenate(
+        [acting * source.profiles[index][:, None] for source in sources if isinstance(source, SmoothSource)]
         or [np.zeros((frequency_hz.size, 0), dtype=complex)],
         axis=1,
     )
-    pieces: list[list[list[FloatArray]]] = [
-        [[] for _ in lengths] if isinstance(source, SmoothSource) else [[]] for source in sources
-    ]
+    pieces: list[list[list[FloatArray]]] = [[[] for _ in range(lengths_of(source))] for source in sources]
     normal, projected = [], []
     start = 0
     for stop in cuts:
         part = slice(start, stop)
-        rows = weighted[part]
+        rows = acting[part]
         normal.append((rows.T @ design[part]).real)
         projected.append((rows.T @ residual[part]).real)
         for source, kept in zip(sources, pieces, strict=True):
             if isinstance(source, WhiteSource):
-                squares = source.variances[index] * (rows.T * weight[part]) @ design[part]
-                kept[0].append(squares.real)
+                kept[0].append(source.variances[index] * (rows.T @ rows.conj()).real)
             elif isinstance(source, LumpedSource):
                 kept[0].append((rows.T @ source.vectors[index][part]).real[:, None])
+            elif isinstance(source, SharedSource):
+                for own, vectors in zip(kept, source.vectors, strict=True):
+                    own.append((rows.T @ vectors[index][part]).real)
         for place, length in enumerate(lengths):
             images = np.split(
-                _image(acting[part], frequency_hz[part], span, float(length)), max(len(smooth), 1)
+                _image(smoothly[part], frequency_hz[part], span, float(length)), max(len(smooth), 1)
             )
             for k, image in zip(smooth, images, strict=False):
                 pieces[k][place].append(image)
@@ -103,6 +114,13 @@ def push(
         for source, by_length in zip(sources, summed, strict=True)
     )
     return Pushed(np.cumsum(normal, axis=0), np.cumsum(projected, axis=0), images_of)
+
+
+def lengths_of(source: Source) -> int:
+    """Return for how many correlation lengths a source has an image."""
+    if isinstance(source, SmoothSource):
+        return len(LENGTHS_PER_SPAN)
+    return len(source.vectors) if isinstance(source, SharedSource) else 1
 
 
 def _image(

@@ -1,15 +1,19 @@
 """The sources of error of a bench, each as what it does to the readings."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
+import numpy.typing as npt
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.data.bench_records import StatedResidual
 from stdfit.fitting.observed import Observed
 from stdfit.uncertainty.connections import PARTS, Repeatability, responses
 from stdfit.uncertainty.region import CIRCULAR
+
+Part = slice | npt.NDArray[np.intp]
+"""Which readings of a standard."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -31,6 +35,16 @@ class SmoothSource:
     common: bool
     freedom: float = np.inf
 
+    def taken(self, standards: Sequence[int], parts: Sequence[Part], steps: Sequence[int]) -> "SmoothSource":
+        """Return the source as it acts on some readings of some standards."""
+        return replace(
+            self, profiles=tuple(self.profiles[s][part] for s, part in zip(standards, parts, strict=True))
+        )
+
+    def power(self, index: int) -> FloatArray:
+        """Return the variance per component of one standard's mean reading, shape (n,)."""
+        return np.asarray(np.abs(self.profiles[index]) ** 2)
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class LumpedSource:
@@ -47,6 +61,51 @@ class LumpedSource:
     vectors: tuple[ComplexArray, ...]
     freedom: float
 
+    def taken(self, standards: Sequence[int], parts: Sequence[Part], steps: Sequence[int]) -> "LumpedSource":
+        """Return the source as it acts on some readings of some standards."""
+        return replace(
+            self, vectors=tuple(self.vectors[s][part] for s, part in zip(standards, parts, strict=True))
+        )
+
+    def power(self, index: int) -> FloatArray:
+        """Return the mean variance per component of one standard's mean reading, shape (n,)."""
+        return np.asarray(0.5 * np.abs(self.vectors[index]) ** 2)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class SharedSource:
+    """Random numbers of unit variance that act on all standards at once, each times a known function of frequency.
+
+    Attributes
+    ----------
+    name : str
+    vectors : tuple over lengths of tuple over standards of complex arrays of shape (n, q)
+        One entry for each correlation length that is tried, or one for all of them.
+    freedom : float
+    """
+
+    name: str
+    vectors: tuple[tuple[ComplexArray, ...], ...]
+    freedom: float = np.inf
+
+    def taken(self, standards: Sequence[int], parts: Sequence[Part], steps: Sequence[int]) -> "SharedSource":
+        """Return the source as it acts on some readings of some standards."""
+        return replace(
+            self,
+            vectors=tuple(
+                tuple(own[s][part] for s, part in zip(standards, parts, strict=True)) for own in self.vectors
+            ),
+        )
+
+    def power(self, index: int) -> FloatArray:
+        """Return the mean variance per component of one standard's mean reading, the largest length's, shape (n,)."""
+        each = [0.5 * (np.abs(own[index]) ** 2).sum(axis=1) for own in self.vectors]
+        return np.asarray(np.max(each, axis=0))
+
+    def at_length(self, length: int) -> tuple[ComplexArray, ...]:
+        """Return the vectors on each standard at one of the correlation lengths."""
+        return self.vectors[min(length, len(self.vectors) - 1)]
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class WhiteSource:
@@ -56,8 +115,14 @@ class WhiteSource:
     variances: tuple[float, ...]
     freedom: float = np.inf
 
+    def taken(self, standards: Sequence[int], parts: Sequence[Part], steps: Sequence[int]) -> "WhiteSource":
+        """Return the source as it acts on readings that each stand for the mean of `steps` of them."""
+        return replace(
+            self, variances=tuple(self.variances[s] / step for s, step in zip(standards, steps, strict=True))
+        )
 
-Source = SmoothSource | LumpedSource | WhiteSource
+
+Source = SmoothSource | LumpedSource | SharedSource | WhiteSource
 
 
 def analyser_sources(observed: Sequence[Observed], residual: StatedResidual) -> list[Source]:
@@ -119,10 +184,8 @@ def reading_variance(sources: Sequence[Source], index: int) -> tuple[FloatArray,
     smooth: FloatArray | float = 0.0
     white: FloatArray | float = 0.0
     for source in sources:
-        if isinstance(source, SmoothSource):
-            smooth = smooth + np.abs(source.profiles[index]) ** 2
-        elif isinstance(source, LumpedSource):
-            smooth = smooth + 0.5 * np.abs(source.vectors[index]) ** 2
-        else:
+        if isinstance(source, WhiteSource):
             white = white + source.variances[index]
+        else:
+            smooth = smooth + source.power(index)
     return np.asarray(smooth, dtype=float), np.asarray(white, dtype=float)

@@ -16,8 +16,8 @@ from stdfit.fitting.problem import Problem
 from stdfit.fitting.roles import SHAPES, Wish, build_problem, places_of, starting_values
 from stdfit.fitting.solve import least_squares
 from stdfit.uncertainty.budget import Share, expanded, radius, shares_of
-from stdfit.uncertainty.push import push
-from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source, WhiteSource, reading_variance
+from stdfit.uncertainty.push import push, weighted
+from stdfit.uncertainty.sources import Source, reading_variance
 from stdfit.validity.limit import first_gap
 from stdfit.validity.misfit import expected_power, misfit
 
@@ -105,14 +105,6 @@ def thin(observed: Observed, sources: Sequence[Source], index: int) -> tuple[Obs
     """Return every k-th reading of one standard, and the sources as they act on it alone."""
     step = max(1, observed.frequency_hz.size // SCAN_POINTS)
     part = slice(None, None, step)
-    thinned: list[Source] = []
-    for source in sources:
-        if isinstance(source, SmoothSource):
-            thinned.append(replace(source, profiles=(source.profiles[index][part],)))
-        elif isinstance(source, LumpedSource):
-            thinned.append(replace(source, vectors=(source.vectors[index][part],)))
-        else:
-            thinned.append(WhiteSource(source.name, (source.variances[index],), source.freedom))
     return (
         Observed(
             observed.name,
@@ -121,7 +113,7 @@ def thin(observed: Observed, sources: Sequence[Source], index: int) -> tuple[Obs
             observed.gamma[part],
             observed.deviations[:, part],
         ),
-        thinned,
+        [source.taken([index], [part], [1]) for source in sources],
     )
 
 
@@ -248,7 +240,7 @@ def _fit_order(
     residual = observed.gamma - gamma
 
     span = (float(f[0]), float(f[-1]))
-    pushed = push(design, weight, residual, f, span, sources, 0, cuts)
+    pushed = push(design, weighted(design, weight), residual, f, span, sources, 0, cuts)
     inverse, shares = shares_of([pushed], sources, precision, places_of(problem))
     pull = precision * (target - solution.values)
     step = np.einsum("cpq,cq->cp", inverse, pushed.projected + pull)

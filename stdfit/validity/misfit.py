@@ -8,7 +8,7 @@ from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.uncertainty.connections import running_mean
 from stdfit.uncertainty.push import Pushed
 from stdfit.uncertainty.smooth import bumps, correlation_lengths
-from stdfit.uncertainty.sources import LumpedSource, SmoothSource, Source
+from stdfit.uncertainty.sources import LumpedSource, SharedSource, SmoothSource, Source
 
 NOISE_WINDOWS = 200
 """Residuals are averaged over 1/NOISE_WINDOWS of the sweep before their size is taken."""
@@ -70,6 +70,9 @@ def expected_power(
         elif isinstance(source, LumpedSource):
             direct = source.vectors[index][points, None]
             power += _left(direct, design, inverse @ pushed.images[k][0])
+        elif isinstance(source, SharedSource):
+            for image, vectors in zip(pushed.images[k], source.vectors, strict=True):
+                power += _left(vectors[index][points], design, inverse @ image) / len(source.vectors)
     return power
 
 

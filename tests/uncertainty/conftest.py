@@ -10,7 +10,7 @@ from stdfit.fitting.observed import Observed
 from stdfit.fitting.problem import Problem
 from stdfit.fitting.roles import Wish, build_problem, places_of
 from stdfit.uncertainty.budget import shares_of
-from stdfit.uncertainty.push import push
+from stdfit.uncertainty.push import push, weighted
 from stdfit.uncertainty.sources import LumpedSource, SmoothSource, WhiteSource
 
 COUNT = 41
@@ -38,7 +38,7 @@ class Bench:
         return [
             push(
                 self.problem.model(i, values)[1],
-                self.problem.weights[i],
+                weighted(self.problem.model(i, values)[1], self.problem.weights[i]),
                 rest[i],
                 FREQUENCY,
                 SPAN,

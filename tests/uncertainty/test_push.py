@@ -5,7 +5,7 @@ import pytest
 
 from stdfit.fitting.problem import Problem
 from stdfit.uncertainty.budget import shares_of
-from stdfit.uncertainty.push import push
+from stdfit.uncertainty.push import push, weighted
 from stdfit.uncertainty.smooth import bumps, correlation_lengths
 from stdfit.uncertainty.sources import LumpedSource, SmoothSource, WhiteSource
 
@@ -142,7 +142,7 @@ def test_cuts_are_separate_fits_of_shorter_ranges(bench, cut):
     alone = [
         push(
             bench.problem.model(i, values)[1][part],
-            bench.problem.weights[i][part],
+            weighted(bench.problem.model(i, values)[1], bench.problem.weights[i])[part],
             np.zeros(cut, dtype=complex),
             frequency[part],
             span,
