@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from stdfit.trials import demo_scenario, draw_bench
+from stdfit.trials import demo_scenario, devices, draw_bench
 from stdfit.trials.score import score
 
 BENCHES = 24
@@ -15,11 +15,19 @@ SPREAD = 0.05
 """Standard deviation of that part from bench to bench: neighbouring points of a curve fail together, so a bench
 counts once and not as 180 points."""
 
+DEVICES_LONG_RUN = 0.986
+"""Mean part of devices inside their bound, over 60 benches; it spreads from bench to bench as the curves do."""
+
 
 @pytest.fixture(scope="module")
-def scored():
+def drawn():
+    return [draw_bench(demo_scenario(), np.random.default_rng(FIRST_SEED + k)) for k in range(BENCHES)]
+
+
+@pytest.fixture(scope="module")
+def scored(drawn):
     """Kits and their scores."""
-    return [score(draw_bench(demo_scenario(), np.random.default_rng(FIRST_SEED + k))) for k in range(BENCHES)]
+    return [score(bench) for bench in drawn]
 
 
 @pytest.fixture(scope="module")
@@ -54,3 +62,24 @@ def test_limits_are_true(scored, scores):
     assert len(true) == 3 * BENCHES
     assert np.mean(true) >= 0.9
     assert all(definition.limit.limit_hz > 0.0 for kit, _ in scored for definition in kit.definitions)
+
+
+def devices_inside(scored, drawn):
+    rng = np.random.default_rng(FIRST_SEED)
+    return np.array(
+        [devices.devices_inside(kit, bench, rng) for (kit, _), bench in zip(scored, drawn, strict=True)]
+    )
+
+
+def test_devices_keep_within_their_bound(scored, drawn):
+    """Three standard deviations of the mean of 24 benches are allowed below, as for the curves."""
+    inside = devices_inside(scored, drawn)
+    assert inside.mean() >= DEVICES_LONG_RUN - 3.0 * SPREAD / np.sqrt(BENCHES)
+    assert inside.std() <= 2.0 * SPREAD
+
+
+def test_half_of_the_device_bound_would_not_do(scored, drawn, monkeypatch):
+    """The bound is not bought with width: half of it holds clearly less than 95 %."""
+    whole = devices.device_bound
+    monkeypatch.setattr(devices, "device_bound", lambda *asked: 0.5 * whole(*asked))
+    assert devices_inside(scored, drawn).mean() <= 0.95 - 3.0 * SPREAD / np.sqrt(BENCHES)

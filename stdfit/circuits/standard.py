@@ -66,6 +66,9 @@ PARAMETERS: dict[str, tuple[Parameter, ...]] = {
 }
 """The parameters of each kind, in the order in which `reflection` takes them."""
 
+IDEAL: dict[str, complex] = {"open": 1.0, "short": -1.0, "load": 0.0}
+"""Reflection of a standard of each kind that has no definition at all."""
+
 
 def reflection(
     kind: str, values: Sequence[float] | FloatArray, frequency_hz: FloatArray, reference_ohm: float

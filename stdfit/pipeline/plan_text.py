@@ -3,8 +3,9 @@
 from typing import Any
 
 from stdfit.pipeline.plan import Plan, Remedy, ranked
+from stdfit.writing.aligned import aligned
 from stdfit.writing.numbers import frequency
-from stdfit.writing.summary import aligned, verdict
+from stdfit.writing.summary import verdict
 
 SMALLEST_PART = 0.005
 """Sources below this part of the variance are not listed."""

@@ -5,8 +5,9 @@ from typing import Any
 
 from stdfit.trials.demo import Row
 from stdfit.validity.kit import Kit
+from stdfit.writing.aligned import aligned
 from stdfit.writing.numbers import frequency
-from stdfit.writing.summary import aligned, summary
+from stdfit.writing.summary import summary
 
 Curves = Sequence[tuple[str, float, float, float]]
 

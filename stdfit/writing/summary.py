@@ -4,21 +4,13 @@ from collections.abc import Sequence
 
 from stdfit.validity.kit import Definition, Kit
 from stdfit.validity.limit import Limit
+from stdfit.writing.adapter_words import thru_lines
+from stdfit.writing.aligned import aligned
+from stdfit.writing.device_text import as_a_kit
 from stdfit.writing.numbers import decimals, frequency, label_of, plus_minus, rounded
 
 TOLD_FROM = 0.1
 """Where the readings begin is told when it is above this part of the limit."""
-
-
-def aligned(rows: Sequence[Sequence[str]], indent: str = "  ") -> list[str]:
-    """Return rows as lines whose columns stand below each other."""
-    if not rows:
-        return []
-    widths = [max(len(row[k]) for row in rows) for k in range(len(rows[0]))]
-    return [
-        indent + "  ".join(cell.ljust(width) for cell, width in zip(row, widths, strict=True)).rstrip()
-        for row in rows
-    ]
 
 
 def verdict(kit: Kit) -> str:
@@ -61,12 +53,19 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
     for definition in kit.definitions:
         lines += _definition(kit, definition)
     lines += ["", *ladder_lines(kit)]
+    whole = as_a_kit(kit)
+    if whole:
+        lines += ["", *whole]
     notes: dict[str, list[str]] = {}
     for one in kit.definitions:
         for note in one.notes:
             notes.setdefault(note, []).append(one.name)
     if notes:
         lines += ["", "Notes", *(f"  {', '.join(names)}: {note}" for note, names in notes.items())]
+    if kit.thru is not None:
+        lines += ["", *thru_lines(kit.thru)]
+    if kit.ancestors:
+        lines += ["", "Its references, and theirs", *(f"  {line}" for line in ancestor_lines(kit))]
     if kit.checks:
         lines += ["", "Checked", *(f"  {check}" for check in kit.checks)]
     if warnings and kit.warnings:
@@ -103,6 +102,16 @@ def _definition(kit: Kit, definition: Definition) -> list[str]:
     unused = any(parameter.role == "unused" for parameter in definition.parameters)
     zero = ["    all others: 0"] if unused else []
     return [f"  {definition.name}", *aligned(rows, indent="    "), *zero, *tried]
+
+
+def ancestor_lines(kit: Kit) -> list[str]:
+    """Return the kits that a kit's uncertainty comes from, each indented below the one that it was a reference of."""
+    depth = {"": 0}
+    lines = []
+    for one in kit.ancestors:
+        depth[one.sha256] = depth[one.of] + 1
+        lines.append(f"{'  ' * depth[one.of]}{one.name}, {one.created} (SHA-256 {one.sha256[:8]}…)")
+    return lines
 
 
 def ladder_lines(kit: Kit) -> list[str]:

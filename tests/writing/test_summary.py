@@ -4,8 +4,9 @@ from dataclasses import replace
 
 from stdfit.validity.limit import Limit
 from stdfit.validity.limits import limits
+from stdfit.writing.aligned import aligned
 from stdfit.writing.plain_data import kit_data, limit_data
-from stdfit.writing.summary import aligned, limit_lines, summary, verdict
+from stdfit.writing.summary import limit_lines, summary, verdict
 
 REFERENCE = """\
 Garden shed set (invented) (SMA, 50 Ω)
