@@ -1,6 +1,6 @@
 """Frequency-validity limits of a kit and of its standards, with their reasons."""
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 
 import numpy as np
 
@@ -16,17 +16,28 @@ GRID_POINTS = 400
 """Points at which a bound is compared with a tolerance, besides those of the misfit."""
 
 
-def limits(kit: Kit, tolerances: Sequence[float]) -> list[tuple[Limit, list[Limit]]]:
+TOLD_PART = 0.01
+"""An extra error is told of from this part of the tolerance on."""
+
+Extra = Callable[[Definition, FloatArray], FloatArray]
+"""An error of Γ over frequency that comes on top of a standard's bound, shape (n,)."""
+
+
+def limits(
+    kit: Kit, tolerances: Sequence[float], extra: Extra | None = None
+) -> list[tuple[Limit, list[Limit]]]:
     """Return, for each tolerance, the limit of the kit and those of its standards.
 
-    The limit is the highest frequency up to which the bound keeps within the tolerance without a gap, from
-    the first reading on; never beyond the last reading nor beyond the connector family's top.
+    The limit is the highest frequency up to which the bound, with the extra error if there is one, keeps within the
+    tolerance without a gap, from the first reading on; never beyond the last reading nor beyond the connector
+    family's top.
     """
     bounds = []
     for definition in kit.definitions:
-        grid = _grid(kit, definition)
+        grid = limit_grid(kit, definition)
         _, design = model(kit, definition, grid)
-        bounds.append((grid, design, radius(design, kit.shares), misfit_at(definition, grid)))
+        more = np.zeros(grid.size) if extra is None else extra(definition, grid)
+        bounds.append((grid, design, radius(design, kit.shares), misfit_at(definition, grid), more))
     result = []
     for within in tolerances:
         each = [
@@ -48,7 +59,7 @@ def ladder(kit: Kit) -> tuple[Rung, ...]:
     )
 
 
-def _grid(kit: Kit, definition: Definition) -> FloatArray:
+def limit_grid(kit: Kit, definition: Definition) -> FloatArray:
     """Return where the bound is looked at, up to the last reading or the connector's top."""
     low = definition.read_low_hz
     high = max(min(definition.read_top_hz, kit.top_hz), low)
@@ -64,20 +75,30 @@ def _limit(
     design: ComplexArray,
     spread: FloatArray,
     misfit: FloatArray,
+    extra: FloatArray,
 ) -> Limit:
     """Return the limit of one standard."""
     if kit.top_hz < definition.read_low_hz:
         return Limit(
             within, 0.0, f"the readings begin above the top of the connector family, {kit.top_hz / 1e9:g} GHz"
         )
-    limit_hz, place = first_gap(grid, spread + misfit, within)
+    limit_hz, place = first_gap(grid, spread + misfit + extra, within)
     if place is None:
         if kit.top_hz < definition.read_top_hz:
             return Limit(within, limit_hz, "the next mode of the connector begins, or its family ends, here")
         return Limit(within, limit_hz, "the readings end here")
-    if misfit[place] >= spread[place]:
-        return Limit(within, limit_hz, "the readings leave the model here (misfit)")
-    return Limit(within, limit_hz, largest_source(design[place], kit.shares))
+    if extra[place] > max(misfit[place], spread[place]):
+        return Limit(within, limit_hz, "what is typed differs from the full definition here")
+    part = extra[place] / within
+    told = f"{100 * part:.0f} %" if part < 1.0 else "all"
+    more = f", and what is typed takes {told} of the tolerance" if part >= TOLD_PART else ""
+    if not kit.shares:
+        reason = "the stated bound reaches it here"
+    elif misfit[place] >= spread[place]:
+        reason = "the readings leave the model here (misfit)"
+    else:
+        reason = largest_source(design[place], kit.shares)
+    return Limit(within, limit_hz, reason + more)
 
 
 def shares_at(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
