@@ -1,0 +1,63 @@
+"""Where the files of an export may stand, and what they may overwrite."""
+
+from collections.abc import Iterable
+from pathlib import Path
+
+from stdfit.base.errors import RequestError
+from stdfit.writing.export import FIRST_LINE, JOINT_COLUMNS, STANDARD_COLUMNS
+
+
+def is_export(path: Path) -> bool:
+    """Return whether a file begins like one of this module."""
+    firsts = {FIRST_LINE, ",".join(STANDARD_COLUMNS), ",".join(JOINT_COLUMNS)}
+    try:
+        if not path.is_file():  # to open a pipe would wait for ever
+            return False
+        with path.open("rb") as stream:
+            line = stream.readline(1 + max(map(len, firsts)) + 1)
+    except OSError:
+        return False
+    return line.decode("utf-8", "replace").rstrip("\r\n") in firsts
+
+
+def check_folder(folder: Path, names: Iterable[str]) -> None:
+    """Refuse a folder in which the files cannot stand: only files of earlier exports are overwritten.
+
+    Raises
+    ------
+    RequestError
+        With the first file that stands in the way.
+    """
+    if folder.exists() and not folder.is_dir():
+        raise RequestError("a file stands where the folder should be", "name a folder", file=folder)
+    for path in (folder / name for name in names):
+        if path.is_dir():
+            raise RequestError("a folder stands where the file should go", "name another folder", file=path)
+        if (path.exists() or path.is_symlink()) and not is_export(path):
+            raise RequestError(
+                "exists and was not written by this command",
+                "name another folder, or move it away",
+                file=path,
+            )
+
+
+def make_folder(folder: Path) -> None:
+    """Make a folder, and those above it, where it is not there.
+
+    Raises
+    ------
+    RequestError
+        It cannot be made.
+    """
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+    except OSError as fault:
+        raise RequestError(
+            f"cannot be made: {fault.strerror or fault}", "choose another place", file=folder
+        ) from fault
+
+
+def left_from_before(folder: Path, names: Iterable[str]) -> list[str]:
+    """Return the Touchstone files of earlier exports that stand in a folder besides the named ones."""
+    kept = set(names)
+    return sorted(path.name for path in folder.glob("*.s1p") if path.name not in kept and is_export(path))
