@@ -19,6 +19,7 @@ SHAPES: dict[str, dict[str, tuple[str, ...]]] = {
         "full": (*LINE, "c0", "c1", "c2", "c3"),
         "even+Z0": (*LINE, "offset_z0_ohm", "c0", "c2"),
         "full+Z0": (*LINE, "offset_z0_ohm", "c0", "c1", "c2", "c3"),
+        "constant+Z0": (*LINE, "offset_z0_ohm", "c0"),
     },
     "short": {
         "constant": (*LINE, "l0"),
@@ -26,6 +27,7 @@ SHAPES: dict[str, dict[str, tuple[str, ...]]] = {
         "full": (*LINE, "l0", "l1", "l2", "l3"),
         "even+Z0": (*LINE, "offset_z0_ohm", "l0", "l2"),
         "full+Z0": (*LINE, "offset_z0_ohm", "l0", "l1", "l2", "l3"),
+        "constant+Z0": (*LINE, "offset_z0_ohm", "l0"),
     },
     "load": {
         "R": ("resistance_ohm",),
@@ -36,6 +38,9 @@ SHAPES: dict[str, dict[str, tuple[str, ...]]] = {
     },
 }
 """The orders of each kind, simplest first: which parameters are used."""
+
+NOT_CHOSEN = ("constant+Z0",)
+"""Orders that are no choice for corrected readings: a line of its own impedance with nothing else of its own."""
 
 ASSUMED: dict[str, tuple[float, float]] = {
     "offset_loss_gohm_per_s": (1.0, 3.0),
@@ -85,6 +90,7 @@ def build_problem(
     weights: Sequence[FloatArray],
     starts: Mapping[str, float],
     reference_ohm: float,
+    assumed: Mapping[str, tuple[float, float]] | None = None,
 ) -> Problem:
     """Lay out the joint problem of all standards.
 
@@ -94,7 +100,10 @@ def build_problem(
     starts : mapping
         Starting values of free quantities as "standard.parameter", in trade units.
     reference_ohm : float
+    assumed : mapping, optional
+        Weak evidence as "standard.parameter", value and standard uncertainty in trade units, instead of `ASSUMED`.
     """
+    known = assumed or {}
     quantities: list[Quantity] = []
     places: dict[tuple[str, str], int] = {}
     by_name = {one.name: wish for one, wish in zip(observed, wishes, strict=True)}
@@ -123,6 +132,7 @@ def build_problem(
                         tops[owner],
                         reference_ohm,
                         owner in lent,
+                        known.get(f"{owner}.{parameter.name}"),
                     )
                 )
             own.append(places[owner, parameter.name])
@@ -140,6 +150,7 @@ def _quantity(
     top_hz: float,
     reference_ohm: float,
     shared: bool,
+    known: tuple[float, float] | None,
 ) -> Quantity:
     """Decide on the role of one parameter."""
     name = parameter.name
@@ -148,6 +159,8 @@ def _quantity(
         value, u = wish.given[name]
         return Quantity(owner, parameter, "held" if u is None else "given", value, u, scale)
     used = name in SHAPES[kind][shape] or (shared and name in LINE)
+    if used and known is not None:
+        return Quantity(owner, parameter, "assumed", *known, scale)
     if name == "offset_z0_ohm":
         if not used:
             return Quantity(owner, parameter, "held", reference_ohm)

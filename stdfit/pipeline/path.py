@@ -3,25 +3,44 @@
 import hashlib
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import replace
-from datetime import date
-from importlib.metadata import PackageNotFoundError, version
 from pathlib import Path
 
 import numpy as np
 
-from stdfit.base.errors import BenchError
+from stdfit.base.errors import BenchError, RequestError
 from stdfit.base.records import Sweep
 from stdfit.data.bench import Bench, read_bench
 from stdfit.data.readings import read_reading
+from stdfit.data.soundness import HIGHEST_MAGNITUDE
+from stdfit.pipeline.adapter_brought import refuse_behind
+from stdfit.pipeline.adapter_known import thru_of
+from stdfit.pipeline.finished import finished, program_version, with_limits
+from stdfit.pipeline.inherited import never_surer
+from stdfit.pipeline.kept_readings import session_of
 from stdfit.pipeline.prepare import Prepared, prepare
+from stdfit.pipeline.referenced import prepare_referenced
+from stdfit.pipeline.references import FEWEST, count_references
 from stdfit.pipeline.settle import choose_all, settle
+from stdfit.pipeline.unreferenced import characterise_unreferenced
 from stdfit.uncertainty.monte_carlo import compare_with_linear
 from stdfit.validity.define import Settled, define, given_contradictions
 from stdfit.validity.kit import Kit, SourceFile
-from stdfit.validity.limits import ladder, limits
 from stdfit.validity.linear_check import check_lines
 
+__all__ = [
+    "characterise",
+    "fit_bench",
+    "kit_of",
+    "prepare_bench",
+    "program_version",
+    "read_sweeps",
+    "with_limits",
+]
+
 Told = Callable[[int, int], None]
+
+HIGHEST_RAW = 10.0
+"""Largest |m| of a raw reading: receivers without any correction may be of unequal gain."""
 
 CHECK_SEED = 1
 """The check draws the same numbers every time, so that a kit can be made again."""
@@ -61,16 +80,19 @@ def fit_bench(
     if within is not None:
         bench = replace(bench, within=within)
     sweeps = read_sweeps(bench)
-    files = tuple(
-        SourceFile(
-            entry.name, _relative(file, bench.path.parent), hashlib.sha256(file.read_bytes()).hexdigest()
-        )
-        for entry in bench.standards
-        for file in entry.files
-    )
-    kit = characterise(bench, sweeps, files=files, created=created, draws=draws, tell=tell)
+    kit = characterise(bench, sweeps, files=source_files(bench), created=created, draws=draws, tell=tell)
     notes = [f"{Path(one.name).name}: {note}" for own in sweeps.values() for one in own for note in one.notes]
-    return replace(kit, warnings=(*kit.warnings, *notes))
+    return replace(kit, warnings=(*kit.warnings, *notes), thru=thru_of(bench))
+
+
+def source_files(bench: Bench) -> tuple[SourceFile, ...]:
+    """Return the files of readings and of adapters that a bench names, with their digests."""
+    named = [(entry.name, file) for entry in bench.standards for file in entry.files]
+    named += [(f"adapter {one.name}", one.file) for one in bench.adapters if one.file is not None]
+    return tuple(
+        SourceFile(whose, _relative(file, bench.path.parent), hashlib.sha256(file.read_bytes()).hexdigest())
+        for whose, file in named
+    )
 
 
 def read_sweeps(bench: Bench) -> dict[str, list[Sweep]]:
@@ -89,9 +111,11 @@ def read_sweeps(bench: Bench) -> dict[str, list[Sweep]]:
                 file=bench.path,
                 key=f"standard[{entry.name}].readings",
             )
+    highest = HIGHEST_RAW if bench.state == "raw" else HIGHEST_MAGNITUDE
     return {
         entry.name: [
-            read_reading(file, port=entry.port, reference_ohm=bench.reference_ohm) for file in entry.files
+            read_reading(file, port=entry.port, reference_ohm=bench.reference_ohm, highest_magnitude=highest)
+            for file in entry.files
         ]
         for entry in bench.standards
     }
@@ -125,7 +149,12 @@ def characterise(
     ------
     InputError, FitError
     """
-    prepared = prepare(bench, sweeps)
+    if has_few_references(bench):
+        refuse_behind(bench)
+        if draws:
+            raise too_few_references(bench)
+        return characterise_unreferenced(bench, sweeps, files=files, created=created)
+    prepared = prepare_bench(bench, sweeps)
     settled = settle(prepared, choose_all(prepared))
     kit = kit_of(prepared, settled, files=files, created=created)
     if draws:
@@ -135,51 +164,57 @@ def characterise(
     return kit
 
 
+def prepare_bench(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> Prepared:
+    """Return a bench ready to be fitted; raw readings are corrected with their known standards first.
+
+    Parameters
+    ----------
+    bench, sweeps
+        As for `characterise`.
+
+    Raises
+    ------
+    InputError
+    """
+    if bench.state == "corrected":
+        return prepare(bench, sweeps)
+    if has_few_references(bench):
+        raise too_few_references(bench)
+    return prepare_referenced(bench, sweeps)
+
+
+def has_few_references(bench: Bench) -> bool:
+    """Tell whether readings are raw and too few standards known to correct them: error terms are then eliminated."""
+    return bench.state == "raw" and count_references(bench) < FEWEST
+
+
+def too_few_references(bench: Bench) -> RequestError:
+    """Return what is said where raw readings would have to be corrected first, and cannot be."""
+    return RequestError(
+        f"fewer than three known standards ({count_references(bench)}) among raw readings",
+        "'stdfit fit' takes such a bench, without --monte-carlo; a plan or that check needs three standards from a kit",
+        file=bench.path,
+        key="standard",
+    )
+
+
 def kit_of(
     prepared: Prepared, settled: Settled, *, files: tuple[SourceFile, ...] = (), created: str | None = None
 ) -> Kit:
     """Return the kit of a finished fit, with its limits."""
-    bench = prepared.bench
     definitions, order, shares = define(settled)
-    return with_limits(
-        Kit(
-            name=bench.name,
-            connector=bench.connector,
-            reference_ohm=bench.reference_ohm,
-            within=bench.within,
-            top_hz=prepared.family.top_hz,
-            created=created or date.today().isoformat(),
-            version=program_version(),
-            limit=definitions[0].limit,
-            definitions=definitions,
-            order=order,
-            shares=shares,
-            ladder=(),
-            files=files,
-            warnings=(
-                *prepared.warnings,
-                *given_contradictions(settled),
-            ),
-        )
+    kit = finished(
+        prepared.bench,
+        prepared.family.top_hz,
+        definitions,
+        order,
+        shares,
+        warnings=(*prepared.warnings, *given_contradictions(settled)),
+        files=files,
+        created=created,
     )
-
-
-def with_limits(kit: Kit) -> Kit:
-    """Return the kit with its limits and its ladder worked out from the rest of it."""
-    ((whole, each),) = limits(kit, [kit.within])
-    definitions = tuple(
-        replace(definition, limit=limit) for definition, limit in zip(kit.definitions, each, strict=True)
-    )
-    kit = replace(kit, limit=whole, definitions=definitions)
-    return replace(kit, ladder=ladder(kit))
-
-
-def program_version() -> str:
-    """Return the version of the installed program."""
-    try:
-        return version("stdfit")
-    except PackageNotFoundError:
-        return "unknown"
+    kit = replace(kit, ancestors=prepared.ancestors, session=session_of(prepared))
+    return never_surer(kit, prepared)
 
 
 def _relative(file: Path, folder: Path) -> str:

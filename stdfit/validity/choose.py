@@ -13,7 +13,7 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.fitting.observed import Observed
 from stdfit.fitting.problem import Problem
-from stdfit.fitting.roles import SHAPES, Wish, build_problem, places_of, starting_values
+from stdfit.fitting.roles import NOT_CHOSEN, SHAPES, Wish, build_problem, places_of, starting_values
 from stdfit.fitting.solve import least_squares
 from stdfit.uncertainty.budget import Share, expanded, radius, shares_of
 from stdfit.uncertainty.push import push, weighted
@@ -98,7 +98,7 @@ def shapes_for(kind: str, polynomial: str, wish: Wish) -> list[str]:
             shapes = [shape for shape in shapes if "offset_delay_ps" not in SHAPES[kind][shape]]
     if "offset_z0_ohm" in wish.given or wish.same_offset_as is not None:
         shapes = [shape for shape in shapes if "offset_z0_ohm" not in SHAPES[kind][shape]]
-    return shapes
+    return [shape for shape in shapes if shape not in NOT_CHOSEN]
 
 
 def thin(observed: Observed, sources: Sequence[Source], index: int) -> tuple[Observed, list[Source]]:
