@@ -1,0 +1,65 @@
+"""From a kit file, and a newer one or a bench, to what has changed between them."""
+
+import hashlib
+from pathlib import Path
+
+from stdfit.base.errors import RequestError
+from stdfit.data.bench import BENCH_NAME, read_bench
+from stdfit.pipeline.path import fit_bench
+from stdfit.validity.kit import Kit
+from stdfit.validity.wear import Wear, wear
+from stdfit.validity.wear_refusals import refuse_words
+from stdfit.writing.kit_file import is_kit_file
+from stdfit.writing.kit_reading import read_kit
+
+BENCH_MARK = b"stdfit-bench/"
+
+
+def wear_of(old_file: Path | str, new_file: Path | str, *, same_calibration: bool = False) -> Wear:
+    """Read a kit and a newer one, or fit a new bench, and compare them.
+
+    Parameters
+    ----------
+    old_file : path
+        A kit file.
+    new_file : path
+        A kit file, a bench file, or a folder with a bench.toml.
+    same_calibration : bool
+        The user's word that both sets of readings were taken with one calibration of the analyser.
+
+    Raises
+    ------
+    InputError
+        A file is wrong, or the kits cannot be compared.
+    FitError
+        No fit came out of sound readings.
+    """
+    old_file, new_file = Path(old_file), Path(new_file)
+    old = read_kit(old_file)
+    if is_kit_file(new_file) and _digest(new_file) == _digest(old_file):
+        raise RequestError("both are the same kit file", "name a newer kit, or a new bench", file=new_file)
+    if _is_bench(new_file):
+        bench = read_bench(new_file)
+        # Before the long fit, in which nothing of this changes.
+        refuse_words(old.connector, bench.connector, old.reference_ohm, bench.reference_ohm)
+        new: Kit = fit_bench(bench)
+    else:
+        new = read_kit(new_file)
+    return wear(old, new, same_calibration=same_calibration)
+
+
+def _is_bench(path: Path) -> bool:
+    """Tell whether a path is a folder, or a file that says of itself that it is a bench file."""
+    if path.is_dir():
+        return True
+    try:
+        if not path.is_file():
+            return path.name == BENCH_NAME
+        with path.open("rb") as stream:
+            return BENCH_MARK in stream.read(4096)
+    except OSError:
+        return False
+
+
+def _digest(path: Path) -> str:
+    return hashlib.sha256(path.read_bytes()).hexdigest()

@@ -1,0 +1,128 @@
+"""The readings that a kit file keeps: its tables `session` and `session.mean`, written, read back and checked."""
+
+from collections.abc import Iterator
+from typing import Annotated, Any
+
+import msgspec
+import numpy as np
+
+from stdfit.uncertainty.connections import PARTS
+from stdfit.validity.kit import Kit
+from stdfit.validity.session import MeanReading, Session
+from stdfit.writing.toml_tables import table_of, tables_of
+
+Size = Annotated[float, msgspec.Meta(ge=0.0)]
+Freedom = Annotated[float, msgspec.Meta(gt=0.0)]
+
+HIGHEST_MAGNITUDE = 3.0
+"""A mean |Γ| above this is no reading of a standard."""
+
+
+class MeanTable(msgspec.Struct, forbid_unknown_fields=True):
+    """The mean reading of one standard."""
+
+    standard: str
+    connections: Annotated[int, msgspec.Meta(ge=1)]
+    noise_sd: Size
+    frequency_hz: list[Size]
+    mean_re: list[float]
+    mean_im: list[float]
+    calibration_sd: list[Size]
+    session_sd: list[Size]
+
+
+class SessionTable(msgspec.Struct, forbid_unknown_fields=True):
+    """What holds for all readings of a bench."""
+
+    connection_sd: list[Size]
+    connection_freedom: list[Freedom]
+    session_freedom: Freedom
+    mean: list[MeanTable]
+
+
+def session_table(session: Session) -> Any:
+    """Return the table of a kit file."""
+    table = table_of(
+        connection_sd=session.scatter_sd.tolist(),
+        connection_freedom=session.scatter_freedom.tolist(),
+        session_freedom=session.session_freedom,
+    )
+    table.add(
+        "mean",
+        tables_of(
+            table_of(
+                standard=one.standard,
+                connections=one.connections,
+                noise_sd=one.noise_sd,
+                frequency_hz=one.frequency_hz.tolist(),
+                mean_re=one.gamma.real.tolist(),
+                mean_im=one.gamma.imag.tolist(),
+                calibration_sd=one.calibration_sd.tolist(),
+                session_sd=one.session_sd.tolist(),
+            )
+            for one in session.means
+        ),
+    )
+    return table
+
+
+def session_from(table: SessionTable) -> Session:
+    """Return what a table says; lists of different lengths are left to `session_faults`."""
+    means = []
+    for one in table.mean:
+        count = min(len(one.mean_re), len(one.mean_im))
+        gamma = np.array(one.mean_re[:count]) + 1j * np.array(one.mean_im[:count])
+        if len(one.mean_re) != len(one.mean_im):
+            gamma = np.zeros(0, dtype=complex)
+        means.append(
+            MeanReading(
+                standard=one.standard,
+                connections=one.connections,
+                frequency_hz=np.array(one.frequency_hz),
+                gamma=gamma,
+                calibration_sd=np.array(one.calibration_sd),
+                session_sd=np.array(one.session_sd),
+                noise_sd=one.noise_sd,
+            )
+        )
+    return Session(
+        scatter_sd=np.array(table.connection_sd),
+        scatter_freedom=np.array(table.connection_freedom),
+        session_freedom=table.session_freedom,
+        means=tuple(means),
+    )
+
+
+def session_faults(kit: Kit) -> Iterator[tuple[str, str]]:
+    """Yield (key, what is wrong) of the readings that a kit keeps."""
+    session = kit.session
+    if session is None:
+        return
+    if session.scatter_sd.shape != (len(PARTS),) or not np.isfinite(session.scatter_sd).all():
+        yield "session.connection_sd", f"{len(PARTS)} finite numbers are needed: {', '.join(PARTS)}"
+    if session.scatter_freedom.shape != (len(PARTS),):
+        yield "session.connection_freedom", f"{len(PARTS)} numbers are needed: {', '.join(PARTS)}"
+    names = [one.standard for one in session.means]
+    if len(set(names)) != len(names):
+        yield "session.mean", "a standard is named twice"
+    for k, one in enumerate(session.means):
+        key = f"session.mean[{k}]"
+        if one.standard not in [definition.name for definition in kit.definitions]:
+            yield f"{key}.standard", "the kit holds no such standard"
+        yield from _mean_faults(one, key)
+
+
+def _mean_faults(one: MeanReading, key: str) -> Iterator[tuple[str, str]]:
+    count = one.frequency_hz.size
+    sizes = {"mean_re": one.gamma, "calibration_sd": one.calibration_sd, "session_sd": one.session_sd}
+    for name, values in sizes.items():
+        if count < 1 or values.shape != (count,):
+            yield f"{key}.{name}", "the lists of a mean reading must be equally long"
+        elif not np.isfinite(values).all():
+            yield f"{key}.{name}", "a value is not a finite number"
+    if not np.isfinite(one.noise_sd):
+        yield f"{key}.noise_sd", "not a finite number"
+    if not np.isfinite(one.frequency_hz).all() or (np.diff(one.frequency_hz) <= 0.0).any():
+        yield f"{key}.frequency_hz", "the frequencies do not rise"
+    if (np.abs(one.gamma) > HIGHEST_MAGNITUDE).any():
+        yield f"{key}.mean_re", f"|Γ| above {HIGHEST_MAGNITUDE:g} is no reading of a standard"
