@@ -13,6 +13,7 @@ from stdfit import cli, kit_text, limits
 from stdfit.base.errors import BenchError
 from stdfit.cli import main
 from stdfit.data.bench import parse_bench
+from stdfit.data.repeat_file import parse_repeat_file
 from stdfit.fitting.roles import ASSUMED
 from stdfit.writing.kit_reading import parse_kit
 
@@ -50,9 +51,10 @@ def test_python_blocks_run_in_order(page, tmp_path, monkeypatch):
 
 def bench_folder(folder, text):
     """Make every file that a bench text names, so that it can be parsed."""
-    for standard in tomllib.loads(text)["standard"]:
-        wanted = [name.replace("*", "1") for name in standard.get("readings", [])]
-        for name in [*wanted, *([standard["from_kit"]] if "from_kit" in standard else [])]:
+    values = tomllib.loads(text)
+    for part in [*values["standard"], *values.get("device", []), *values.get("adapter", [])]:
+        wanted = [name.replace("*", "1") for name in part.get("readings", [])]
+        for name in [*wanted, *(part[key] for key in ("from_kit", "value_file", "file") if key in part)]:
             (folder / name).touch()
     return folder / "bench.toml"
 
@@ -62,12 +64,25 @@ def test_toml_blocks_are_what_they_call_themselves(page, tmp_path):
         values = tomllib.loads(text)
         if str(values.get("format", "")).startswith("stdfit-kit/"):
             parse_kit(text, f"{page.name}, line {line}")
+        elif "repeatability" in values:
+            folder = tmp_path / str(number)
+            folder.mkdir()
+            for part in values["repeatability"]:
+                for name in (
+                    one
+                    for entry in part["connections"]
+                    for one in ([entry] if isinstance(entry, str) else entry)
+                ):
+                    (folder / name.replace("*", "1")).touch()
+            parse_repeat_file(text, folder / "repeatability.toml")
         elif "format" in values:
             folder = tmp_path / str(number)
             folder.mkdir()
             parse_bench(text, bench_folder(folder, text))
         else:
-            assert set(values) <= {"kit", "goal", "analyser", "standard"}, f"{page.name}, line {line}"
+            assert set(values) <= {"kit", "goal", "analyser", "standard", "device", "adapter"}, (
+                f"{page.name}, line {line}"
+            )
 
 
 def command_lines(text):
@@ -202,6 +217,32 @@ def test_every_key_of_a_plan_is_described(tmp_path):
     assert all(f"`{key}`" in section for key in keys)
 
 
+def test_every_key_of_a_device_is_described(tmp_path):
+    (text,) = [text for _, text in blocks(FILES, "toml") if "[[device]]" in text]
+    bench = parse_bench(text, bench_folder(tmp_path, text))
+    short, mismatch, cap, piece = bench.devices
+    assert (short.given["l0"].u, mismatch.port, cap.standard, piece.expect) == (None, 2, "open", "line")
+    with pytest.raises(BenchError) as refused:
+        parse_bench(text.replace("[[device]]", "[[device]]\nqqqqqqqq = 1", 1), tmp_path / "bench.toml")
+    keys = refused.value.mend.removeprefix("use one of: ").split(", ")
+    assert {"value_u95", "expect"} <= set(keys)
+    section = FILES.read_text(encoding="utf-8").partition("### `[[device]]`")[2].partition("\n### ")[0]
+    assert all(re.search(rf"^\| .*`{key}`", section, re.MULTILINE) for key in keys)
+
+
+def test_every_key_of_an_adapter_is_described(tmp_path):
+    determined, used = [text for _, text in blocks(FILES, "toml") if "[[adapter]]" in text]
+    bench = parse_bench(used, bench_folder(tmp_path, used))
+    assert (bench.thru, bench.standards[0].behind) == ("barrel", "barrel")
+    assert parse_bench(determined, bench_folder(tmp_path, determined)).adapters[0].file is None
+    with pytest.raises(BenchError) as refused:
+        parse_bench(used.replace("[[adapter]]", "[[adapter]]\nqqqqqqqq = 1", 1), tmp_path / "bench.toml")
+    keys = refused.value.mend.removeprefix("use one of: ").split(", ")
+    assert {"file", "delay_ps"} <= set(keys)
+    section = FILES.read_text(encoding="utf-8").partition("### `[[adapter]]`")[2].partition("\n### ")[0]
+    assert all(re.search(rf"^\| `{key}`", section, re.MULTILINE) for key in keys)
+
+
 def test_the_key_of_a_check_is_described():
     text = blocks(FILES, "toml")[-1][1]
     checked = replace(parse_kit(text, FILES), checks=("load: agree",))
@@ -223,7 +264,10 @@ def test_every_command_and_option_is_described(capsys):
         assert f"$ stdfit {command}" in section, command
         options = set(re.findall(r"(?<![\w-])--[a-z][a-z-]*", help_of(capsys, command)))
         for option in options - {"--help", "--json"}:
-            assert re.search(rf"`{option} [A-Z]", section) or f", `{option} " in section, (command, option)
+            assert re.search(rf"`{option}(`| [A-Z])", section) or f", `{option} " in section, (
+                command,
+                option,
+            )
 
 
 def test_exit_codes_are_described():

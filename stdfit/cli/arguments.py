@@ -100,6 +100,199 @@ def parser() -> Parser:
     )
     limit.add_argument("kit", metavar="KIT", type=_path)
     limit.add_argument("--within", metavar="X", type=_tolerance, nargs="+", help="tolerances (the kit's own)")
+    limit.add_argument(
+        "--return-loss",
+        metavar=("DB", "WITHIN_DB"),
+        type=_number,
+        nargs=2,
+        action="append",
+        default=[],
+        help="up to where a device of that return loss is shown within so many dB; may be repeated",
+    )
+    limit.add_argument(
+        "--impedance",
+        metavar=("OHM", "PERCENT"),
+        type=_number,
+        nargs=2,
+        action="append",
+        default=[],
+        help="up to where |Z| of a device near that resistance is shown within so many percent; may be repeated",
+    )
+    limit.add_argument(
+        "--phase",
+        metavar="DEGREES",
+        type=_number,
+        action="append",
+        default=[],
+        help="up to where the phase of a full reflection is shown within so many degrees; may be repeated",
+    )
+    _three(limit)
+
+    device = add(
+        "device", "print what a kit leaves in an analyser, and the bound on any device", "kit_commands"
+    )
+    device.add_argument("kit", metavar="KIT", type=_path)
+    device.add_argument(
+        "--magnitude",
+        metavar="X",
+        type=_magnitude,
+        nargs="+",
+        default=[0.0, 0.1, 0.3, 1.0],
+        help="|Γ| of the devices (0 0.1 0.3 1)",
+    )
+    device.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="frequencies (some round ones)")
+    device.add_argument(
+        "--points", metavar="N", type=_count, help="so many frequencies, evenly spaced, instead"
+    )
+    device.add_argument("--csv", action="store_true", help="print CSV")
+    _three(device)
+
+    export = add(
+        "export",
+        "write each standard as a Touchstone file, with covariances and bounds as CSV",
+        "use_commands",
+    )
+    export.add_argument("kit", metavar="KIT", type=_path)
+    export.add_argument("folder", metavar="DIR", type=_path, help="where to write; made if it is not there")
+    export.add_argument(
+        "--from", dest="from_hz", metavar="HZ", type=_number, help="lowest frequency (first common reading)"
+    )
+    export.add_argument(
+        "--to", dest="to_hz", metavar="HZ", type=_number, help="highest frequency (last common reading)"
+    )
+    export.add_argument("--points", metavar="N", type=_count, help="so many frequencies (201)")
+    export.add_argument(
+        "--spacing", metavar="HOW", choices=("even", "log"), help="even steps, or equal ratios: log (even)"
+    )
+    export.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="these frequencies instead")
+
+    compare = add(
+        "compare", "say where and by how much two kits differ, in units of their bounds", "use_commands"
+    )
+    compare.add_argument("kit", metavar="KIT", type=_path)
+    compare.add_argument(
+        "other", metavar="KIT|ideal", help="another kit, or the word 'ideal' for standards at +1, -1 and 0"
+    )
+    compare.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="frequencies (some round ones)")
+    compare.add_argument("--csv", action="store_true", help="print all differences over frequency as CSV")
+
+    sheet = add(
+        "sheet", "say what to type where not all terms are accepted, and what that costs", "entry_commands"
+    )
+    sheet.add_argument("kit", metavar="KIT", type=_path)
+    sheet.add_argument(
+        "--accepts",
+        metavar="TERM",
+        nargs="+",
+        help="what can be typed: nothing, delay, loss, z0, c0 ... c3, l0 ... l3, cubic, resistance, inductance, "
+        "capacitance; open.delay means the open alone (everything)",
+    )
+    sheet.add_argument(
+        "--units",
+        metavar="QUANTITY=UNIT",
+        nargs="+",
+        default=[],
+        help="delay=ps|ns|s|mm|m|two-way-ps..., loss=GΩ/s|Ω/s|dB|two-way-dB, capacitance=trade|F|pF|fF, "
+        "inductance=trade|H|nH|pH",
+    )
+    sheet.add_argument(
+        "--velocity-factor", metavar="V", type=_number, help="of delays that are typed as lengths (1)"
+    )
+    sheet.add_argument(
+        "--digits",
+        metavar="N",
+        nargs="+",
+        default=[],
+        help="significant digits of all numbers, and of single ones: 3 resistance=5 (4)",
+    )
+    sheet.add_argument(
+        "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the kit's own)"
+    )
+    sheet.add_argument("--no-negative", action="store_true", help="type no negative number")
+    sheet.add_argument("--csv", action="store_true", help="print CSV")
+
+    check = add(
+        "check",
+        "correct devices with a kit, and say whether they agree with their values within the bounds",
+        "check_commands",
+    )
+    check.add_argument("kit", metavar="KIT", type=_path)
+    check.add_argument(
+        "bench", metavar="BENCH", type=_path, help="a bench file with [[device]] tables, or its folder"
+    )
+    check.add_argument(
+        "--to", dest="to_hz", metavar="HZ", type=_number, help="give the verdict up to here (the kit's limit)"
+    )
+    check.add_argument("--csv", action="store_true", help="print all differences over frequency as CSV")
+    _three(check)
+
+    wear = add(
+        "wear",
+        "say whether standards have changed, in what, and what their old definition is still good for",
+        "wear_commands",
+    )
+    wear.add_argument("old", metavar="OLD", type=_path, help="the kit file of the standards as they were")
+    wear.add_argument(
+        "new", metavar="NEW", type=_path, help="a newer kit file, a new bench file, or its folder"
+    )
+    wear.add_argument(
+        "--same-calibration",
+        action="store_true",
+        help="one calibration of the analyser served both: its errors are no change",
+    )
+    wear.add_argument("--csv", action="store_true", help="print all differences over frequency as CSV")
+
+    adapter = add(
+        "adapter",
+        "determine an adapter from known standards that were read through it",
+        "adapter_commands",
+    )
+    adapter.add_argument(
+        "bench", metavar="BENCH", type=_path, help="a bench file, or a folder that holds bench.toml"
+    )
+    adapter.add_argument(
+        "-o",
+        "--output",
+        metavar="FILE",
+        type=_path,
+        help="adapter file to write, its .s2p beside it (adapter.toml beside the bench file)",
+    )
+
+    history = add(
+        "history",
+        "say which values drifted or stepped over the kits of a folder, and how long they will serve",
+        "history_commands",
+    )
+    history.add_argument("folder", metavar="DIR", type=_path, help="holds kit files of the same standards")
+    history.add_argument(
+        "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the newest kit's)"
+    )
+    history.add_argument(
+        "--to",
+        dest="to_hz",
+        metavar="HZ",
+        type=_number,
+        help="definitions have to serve up to here (three quarters of each standard's limit)",
+    )
+    history.add_argument(
+        "--same-calibration",
+        action="store_true",
+        help="one calibration of the analyser served all kits: its residuals do not scatter",
+    )
+    history.add_argument("--plot", metavar="FILE.svg", type=_path, help="write a plot there")
+    history.add_argument("--csv", action="store_true", help="print all values as CSV")
+
+    repeat = add(
+        "repeat",
+        "say how readings scatter with repeat, connection and calibration, and how many are worth making",
+        "history_commands",
+    )
+    repeat.add_argument(
+        "file", metavar="FILE", type=_path, help="a repeatability file, or a folder with repeatability.toml"
+    )
+    repeat.add_argument(
+        "--at", metavar="HZ", type=_number, nargs="+", help="frequencies of |ΔΓ| (quarters of the sweep)"
+    )
 
     trials = add("trials", "score the bounds on simulated benches with a known truth", "simulated_commands")
     trials.add_argument(
@@ -110,6 +303,24 @@ def parser() -> Parser:
     trials.add_argument("--within", metavar="X", type=_tolerance, default=0.02, help="tolerance (0.02)")
     trials.add_argument("--seed", metavar="S", type=_seed, default=1, help="seed of all chance (1)")
     return whole
+
+
+def _three(command: Parser) -> None:
+    """Let a command take the three standards of a correction."""
+    command.add_argument(
+        "--standards",
+        metavar="NAME",
+        nargs=3,
+        default=[],
+        help="the three standards that devices are corrected with (an open, a short, a load)",
+    )
+
+
+def _magnitude(text: str) -> float:
+    value = _number(text)
+    if not 0.0 <= value <= 1.0:
+        raise argparse.ArgumentTypeError(f"{text!r} is not |Γ| of a passive device, from 0 to 1")
+    return value
 
 
 def _path(text: str) -> Path:

@@ -44,6 +44,7 @@ def fit(asked: argparse.Namespace) -> int:
     """Characterise a kit."""
     from stdfit.data.bench import read_bench
     from stdfit.pipeline import fit_bench
+    from stdfit.pipeline.path import has_few_references
     from stdfit.writing.plain_data import kit_data
     from stdfit.writing.summary import summary, verdict
 
@@ -61,6 +62,9 @@ def fit(asked: argparse.Namespace) -> int:
     print(summary(kit, warnings=False))
     print(f"kit file: {target}")
     print(verdict(kit))
+    if has_few_references(bench):
+        print(f"next: stdfit limit {target} --within 0.01 0.05   (how far at other tolerances)")
+        return DONE
     print(f"next: stdfit plan {bench.path}   (what would push it further)")
     print(f"      stdfit limit {target} --within 0.01 0.05   (how far at other tolerances)")
     return DONE
@@ -71,7 +75,7 @@ def plan(asked: argparse.Namespace) -> int:
     from dataclasses import replace
 
     from stdfit.data.bench import read_bench
-    from stdfit.pipeline import prepare, read_sweeps
+    from stdfit.pipeline import prepare_bench, read_sweeps
     from stdfit.pipeline.imagined import imagine
     from stdfit.pipeline.plan import plan
     from stdfit.pipeline.plan_text import plan_data, plan_text
@@ -80,7 +84,7 @@ def plan(asked: argparse.Namespace) -> int:
     if asked.within is not None:
         bench = replace(bench, within=asked.within)
     measured = any(entry.files for entry in bench.standards)
-    prepared = prepare(bench, read_sweeps(bench)) if measured else imagine(bench)
+    prepared = prepare_bench(bench, read_sweeps(bench)) if measured else imagine(bench)
     with progress("remedies") as told:
         found = plan(prepared, told)
     warn(found.kit)

@@ -8,7 +8,7 @@ from contextlib import contextmanager
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
 if TYPE_CHECKING:
-    from collections.abc import Callable, Iterator
+    from collections.abc import Callable, Iterable, Iterator, Sequence
 
     from stdfit.validity.kit import Kit
 
@@ -18,6 +18,15 @@ def print_json(data: object) -> None:
     import json
 
     print(json.dumps(data, indent=2, ensure_ascii=False, allow_nan=False))
+
+
+def print_csv(names: Sequence[str], rows: Iterable[Sequence[object]]) -> None:
+    """Print rows below their names; numbers with all their digits."""
+    import csv
+
+    writer = csv.writer(sys.stdout, lineterminator="\n")
+    writer.writerow(names)
+    writer.writerows([value if isinstance(value, str) else repr(value) for value in row] for row in rows)
 
 
 def tell(text: str) -> None:

@@ -7,6 +7,8 @@ from pathlib import Path
 
 from stdfit.base.arrays import frozen_float
 from stdfit.base.errors import BenchError
+from stdfit.data.bench_adapters import check_named, decode_adapters, decode_thru
+from stdfit.data.bench_devices import decode_devices
 from stdfit.data.bench_records import Bench, Given, PlannedSweep, StandardEntry, StatedResidual
 from stdfit.data.bench_standards import decode_standards
 from stdfit.data.bench_table import Table
@@ -22,13 +24,15 @@ DEFAULT_WITHIN = 0.02
 HIGHEST_DB = {"directivity_db": 400.0, "source_match_db": 400.0, "reflection_tracking_db": 20.0}
 
 
-def read_bench(path: Path | str) -> Bench:
+def read_bench(path: Path | str, *, devices_alone: bool = False) -> Bench:
     """Return the bench that a bench file, or a folder with a bench.toml, describes.
 
     Parameters
     ----------
     path : path
         The bench file or its folder.
+    devices_alone : bool
+        Whether devices may stand there without any standard.
 
     Raises
     ------
@@ -59,10 +63,10 @@ def read_bench(path: Path | str) -> Bench:
             fault.strerror if isinstance(fault, OSError) and fault.strerror else "not a possible file name"
         )
         raise BenchError(f"cannot be read: {reason}", "check the path", file=repr(str(path))[1:-1]) from fault
-    return parse_bench(text, path)
+    return parse_bench(text, path, devices_alone=devices_alone)
 
 
-def parse_bench(text: str, path: Path) -> Bench:
+def parse_bench(text: str, path: Path, *, devices_alone: bool = False) -> Bench:
     """Return the bench that a TOML text describes.
 
     Parameters
@@ -71,6 +75,8 @@ def parse_bench(text: str, path: Path) -> Bench:
         The content of a bench file.
     path : path
         Where it stands: patterns are relative to its folder, and messages name it.
+    devices_alone : bool
+        Whether devices may stand there without any standard.
 
     Raises
     ------
@@ -79,7 +85,12 @@ def parse_bench(text: str, path: Path) -> Bench:
     """
     values = _parse_toml(text, path)
     _check_format(values, path)
-    whole = Table(values, path, "", ("format", "kit", "goal", "analyser", "plan", "standard"))
+    whole = Table(
+        values,
+        path,
+        "",
+        ("format", "kit", "goal", "analyser", "plan", "standard", "device", "adapter", "thru"),
+    )
     kit = Table(
         _required(whole, "kit"), path, "kit", ("name", "connector", "reference_impedance_ohm", "date")
     )
@@ -87,12 +98,31 @@ def parse_bench(text: str, path: Path) -> Bench:
     within = goal.number("within", DEFAULT_WITHIN, above=0.0)
     if within >= 1.0:
         raise goal.fault("within", f"{within:g} is not below 1", "write for example 0.02")
-    analyser = Table(_required(whole, "analyser"), path, "analyser", ("state", "residual"))
+    analyser = Table(
+        _required(whole, "analyser"),
+        path,
+        "analyser",
+        ("state", "residual", "calibrated_with", "calibration"),
+    )
     state = analyser.choice("state", ("corrected", "raw"))
     if state == "raw" and "residual" in analyser:
         raise analyser.fault(
             "residual", "belongs to corrected readings", 'leave it out, or set state = "corrected"'
         )
+    if state == "raw" and "calibrated_with" in analyser:
+        raise analyser.fault(
+            "calibrated_with", "belongs to corrected readings", 'leave it out, or set state = "corrected"'
+        )
+    if state == "raw" and "calibration" in analyser:
+        raise analyser.fault(
+            "calibration", "belongs to corrected readings", 'leave it out, or set state = "corrected"'
+        )
+    standards: tuple[StandardEntry, ...] = ()
+    if not devices_alone or "standard" in whole or "device" not in whole:
+        standards = decode_standards(whole, state, planned="plan" in whole)
+    adapters, thru = decode_adapters(whole), decode_thru(whole)
+    calibrated_with = analyser.text("calibrated_with") if "calibrated_with" in analyser else None
+    check_named(path, adapters, standards, calibrated_with, thru)
     return Bench(
         path=path,
         name=kit.text("name"),
@@ -102,9 +132,14 @@ def parse_bench(text: str, path: Path) -> Bench:
         highest_hz=goal.number("highest_hz", above=0.0) if "highest_hz" in goal else None,
         state=state,
         residual=_residual(analyser.values["residual"], path) if "residual" in analyser else None,
-        standards=decode_standards(whole, state, planned="plan" in whole),
+        standards=standards,
         date=kit.day("date"),
         plan=_plan(values["plan"], path) if "plan" in whole else None,
+        devices=decode_devices(whole),
+        adapters=adapters,
+        calibrated_with=calibrated_with,
+        thru=thru,
+        calibration=analyser.text("calibration") if "calibration" in analyser else None,
     )
 
 

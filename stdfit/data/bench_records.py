@@ -72,6 +72,12 @@ class StandardEntry:
         Kit file that knows this standard (raw readings only).
     standard : str or None
         Its name in that kit file.
+    reading_set : str or None
+        Known standards may be read in several sets, before and after the others: which set this one is of.
+    behind : str or None
+        The adapter through which it was read.
+    matings : int or None
+        How often it had been connected in all when it was read.
     """
 
     name: str
@@ -83,10 +89,100 @@ class StandardEntry:
     polynomial: str = "chosen"
     from_kit: Path | None = None
     standard: str | None = None
+    reading_set: str | None = None
+    behind: str | None = None
+    matings: int | None = None
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "files", tuple(self.files))
         object.__setattr__(self, "given", MappingProxyType(dict(self.given)))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class StatedBound:
+    """A 95 % bound on |ΔΓ| of a stated value: a straight line between the frequencies, held beyond the ends.
+
+    Attributes
+    ----------
+    frequency_hz : array of shape (m,)
+        Rising.
+    bound : array of shape (m,)
+    """
+
+    frequency_hz: FloatArray
+    bound: FloatArray
+
+    def __post_init__(self) -> None:
+        for name in ("frequency_hz", "bound"):
+            object.__setattr__(self, name, frozen_float(getattr(self, name)))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class DeviceEntry:
+    """One device that a kit is checked with.
+
+    At most one of `kind`, `from_kit` and `value_file` states its value.
+
+    Attributes
+    ----------
+    name : str
+        Unique among the devices.
+    files : tuple of paths
+        One for each connection.
+    port : int
+        1 takes S11 of the files, 2 takes S22.
+    kind : str or None
+        "open", "short" or "load": the value comes from `given`.
+    given : mapping of str to Given
+    from_kit : path or None
+        Kit file that defines the device, as `standard`.
+    standard : str or None
+    value_file : path or None
+        Readings of it from elsewhere, with the bound `value_u95`.
+    value_u95 : StatedBound or None
+    expect : str or None
+        What physics is to say without a value: "line", "passive", or None to be told from the readings.
+    """
+
+    name: str
+    files: tuple[Path, ...]
+    port: int = 1
+    kind: str | None = None
+    given: Mapping[str, Given] = field(default_factory=dict)
+    from_kit: Path | None = None
+    standard: str | None = None
+    value_file: Path | None = None
+    value_u95: StatedBound | None = None
+    expect: str | None = None
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "files", tuple(self.files))
+        object.__setattr__(self, "given", MappingProxyType(dict(self.given)))
+
+
+@dataclass(frozen=True, slots=True)
+class AdapterEntry:
+    """One adapter: determined before, estimated, or still to be determined.
+
+    Attributes
+    ----------
+    name : str
+        Unique among the adapters.
+    file : path or None
+        Adapter file that holds it.
+    delay_ps : Given or None
+        Estimate of its delay, always with its uncertainty.
+    loss_db : Given or None
+        Estimate of its loss one way at 1 GHz.
+    z0_ohm : Given or None
+        Estimate of its impedance.
+    """
+
+    name: str
+    file: Path | None = None
+    delay_ps: Given | None = None
+    loss_db: Given | None = None
+    z0_ohm: Given | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -133,6 +229,15 @@ class Bench:
         As written.
     plan : PlannedSweep or None
         For standards that have no readings yet.
+    devices : tuple of DeviceEntry
+        Devices that a kit is checked with; no fit looks at them.
+    adapters : tuple of AdapterEntry
+    calibrated_with : str or None
+        The adapter that the analyser was calibrated with, and that is gone now.
+    thru : str or None
+        The adapter that is the kit's thru.
+    calibration : str or None
+        The user's words for the correction of the analyser: the same words, the same errors.
     """
 
     path: Path
@@ -146,3 +251,8 @@ class Bench:
     standards: tuple[StandardEntry, ...]
     date: str | None = None
     plan: PlannedSweep | None = None
+    devices: tuple[DeviceEntry, ...] = ()
+    adapters: tuple[AdapterEntry, ...] = ()
+    calibrated_with: str | None = None
+    thru: str | None = None
+    calibration: str | None = None

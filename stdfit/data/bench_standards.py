@@ -28,7 +28,11 @@ _KEYS = (
     "polynomial",
     "from_kit",
     "standard",
+    "set",
+    "behind",
+    "matings",
 )
+MOST_MATINGS = 10**9
 
 
 def decode_standards(whole: Table, state: str, *, planned: bool) -> tuple[StandardEntry, ...]:
@@ -73,9 +77,7 @@ def _decode(item: object, file: Path, place: int, state: str, planned: bool) -> 
     polynomial = table.choice("polynomial", POLYNOMIALS, "chosen")
     if kind == "load" and "polynomial" in table:
         raise table.fault("polynomial", "a load has no polynomial", "leave the key out")
-    port = table.values.get("port", 1)
-    if isinstance(port, bool) or port not in (1, 2) or not isinstance(port, int):
-        raise table.fault("port", "the port must be 1 or 2", "write port = 1 for S11 or port = 2 for S22")
+    port = decode_port(table)
     from_kit, standard = _known_standard(table, state)
     patterns: Sequence[object] = ()
     if not planned or table.values.get("readings"):
@@ -87,13 +89,26 @@ def _decode(item: object, file: Path, place: int, state: str, planned: bool) -> 
         name=table.text("name"),
         kind=kind,
         files=matching_files([str(p) for p in patterns], file, f"{table.prefix}.readings"),
-        given=_given(table, kind),
+        given=decode_given(table, kind),
         same_offset_as=table.text("same_offset_as") if "same_offset_as" in table else None,
         port=port,
         polynomial=polynomial,
         from_kit=from_kit,
         standard=standard,
+        reading_set=table.text("set") if "set" in table else None,
+        behind=table.text("behind") if "behind" in table else None,
+        matings=_matings(table),
     )
+
+
+def _matings(table: Table) -> int | None:
+    """Return how often a standard had been connected, where that is told."""
+    if "matings" not in table:
+        return None
+    value = table.values["matings"]
+    if isinstance(value, bool) or not isinstance(value, int) or not 0 <= value <= MOST_MATINGS:
+        raise table.fault("matings", "must be a whole number from 0 on", "count each connection as one")
+    return value
 
 
 def _known_standard(table: Table, state: str) -> tuple[Path | None, str | None]:
@@ -101,13 +116,27 @@ def _known_standard(table: Table, state: str) -> tuple[Path | None, str | None]:
     if "from_kit" not in table:
         if "standard" in table:
             raise table.fault("standard", "stands without from_kit", "name the kit file with from_kit")
+        if "set" in table:
+            raise table.fault(
+                "set",
+                "stands without from_kit",
+                "sets are of known standards; leave it out, or name the kit file with from_kit",
+            )
         return None, None
-    if state != "raw":
+    if state != "raw" and "behind" not in table:
         raise table.fault(
             "from_kit",
             "known standards belong to raw readings",
             'leave it out, or set analyser.state = "raw"',
         )
+    if state == "raw" and "behind" in table:
+        raise table.fault(
+            "behind",
+            "stands beside from_kit: references are read without an adapter",
+            "leave one of them out",
+        )
+    if state != "raw" and "set" in table:
+        raise table.fault("set", "belongs to raw readings", "leave it out")
     for key in ("given", "same_offset_as", "polynomial"):
         if key in table:
             raise table.fault(key, "stands beside from_kit, which already tells it", "leave one of them out")
@@ -121,7 +150,15 @@ def _known_standard(table: Table, state: str) -> tuple[Path | None, str | None]:
     return kit, table.text("standard")
 
 
-def _given(table: Table, kind: str) -> dict[str, Given]:
+def decode_port(table: Table) -> int:
+    """Return which port of the files was read."""
+    port = table.values.get("port", 1)
+    if isinstance(port, bool) or port not in (1, 2) or not isinstance(port, int):
+        raise table.fault("port", "the port must be 1 or 2", "write port = 1 for S11 or port = 2 for S22")
+    return port
+
+
+def decode_given(table: Table, kind: str) -> dict[str, Given]:
     """Return the evidence on a standard's parameters."""
     if "given" not in table:
         return {}

@@ -1,6 +1,14 @@
 """From a bench to a kit: the one path that library users and the command share."""
 
-from stdfit.pipeline.path import characterise, fit_bench, kit_of, program_version, read_sweeps, with_limits
+from stdfit.pipeline.path import (
+    characterise,
+    fit_bench,
+    kit_of,
+    prepare_bench,
+    program_version,
+    read_sweeps,
+    with_limits,
+)
 from stdfit.pipeline.prepare import Prepared, prepare
 from stdfit.pipeline.settle import choose_all, settle
 
@@ -11,6 +19,7 @@ __all__ = [
     "fit_bench",
     "kit_of",
     "prepare",
+    "prepare_bench",
     "program_version",
     "read_sweeps",
     "settle",

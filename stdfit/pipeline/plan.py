@@ -8,8 +8,10 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray
 from stdfit.fitting.observed import Observed
 from stdfit.fitting.roles import Wish
+from stdfit.pipeline.adapter_acting import OF_ADAPTERS
 from stdfit.pipeline.path import kit_of
 from stdfit.pipeline.prepare import Prepared, sources_of
+from stdfit.pipeline.reference_remedies import OF_REFERENCES, with_reference_connections
 from stdfit.pipeline.settle import choose_all, settle
 from stdfit.uncertainty.budget import radius
 from stdfit.uncertainty.sources import LumpedSource, SharedSource, SmoothSource, Source, WhiteSource
@@ -131,11 +133,18 @@ def _kit(prepared: Prepared) -> Kit:
 
 def _remedies(prepared: Prepared, kit: Kit, held_back: Definition) -> Iterator[tuple[str, Prepared, bool]]:
     """Yield each remedy in words, the bench as it would then be, and whether the prediction is at most."""
-    most = prepared.connections
-    for count in [count for count in (3, 5, 10, 20, 40) if count > most][:2]:
-        yield f"make {count} connections of each standard", with_connections(prepared, count), False
+    referenced = prepared.reference_connections > 0
+    for count in more_than(prepared.connections):
+        each = "new standard" if referenced else "standard"
+        yield f"make {count} connections of each {each}", with_connections(prepared, count), False
+    if referenced:
+        for count in more_than(prepared.reference_connections):
+            better = with_reference_connections(prepared, count)
+            yield f"make {count} connections of each reference", better, False
     yield (
-        f"correct the analyser with a kit whose residuals are {BETTER_DB:.0f} dB smaller",
+        f"take references that are known {BETTER_DB:.0f} dB better"
+        if referenced
+        else f"correct the analyser with a kit whose residuals are {BETTER_DB:.0f} dB smaller",
         with_better_reference(prepared, 10.0 ** (-BETTER_DB / 20.0)),
         True,
     )
@@ -155,7 +164,12 @@ def _remedies(prepared: Prepared, kit: Kit, held_back: Definition) -> Iterator[t
                 False,
             )
     top = max(one.read_top_hz for one in kit.definitions)
-    if kit.limit.limit_hz >= 0.999 * min(one.read_top_hz for one in kit.definitions) and top < kit.top_hz:
+    # Further up references and adapters may not be known, and what the analyser does there is not read.
+    if (
+        not (referenced or prepared.bench.adapters)
+        and kit.limit.limit_hz >= 0.999 * min(one.read_top_hz for one in kit.definitions)
+        and top < kit.top_hz
+    ):
         reach = min(LONGER * top, kit.top_hz)
         yield f"read on up to {reach / 1e9:.3g} GHz", with_longer_sweep(prepared, kit, reach), True
     if held_back.misfit.max() > 0.0 and not prepared.imagined_connections:
@@ -164,6 +178,11 @@ def _remedies(prepared: Prepared, kit: Kit, held_back: Definition) -> Iterator[t
             with_model_for(prepared, kit, held_back),
             True,
         )
+
+
+def more_than(connections: int) -> list[int]:
+    """Return the next two numbers of connections that are worth a trial."""
+    return [count for count in (3, 5, 10, 20, 40) if count > connections][:2]
 
 
 def with_sources(prepared: Prepared, change: Callable[[Source], Source]) -> Prepared:
@@ -195,13 +214,19 @@ def with_connections(prepared: Prepared, count: int) -> Prepared:
 
 
 def with_better_reference(prepared: Prepared, factor: float) -> Prepared:
-    """Return the bench with all analyser residuals scaled, in what is stated and in the readings' misfit.
+    """Return the bench with all errors of the reference scaled, in what is stated and in the readings' misfit.
+
+    Those are the analyser's residuals, or of raw readings what the kit of the references says of them.
 
     The readings keep the residuals that they have; so that those do not pass for misfit, the part of the readings
     that the model does not follow is scaled too.
     """
 
     def change(source: Source) -> Source:
+        if prepared.reference_connections and not source.name.startswith(OF_REFERENCES):
+            return source
+        if source.name.startswith(OF_ADAPTERS):
+            return source
         if isinstance(source, SmoothSource) and source.common:
             return replace(source, profiles=tuple(factor * profile for profile in source.profiles))
         if isinstance(source, SharedSource):

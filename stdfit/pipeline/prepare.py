@@ -14,9 +14,14 @@ from stdfit.data.verify import verify_standards
 from stdfit.fitting.observed import Observed, noise_of, without_delay
 from stdfit.fitting.roles import Wish
 from stdfit.fitting.screen import screen_points
+from stdfit.pipeline.adapter_acting import adapter_sources_on, residual_sources
+from stdfit.pipeline.adapter_brought import brought, to_verify
+from stdfit.pipeline.adapter_known import adapter_ancestors, adapter_cautions
+from stdfit.pipeline.adapter_planes import NO_ADAPTERS, Planes, planes_of
 from stdfit.uncertainty.connections import Repeatability, assumed_repeatability, pooled_repeatability
 from stdfit.uncertainty.outlying import without_outlying
-from stdfit.uncertainty.sources import Source, analyser_sources, connection_sources
+from stdfit.uncertainty.sources import Source, connection_sources
+from stdfit.validity.kit import Ancestor
 
 ASSUMED_RESIDUAL = StatedResidual(
     frequency_hz=frozen_float([1e9, 6e9]),
@@ -26,6 +31,14 @@ ASSUMED_RESIDUAL = StatedResidual(
 )
 """Residuals that are assumed where a bench states none: those of an analyser corrected with a kit of modest,
 unverified standards (common practice, no source)."""
+
+CORRECTED_HERE = StatedResidual(
+    frequency_hz=frozen_float([1e9]),
+    directivity=frozen_float([0.0]),
+    source_match=frozen_float([0.0]),
+    reflection_tracking=frozen_float([0.0]),
+)
+"""Of raw readings that are corrected with references: what that leaves are sources of their own, and no residuals."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -45,6 +58,10 @@ class Prepared:
     warnings : tuple of str
     imagined_connections : int
         How many connections of each standard the sources stand for, where it is more than were made; else 0.
+    ancestors : tuple of Ancestor
+        Of raw readings: the kits that the references are of, and theirs.
+    reference_connections : int
+        Of raw readings: the fewest connections of any reference; else 0.
     """
 
     bench: Bench
@@ -56,6 +73,8 @@ class Prepared:
     family: Family
     warnings: tuple[str, ...]
     imagined_connections: int = 0
+    ancestors: tuple[Ancestor, ...] = ()
+    reference_connections: int = 0
 
     @property
     def connections(self) -> int:
@@ -81,46 +100,74 @@ def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]], *, imagined: bo
     """
     if bench.state != "corrected":
         raise RequestError(
-            "the bench holds raw readings, and this version takes corrected ones",
-            'correct the readings with the analyser\'s own calibration and set state = "corrected"',
+            "a bench of raw readings cannot be planned before it is read",
+            'read it first, or plan with state = "corrected" and the residuals that its known standards will leave',
             file=bench.path,
             key="analyser.state",
         )
     if not 0.0 < bench.within < 1.0:
         raise RequestError("the tolerance must lie between 0 and 1", "try 0.02", key="within")
-    warnings = (
-        []
-        if imagined
-        else list(
-            verify_standards({entry.name: (entry.kind, sweeps[entry.name]) for entry in bench.standards})
-        )
-    )
+    refuse_known(bench)
+    planes = planes_of(bench)
+    warnings: list[str] = []
+    if not imagined:
+        sweeps = brought(bench, sweeps, planes)
+        warnings += verify_standards(to_verify(bench, sweeps, planes))
     family = family_of(bench.connector)
     observed, left_out = _observe(bench, sweeps, family)
     wishes = tuple(
         Wish({name: (given.value, given.u) for name, given in entry.given.items()}, entry.same_offset_as)
         for entry in bench.standards
     )
-    scatter = _repeatability(observed, family, bench.reference_ohm)
+    scatter = repeatability(observed, family, bench.reference_ohm)
     residual = bench.residual if bench.residual is not None else ASSUMED_RESIDUAL
-    warnings += left_out + _cautions(bench, observed, scatter, family)
+    warnings += (
+        left_out + _cautions(bench, observed, scatter, family) + adapter_cautions(bench, planes.in_use)
+    )
     return Prepared(
         bench=bench,
         observed=tuple(observed),
         wishes=wishes,
         residual=residual,
         scatter=scatter,
-        sources=sources_of(observed, residual, scatter, bench.reference_ohm),
+        sources=sources_of(observed, residual, scatter, bench.reference_ohm, planes),
         family=family,
         warnings=tuple(warnings),
+        ancestors=adapter_ancestors(planes.in_use),
     )
 
 
+def refuse_known(bench: Bench) -> None:
+    """Refuse known standards among corrected readings: they determine an adapter, and are no part of a kit.
+
+    Raises
+    ------
+    RequestError
+    """
+    for entry in bench.standards:
+        if entry.from_kit is not None:
+            raise RequestError(
+                f"known standards behind an adapter determine the adapter '{entry.behind}'",
+                f"run 'stdfit adapter {bench.path}'; of the standards to be characterised leave out from_kit",
+                file=bench.path,
+                key=f"standard[{entry.name}].from_kit",
+            )
+
+
 def sources_of(
-    observed: Sequence[Observed], residual: StatedResidual, scatter: Repeatability, reference_ohm: float
+    observed: Sequence[Observed],
+    residual: StatedResidual,
+    scatter: Repeatability,
+    reference_ohm: float,
+    planes: Planes = NO_ADAPTERS,
 ) -> tuple[Source, ...]:
     """Return all sources of error of a bench, evidence apart."""
-    return (*analyser_sources(observed, residual), *connection_sources(observed, scatter, reference_ohm))
+    passages = [planes.passage(one.name, np.asarray(one.frequency_hz)) for one in observed]
+    return (
+        *residual_sources(observed, passages, residual),
+        *connection_sources(observed, scatter, reference_ohm),
+        *adapter_sources_on(observed, passages, planes, scatter, reference_ohm),
+    )
 
 
 def _observe(
@@ -143,7 +190,7 @@ def _observe(
         screened = screen_points(grid[inside], readings)
         for sweep, row in zip(sweeps[entry.name], screened.replaced, strict=True):
             if row.any():
-                told.append(_single_points(sweep.name, grid[inside][row]))
+                told.append(single_points(sweep.name, grid[inside][row]))
         observed.append(Observed.from_readings(entry.name, entry.kind, grid[inside], screened.readings))
     kept, left_out = without_outlying(observed, bench.reference_ohm, family.repeatability)
     for s, k, distance in left_out:
@@ -155,7 +202,7 @@ def _observe(
     return kept, told
 
 
-def _single_points(name: str, frequencies: FloatArray) -> str:
+def single_points(name: str, frequencies: FloatArray) -> str:
     """Say which single points were left out."""
     some = ", ".join(f"{f / 1e9:.4g}" for f in frequencies[:4]) + (", …" if frequencies.size > 4 else "")
     return (
@@ -164,7 +211,7 @@ def _single_points(name: str, frequencies: FloatArray) -> str:
     )
 
 
-def _repeatability(observed: Sequence[Observed], family: Family, reference_ohm: float) -> Repeatability:
+def repeatability(observed: Sequence[Observed], family: Family, reference_ohm: float) -> Repeatability:
     """Measure how connections scatter, or assume it where nothing was connected twice."""
     if any(one.connections > 1 for one in observed):
         return pooled_repeatability(observed, reference_ohm, family.repeatability)
@@ -183,6 +230,14 @@ def _cautions(
             "(36 … 32 dB directivity, 34 … 28 dB source match, 0.1 … 0.2 dB tracking; common practice, no source). "
             "State yours under [analyser.residual]."
         )
+    return cautions + scatter_cautions(observed, scatter, family, bench.connector)
+
+
+def scatter_cautions(
+    observed: Sequence[Observed], scatter: Repeatability, family: Family, connector: str
+) -> list[str]:
+    """Say what had to be assumed of connections and connector."""
+    cautions = []
     if not scatter.measured:
         resistance, shift, _ = family.repeatability
         cautions.append(
@@ -197,6 +252,6 @@ def _cautions(
         )
     if family.name == "":
         cautions.append(
-            f"the connector '{bench.connector}' is not in the table of families: no limit is set by its next mode."
+            f"the connector '{connector}' is not in the table of families: no limit is set by its next mode."
         )
     return cautions

@@ -2,14 +2,17 @@
 
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Protocol
 
 import numpy as np
+import numpy.typing as npt
 
-from stdfit.base.arrays import FloatArray
+from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.records import Sweep
 from stdfit.data.bench_records import Bench, Given, StandardEntry, StatedResidual
+from stdfit.fitting.problem import Problem
 from stdfit.fitting.solve import inverse_of_normal
-from stdfit.pipeline import choose_all, kit_of, prepare, settle
+from stdfit.pipeline import Prepared, choose_all, kit_of, prepare, settle
 from stdfit.trials.bench import SimulatedBench
 from stdfit.uncertainty.budget import Share, radius
 from stdfit.validity.define import Settled
@@ -20,6 +23,17 @@ POINTS = 60
 
 LIMIT_POINTS = 200
 """Points below a limit at which the error must keep within the tolerance."""
+
+
+class Truth(Protocol):
+    """A bench whose standards are known: what a score asks of it."""
+
+    @property
+    def frequency_hz(self) -> FloatArray:
+        """Frequencies of the readings, shape (n,)."""
+
+    def truth_at(self, name: str, frequency_hz: npt.ArrayLike) -> ComplexArray:
+        """Return the true reflection of one of its standards."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -115,17 +129,41 @@ def bench_of(
 
 def score(simulated: SimulatedBench, within: float = 0.02, *, stated: bool = True) -> tuple[Kit, list[Score]]:
     """Characterise a simulated bench and compare each standard with its truth."""
-    bench, sweeps = bench_of(simulated, within, stated=stated)
-    prepared = prepare(bench, sweeps)
+    return scored(prepare(*bench_of(simulated, within, stated=stated)), simulated, within)
+
+
+def scored(prepared: Prepared, simulated: SimulatedBench, within: float = 0.02) -> tuple[Kit, list[Score]]:
+    """Characterise what is prepared and compare each standard with its truth."""
     settled = settle(prepared, choose_all(prepared))
     kit = kit_of(prepared, settled, created="2000-01-01")
-    alone = fit_alone(settled)
+    return kit, scores_of(kit, settled.problem, settled.values, fit_alone(settled), simulated, within)
+
+
+def scores_of(
+    kit: Kit, problem: Problem, values: FloatArray, alone: Share, simulated: Truth, within: float
+) -> list[Score]:
+    """Compare each standard of a kit with its truth.
+
+    Parameters
+    ----------
+    kit : Kit
+    problem : Problem
+        That was fitted; it may hold more standards than the kit.
+    values : array
+        What the fit found, in trade units.
+    alone : Share
+        What a plain least-squares covariance would claim.
+    simulated : Truth
+    within : float
+        Tolerance.
+    """
+    place = {one.name: k for k, one in enumerate(problem.observed)}
     scores = []
-    for k, definition in enumerate(kit.definitions):
+    for definition in kit.definitions:
         top = min(max(definition.fit_top_hz, definition.limit.limit_hz), definition.read_top_hz)
         grid = np.linspace(definition.fit_low_hz, top, POINTS)
         gamma, bound = curve(kit, definition, grid)
-        _, design = settled.problem.model(k, settled.values, grid)
+        _, design = problem.model(place[definition.name], values, grid)
         scores.append(
             Score(
                 standard=definition.name,
@@ -137,7 +175,7 @@ def score(simulated: SimulatedBench, within: float = 0.02, *, stated: bool = Tru
                 limit_true=limit_is_true(kit, definition, simulated, within),
             )
         )
-    return kit, scores
+    return scores
 
 
 def fit_alone(settled: Settled) -> Share:
@@ -148,7 +186,7 @@ def fit_alone(settled: Settled) -> Share:
     return Share("fit alone", np.inf, covariance[None])
 
 
-def limit_is_true(kit: Kit, definition: Definition, simulated: SimulatedBench, within: float) -> bool:
+def limit_is_true(kit: Kit, definition: Definition, simulated: Truth, within: float) -> bool:
     """Tell whether the error keeps within the tolerance up to the standard's limit."""
     limit_hz = definition.limit.limit_hz
     if limit_hz <= 0.0:
@@ -158,7 +196,7 @@ def limit_is_true(kit: Kit, definition: Definition, simulated: SimulatedBench, w
     return bool(np.all(np.abs(fitted - simulated.truth_at(definition.name, below)) <= within))
 
 
-def quantities_inside(kit: Kit, definition: Definition, simulated: SimulatedBench) -> tuple[bool, ...]:
+def quantities_inside(kit: Kit, definition: Definition, simulated: Truth) -> tuple[bool, ...]:
     """Tell, for each determined quantity, whether its interval covers the truth."""
     inside = []
     if definition.kind == "load":
@@ -175,13 +213,13 @@ def quantities_inside(kit: Kit, definition: Definition, simulated: SimulatedBenc
     return tuple(inside)
 
 
-def true_resistance(simulated: SimulatedBench, name: str, kit: Kit) -> float:
+def true_resistance(simulated: Truth, name: str, kit: Kit) -> float:
     """Return the true DC resistance in Ω."""
     gamma = complex(simulated.truth_at(name, [0.0])[0])
     return float(kit.reference_ohm * ((1.0 + gamma) / (1.0 - gamma)).real)
 
 
-def true_equivalent_delay(simulated: SimulatedBench, name: str, kind: str) -> float:
+def true_equivalent_delay(simulated: Truth, name: str, kind: str) -> float:
     """Return the true delay of a full reflection in ps: the part of its phase that grows as f.
 
     Over the lowest tenth of the sweep the phase is −4πfτ − k√f; the second term is the skin effect's, which
@@ -193,7 +231,7 @@ def true_equivalent_delay(simulated: SimulatedBench, name: str, kind: str) -> fl
     return -1e12 * slope_beside_skin(f, phase) / (4.0 * np.pi)
 
 
-def true_imbalance_ph(simulated: SimulatedBench, name: str, kit: Kit) -> float:
+def true_imbalance_ph(simulated: Truth, name: str, kit: Kit) -> float:
     """Return the true L − C·Z0² of a load in pH: the part of its reactance that grows as f."""
     f = low_grid(simulated)
     gamma = simulated.truth_at(name, f)
@@ -201,7 +239,7 @@ def true_imbalance_ph(simulated: SimulatedBench, name: str, kit: Kit) -> float:
     return 1e12 * slope_beside_skin(f, reactance) / (2.0 * np.pi)
 
 
-def low_grid(simulated: SimulatedBench) -> FloatArray:
+def low_grid(simulated: Truth) -> FloatArray:
     """Return frequencies in the lowest tenth of the sweep."""
     top = float(simulated.frequency_hz[-1]) / 10.0
     return np.linspace(top / 50.0, top, 50)

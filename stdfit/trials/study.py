@@ -12,16 +12,44 @@ import numpy as np
 from stdfit.base.errors import RequestError, StdfitError
 from stdfit.data.words import suggestion
 from stdfit.trials.bench import draw_bench
+from stdfit.trials.devices import devices_inside
 from stdfit.trials.families import Family, demo_scenario, families
+from stdfit.trials.five_parts import Workshop, draw_five_parts, score_five_parts
+from stdfit.trials.raw_session import draw_raw_session
 from stdfit.trials.scenario import Scenario
-from stdfit.trials.score import Score, score
+from stdfit.trials.score import Score, score, scored
 
 NOT_STATED = {"nothing stated": "plain", "nothing stated, one connection": "one connection"}
 """Families in which the user states no residuals, and the families whose benches they are."""
 
+WITHOUT_REFERENCE = {"no reference": None, "no reference, one known": "open"}
+"""Families of raw readings of five parts, and the kind of a known sixth."""
+
+AGAINST_A_KIT: dict[str, tuple[str, tuple[str, ...]]] = {
+    "raw, one set": ("plain", ("",)),
+    "raw, two sets": ("drift", ("before", "after")),
+}
+"""Families of raw readings against the standards of a kit: whose standards they are, and the sets of references."""
+
 DEMO = "demo"
 LIKE = "like the bench"
 ALL = "all"
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Trial:
+    """How one bench fared.
+
+    Attributes
+    ----------
+    scores : tuple of Score
+        One for each standard.
+    devices : float
+        Part of random devices, corrected with the kit, whose error keeps within the device bound.
+    """
+
+    scores: tuple[Score, ...]
+    devices: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,6 +66,8 @@ class Row:
         The same for the fit's own covariance.
     quantities : float
         Part of the determined quantities whose 95 % interval covers the truth.
+    devices : float
+        Part of random devices, corrected with the kit, whose error keeps within the device bound.
     limits_true : float
         Part of the benches all of whose limits hold; limits of 0 say nothing and do not count.
     limit : float
@@ -53,33 +83,61 @@ class Row:
     coverage: float
     coverage_alone: float
     quantities: float
+    devices: float
     limits_true: float
     limit: float
     sharpness: float
     failed: int
 
 
+def family_names() -> list[str]:
+    """Return the names of all families."""
+    return [*family_table(), *WITHOUT_REFERENCE, *AGAINST_A_KIT]
+
+
 def family_table() -> dict[str, Family]:
-    """Return all families by name."""
+    """Return the families of corrected readings by name."""
     plain = families()
     unstated = {name: plain[like] for name, like in NOT_STATED.items()}
     return {**plain, DEMO: lambda rng: demo_scenario(), **unstated}
 
 
-def trial(
-    family: str, seed: int, number: int, within: float, like: Scenario | None = None
-) -> list[Score] | None:
+def trial(family: str, seed: int, number: int, within: float, like: Scenario | None = None) -> Trial | None:
     """Draw one bench of a family and score it; None where no kit came out of it.
 
     Each bench has a generator of its own, so that any of them can be drawn again alone.
     """
     rng = np.random.default_rng([zlib.crc32(family.encode()), seed, number])
+    if like is None and family in WITHOUT_REFERENCE:
+        return _without_reference(WITHOUT_REFERENCE[family], within, rng)
+    if like is None and family in AGAINST_A_KIT:
+        return _against_a_kit(*AGAINST_A_KIT[family], within, rng)
     simulated = draw_bench(like if like is not None else family_table()[family](rng), rng)
     try:
-        _, scores = score(simulated, within, stated=family not in NOT_STATED)
+        kit, scores = score(simulated, within, stated=family not in NOT_STATED)
     except StdfitError:
         return None
-    return scores
+    return Trial(tuple(scores), devices_inside(kit, simulated, rng))
+
+
+def _against_a_kit(family: str, sets: Sequence[str], within: float, rng: np.random.Generator) -> Trial | None:
+    """Draw a kit, and raw readings of its standards and of new ones, and score these."""
+    try:
+        session = draw_raw_session(families()[family](rng), rng, sets)
+        kit, scores = scored(session.prepared(within), session.simulated, within)
+    except StdfitError:
+        return None
+    return Trial(tuple(scores), devices_inside(kit, session.simulated, rng))
+
+
+def _without_reference(known: str | None, within: float, rng: np.random.Generator) -> Trial | None:
+    """Draw five parts, one more of them known where its kind is named, and score them."""
+    simulated = draw_five_parts(Workshop(), rng, within, known=known)
+    try:
+        kit, scores = score_five_parts(simulated, within)
+    except StdfitError:
+        return None
+    return Trial(tuple(scores), devices_inside(kit, simulated, rng))
 
 
 def run(
@@ -114,22 +172,22 @@ def run(
     RequestError
         An unknown family.
     """
-    table = family_table()
+    every = family_names()
     if like is not None:
-        table, names = {LIKE: lambda rng: like}, [LIKE]
+        every, names = [LIKE], [LIKE]
     for name in names:
-        if name not in table:
+        if name not in every:
             raise RequestError(
-                f"no family '{name}'{suggestion(name, table)}", f"choose among: {', '.join(table)}"
+                f"no family '{name}'{suggestion(name, every)}", f"choose among: {', '.join(every)}"
             )
-    chosen = list(names) or list(table)
+    chosen = list(names) or every
     jobs = [(name, seed, number, within, like) for name in chosen for number in range(benches)]
     workers = workers if workers is not None else (os.cpu_count() or 1)
-    found: dict[str, list[list[Score] | None]] = {name: [] for name in chosen}
+    found: dict[str, list[Trial | None]] = {name: [] for name in chosen}
 
-    def gather(results: Iterable[list[Score] | None]) -> None:
-        for done, (job, scores) in enumerate(zip(jobs, results, strict=True), start=1):
-            found[job[0]].append(scores)
+    def gather(results: Iterable[Trial | None]) -> None:
+        for done, (job, one) in enumerate(zip(jobs, results, strict=True), start=1):
+            found[job[0]].append(one)
             if tell:
                 tell(done, len(jobs))
 
@@ -141,21 +199,21 @@ def run(
     rows = [row_of(name, found[name]) for name in chosen]
     if len(rows) == 1:
         return rows
-    return [*rows, row_of(ALL, [scores for name in chosen for scores in found[name]])]
+    return [*rows, row_of(ALL, [one for name in chosen for one in found[name]])]
 
 
-def _trial_of(job: tuple[str, int, int, float, Scenario | None]) -> list[Score] | None:
+def _trial_of(job: tuple[str, int, int, float, Scenario | None]) -> Trial | None:
     return trial(*job)
 
 
-def row_of(family: str, benches: Sequence[list[Score] | None]) -> Row:
+def row_of(family: str, benches: Sequence[Trial | None]) -> Row:
     """Return the figures of some benches."""
-    sound = [scores for scores in benches if scores is not None]
-    each = [one for scores in sound for one in scores]
+    sound = [bench for bench in benches if bench is not None]
+    each = [one for bench in sound for one in bench.scores]
     if not each:
         none = float("nan")
-        return Row(family, len(benches), none, none, none, none, none, none, failed=len(benches))
-    limited = [scores for scores in sound if any(one.limit > 0.0 for one in scores)]
+        return Row(family, len(benches), none, none, none, none, none, none, none, failed=len(benches))
+    limited = [bench.scores for bench in sound if any(one.limit > 0.0 for one in bench.scores)]
     quantities = [inside for one in each for inside in one.quantities]
     error = np.concatenate([one.error for one in each])
     return Row(
@@ -164,6 +222,7 @@ def row_of(family: str, benches: Sequence[list[Score] | None]) -> Row:
         coverage=float(np.mean([one.inside for one in each])),
         coverage_alone=float(np.mean([one.inside_alone for one in each])),
         quantities=float(np.mean(quantities)),
+        devices=float(np.mean([bench.devices for bench in sound])),
         limits_true=_mean([all(one.limit_true for one in scores if one.limit > 0.0) for scores in limited]),
         limit=float(np.mean([one.limit for one in each])),
         sharpness=float(np.mean(np.concatenate([one.bound for one in each])) / np.quantile(error, 0.95)),
@@ -179,13 +238,14 @@ def _mean(values: Sequence[bool]) -> float:
 def study_table(rows: Sequence[Row]) -> str:
     """Return the figures as a Markdown table."""
     lines = [
-        "| family | benches | bound covers Γ | fit's own covariance covers | quantities covered | limits true "
-        "| mean limit ÷ sweep | sharpness |",
-        "|---|---|---|---|---|---|---|---|",
+        "| family | benches | bound covers Γ | fit's own covariance covers | quantities covered | device bound covers "
+        "| limits true | mean limit ÷ sweep | sharpness |",
+        "|---|---|---|---|---|---|---|---|---|",
     ]
     lines += [
         f"| {row.family} | {row.benches} | {100 * row.coverage:.1f} % | {100 * row.coverage_alone:.1f} % "
-        f"| {100 * row.quantities:.1f} % | {100 * row.limits_true:.1f} % | {row.limit:.2f} | {row.sharpness:.2f} |"
+        f"| {100 * row.quantities:.1f} % | {100 * row.devices:.1f} % | {100 * row.limits_true:.1f} % "
+        f"| {row.limit:.2f} | {row.sharpness:.2f} |"
         for row in rows
     ]
     failed = sum(row.failed for row in rows if row.family != ALL)

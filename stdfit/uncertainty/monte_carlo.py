@@ -217,7 +217,7 @@ class _Trial:
                 tail = np.sqrt(source.freedom / rng.chisquare(source.freedom, (count, 1)))
             shared = _complex_normal(rng, (count, bases[0].shape[1]))
             if isinstance(source, SharedSource):
-                numbers = tail * rng.standard_normal((count, source.vectors[0][0].shape[1]))
+                numbers = tail * rng.standard_normal((count, source.at_length(self.place)[0].shape[1]))
             for s, one in enumerate(problem.observed):
                 if isinstance(source, SmoothSource):
                     heights = shared if source.common else _complex_normal(rng, (count, bases[s].shape[1]))

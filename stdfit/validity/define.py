@@ -82,6 +82,9 @@ def define(settled: Settled) -> tuple[tuple[Definition, ...], tuple[str, ...], t
                     high=value + own_95,
                     role="at its bound" if i in settled.bounded else quantity.role,
                     of=names[i] if i in place else "",
+                    given=None
+                    if quantity.role != "given" or quantity.evidence_u is None
+                    else (quantity.value, quantity.evidence_u),
                 )
             )
         top_hz = float(one.frequency_hz[-1])
@@ -206,7 +209,7 @@ def _notes(
     if delay.value < -SMALLEST_DELAY_PS:
         notes.append(
             "the delay is negative: the reference plane of the readings lies behind this standard's own, which is "
-            "real where the analyser was calibrated with a kit whose planes lie further out"
+            "real where other standards, whose planes lie further out, have set it"
         )
     if by_name["offset_loss_gohm_per_s"].role == "at its bound":
         notes.append(

@@ -10,6 +10,8 @@ from stdfit.base.errors import RequestError
 from stdfit.circuits.standard import reflection
 from stdfit.uncertainty.budget import Share, radius
 from stdfit.validity.limit import Limit
+from stdfit.validity.session import Session
+from stdfit.validity.thru import Thru
 
 
 @dataclass(frozen=True, slots=True)
@@ -25,6 +27,8 @@ class Fitted:
         "free", "given", "assumed", "held", "unused", or "at its bound".
     of : str
         Its name in the joint covariance, "standard.parameter"; empty where it is not part of it.
+    given : (float, float) or None
+        Value and standard uncertainty of the user's evidence, where the role is "given".
     """
 
     name: str
@@ -35,6 +39,7 @@ class Fitted:
     high: float
     role: str
     of: str
+    given: tuple[float, float] | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -79,6 +84,8 @@ class Definition:
     notes : tuple of str
     tried : tuple of (order, limit in Hz)
         How far each order that was tried would have been good, each over its own best range.
+    matings : int or None
+        How often it had been connected in all when it was read; None where nobody counted.
     """
 
     name: str
@@ -96,6 +103,7 @@ class Definition:
     limit: Limit
     notes: tuple[str, ...]
     tried: tuple[tuple[str, float], ...] = ()
+    matings: int | None = None
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "misfit_hz", frozen_float(self.misfit_hz))
@@ -125,6 +133,26 @@ class SourceFile:
     sha256: str
 
 
+@dataclass(frozen=True, slots=True)
+class Ancestor:
+    """A kit whose standards were the references of a kit, or of one of its ancestors.
+
+    Attributes
+    ----------
+    name, created : str
+        As in its kit file.
+    sha256 : str
+        Of its kit file.
+    of : str
+        SHA-256 of the ancestor that it was a reference of; empty where it was one of the kit's own.
+    """
+
+    name: str
+    created: str
+    sha256: str
+    of: str = ""
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Kit:
     """Everything that is known of a set of standards.
@@ -151,6 +179,16 @@ class Kit:
     warnings : tuple of str
     checks : tuple of str
         What a Monte Carlo check said, in words; empty where none was asked for.
+    ancestors : tuple of Ancestor
+        The kits that its uncertainty comes from; empty where the readings were corrected by the analyser.
+    thru : Thru or None
+        A determined adapter that serves as its thru.
+    measured : str
+        When the readings were taken, as the bench file says; empty where it does not.
+    calibration : str
+        The user's words for the correction of the analyser: the same words, the same errors. Empty for none.
+    session : Session or None
+        The mean readings, for comparison with those of another day; None where they were not kept.
     """
 
     name: str
@@ -168,6 +206,11 @@ class Kit:
     files: tuple[SourceFile, ...]
     warnings: tuple[str, ...]
     checks: tuple[str, ...] = ()
+    ancestors: tuple[Ancestor, ...] = ()
+    thru: Thru | None = None
+    measured: str = ""
+    calibration: str = ""
+    session: Session | None = None
 
     def definition(self, name: str) -> Definition:
         """Return the definition of that name.

@@ -1,5 +1,6 @@
 """Does a kit that was read make sense? Whatever passes can be shown, drawn and compared without a fault."""
 
+import re
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -10,10 +11,19 @@ from stdfit.base.errors import KitError
 from stdfit.circuits.standard import PARAMETERS
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Definition, Kit, curve
+from stdfit.validity.limits import limits
+from stdfit.validity.thru import line_faults
+from stdfit.writing.session_file import session_faults
 
 MEND = "take the file as stdfit wrote it"
 
+FURTHER = 1.1
+"""A limit further than the rest of the file makes it by more than this was not written by the program; versions of it
+may differ a little in where they look."""
+
 ROLES = ("free", "given", "assumed", "held", "unused", "at its bound")
+
+_SHA256 = re.compile(r"[0-9a-f]{64}")
 
 ABOVE = 1.0 + 1e-12
 """Limits may exceed the last reading by rounding."""
@@ -53,7 +63,17 @@ def checked(kit: Kit, path: Path | str) -> Kit:
     KitError
         With the key of what cannot be.
     """
-    for faults in (_whole(kit), _covariances(kit), _definitions(kit), _limits(kit), _curves(kit)):
+    for faults in (
+        _whole(kit),
+        _covariances(kit),
+        _definitions(kit),
+        _limits(kit),
+        _curves(kit),
+        _ancestors(kit),
+        _thru(kit),
+        session_faults(kit),
+        _limits_again(kit),
+    ):
         for key, what in faults:
             raise KitError(what, MEND, file=path, key=key)
     return kit
@@ -67,7 +87,7 @@ def _whole(kit: Kit) -> Faults:
         yield "standard", "two standards have the same name"
     if len(set(kit.order)) != len(kit.order):
         yield "covariance.order", "a quantity is named twice"
-    if not kit.shares:
+    if kit.order and not kit.shares:
         yield "source", "the kit holds no source of uncertainty"
     if not np.isfinite(kit.reference_ohm):
         yield "kit.reference_impedance_ohm", "not a finite number"
@@ -119,6 +139,8 @@ def _parameters(definition: Definition, order: tuple[str, ...], key: str) -> Fau
             yield own, f"a value of {parameter.name} is not a finite number"
         if not parameter.low <= parameter.value <= parameter.high:
             yield own, f"{parameter.name} lies outside its own 95 % interval"
+        if parameter.given is not None and not np.isfinite(parameter.given).all():
+            yield f"{own}.given_value", "not a finite number"
         if parameter.role not in ROLES:
             yield f"{own}.role", f"no role; there are {', '.join(ROLES)}"
         if parameter.of and parameter.of not in order:
@@ -162,6 +184,36 @@ def _limits(kit: Kit) -> Faults:
             yield f"ladder[{k}].standard_limits_hz", "one limit for each standard is needed"
         if not np.isfinite([rung.within, rung.kit_hz, *rung.standards_hz]).all():
             yield f"ladder[{k}]", "a value is not a finite number"
+
+
+def _limits_again(kit: Kit) -> Faults:
+    """No limit may lie further than bounds and misfits make it: somebody would trust the kit there."""
+    ((whole, each),) = limits(kit, [kit.within])
+    for s, (definition, again) in enumerate(zip(kit.definitions, each, strict=True)):
+        if definition.limit.limit_hz > FURTHER * again.limit_hz:
+            yield f"standard[{s}].limit_hz", f"the bound allows no limit above {again.limit_hz:.4g} Hz"
+    if kit.limit.limit_hz > FURTHER * whole.limit_hz:
+        yield "kit.limit_hz", f"the bounds allow no limit above {whole.limit_hz:.4g} Hz"
+
+
+def _ancestors(kit: Kit) -> Faults:
+    """Every ancestor but the kit's own references was a reference of one that stands before it: so no rings."""
+    before: set[str] = set()
+    for k, one in enumerate(kit.ancestors):
+        if not _SHA256.fullmatch(one.sha256):
+            yield f"ancestor[{k}].sha256", "no SHA-256: 64 digits 0 … 9, a … f are needed"
+        if one.of and one.of not in before:
+            yield f"ancestor[{k}].of", "not the SHA-256 of an ancestor that stands before it"
+        before.add(one.sha256)
+
+
+def _thru(kit: Kit) -> Faults:
+    if kit.thru is None:
+        return
+    if not _SHA256.fullmatch(kit.thru.sha256):
+        yield "thru.sha256", "no SHA-256: 64 digits 0 … 9, a … f are needed"
+    for name, what in line_faults(kit.thru.line):
+        yield f"thru.{name}", what
 
 
 def _curves(kit: Kit) -> Faults:

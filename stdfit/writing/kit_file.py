@@ -8,6 +8,9 @@ import tomlkit
 
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Combination, Definition, Fitted, Kit
+from stdfit.writing.adapter_file import line_table
+from stdfit.writing.session_file import session_table
+from stdfit.writing.toml_tables import rows_below_each_other, table_of, tables_of
 
 FORMAT = "stdfit-kit/1"
 
@@ -23,11 +26,13 @@ def kit_text(kit: Kit) -> str:
     document.add("format", tomlkit.item(FORMAT))
     document.add(
         "kit",
-        _table(
+        table_of(
             name=kit.name,
             connector=kit.connector,
             reference_impedance_ohm=kit.reference_ohm,
             created=kit.created,
+            **({"measured": kit.measured} if kit.measured else {}),
+            **({"calibration": kit.calibration} if kit.calibration else {}),
             program_version=kit.version,
             within=kit.within,
             limit_hz=kit.limit.limit_hz,
@@ -37,51 +42,42 @@ def kit_text(kit: Kit) -> str:
             checks=list(kit.checks),
         ),
     )
-    document.add("standard", _tables(_standard(definition) for definition in kit.definitions))
+    document.add("standard", tables_of(_standard(definition) for definition in kit.definitions))
     document.add(
         "ladder",
-        _tables(
-            _table(within=rung.within, kit_limit_hz=rung.kit_hz, standard_limits_hz=list(rung.standards_hz))
+        tables_of(
+            table_of(within=rung.within, kit_limit_hz=rung.kit_hz, standard_limits_hz=list(rung.standards_hz))
             for rung in kit.ladder
         ),
     )
-    document.add("covariance", _table(order=list(kit.order)))
-    document.add("source", _tables(_source(share) for share in kit.shares))
+    document.add("covariance", table_of(order=list(kit.order)))
+    document.add("source", tables_of(_source(share) for share in kit.shares))
     document.add(
-        "file", _tables(_table(standard=one.standard, name=one.file, sha256=one.sha256) for one in kit.files)
+        "file",
+        tables_of(table_of(standard=one.standard, name=one.file, sha256=one.sha256) for one in kit.files),
     )
+    if kit.ancestors:
+        document.add(
+            "ancestor",
+            tables_of(
+                table_of(name=one.name, created=one.created, sha256=one.sha256, of=one.of)
+                for one in kit.ancestors
+            ),
+        )
+    if kit.thru is not None:
+        document.add("thru", line_table(kit.thru.line, name=kit.thru.name, sha256=kit.thru.sha256))
+    if kit.session is not None:
+        document.add("session", session_table(kit.session))
     return tomlkit.dumps(document)
 
 
-def _table(**values: Any) -> Any:
-    table = tomlkit.table()
-    for key, value in values.items():
-        table.add(key, _printable(value))
-    return table
-
-
-def _printable(value: Any) -> Any:
-    """Return texts without characters that the reader refuses; a file of readings may have any name."""
-    if isinstance(value, str):
-        return "".join(letter if letter.isprintable() else "\N{REPLACEMENT CHARACTER}" for letter in value)
-    if isinstance(value, list) and all(isinstance(item, str) for item in value):
-        return [_printable(item) for item in value]
-    return value
-
-
-def _tables(items: Any) -> Any:
-    tables = tomlkit.aot()
-    for item in items:
-        tables.append(item)
-    return tables
-
-
 def _standard(definition: Definition) -> Any:
-    table = _table(
+    table = table_of(
         name=definition.name,
         kind=definition.kind,
         order=definition.shape,
         connections=definition.connections,
+        **({} if definition.matings is None else {"matings": definition.matings}),
         read_from_hz=definition.read_low_hz,
         read_to_hz=definition.read_top_hz,
         fit_from_hz=definition.fit_low_hz,
@@ -92,18 +88,18 @@ def _standard(definition: Definition) -> Any:
         orders_limit_hz=[limit_hz for _, limit_hz in definition.tried],
         notes=list(definition.notes),
     )
-    table.add("parameter", _tables(_parameter(one) for one in definition.parameters))
+    table.add("parameter", tables_of(_parameter(one) for one in definition.parameters))
     if definition.combinations:
-        table.add("combination", _tables(_combination(one) for one in definition.combinations))
+        table.add("combination", tables_of(_combination(one) for one in definition.combinations))
     table.add(
         "misfit",
-        _table(frequency_hz=definition.misfit_hz.tolist(), bound=definition.misfit.tolist()),
+        table_of(frequency_hz=definition.misfit_hz.tolist(), bound=definition.misfit.tolist()),
     )
     return table
 
 
 def _parameter(one: Fitted) -> Any:
-    return _table(
+    return table_of(
         name=one.name,
         value=one.value,
         unit=one.unit,
@@ -112,11 +108,12 @@ def _parameter(one: Fitted) -> Any:
         high_95=one.high,
         role=one.role,
         covariance_name=one.of,
+        **({} if one.given is None else {"given_value": one.given[0], "given_u": one.given[1]}),
     )
 
 
 def _combination(one: Combination) -> Any:
-    return _table(
+    return table_of(
         label=one.label,
         value=one.value,
         unit=one.unit,
@@ -129,11 +126,11 @@ def _combination(one: Combination) -> Any:
 
 def _source(share: Share) -> Any:
     """Return a source's covariance as lower triangles, one for each correlation length."""
-    triangles = tomlkit.array()
-    for covariance in share.covariances:
-        triangles.append([float(covariance[i, j]) for i in range(covariance.shape[0]) for j in range(i + 1)])
-    triangles.multiline(True)
-    return _table(
+    triangles = rows_below_each_other(
+        [float(covariance[i, j]) for i in range(covariance.shape[0]) for j in range(i + 1)]
+        for covariance in share.covariances
+    )
+    return table_of(
         name=share.name,
         degrees_of_freedom=share.freedom,
         lower_triangles=triangles,

@@ -1,6 +1,5 @@
 """Kit files read back: decoded strictly, then handed to `kit_checks`."""
 
-import re
 import stat
 import tomllib
 from pathlib import Path
@@ -10,12 +9,16 @@ import msgspec
 import numpy as np
 
 from stdfit.base.errors import KitError
-from stdfit.data.words import quoted, suggestion
+from stdfit.data.words import quoted
 from stdfit.uncertainty.budget import Share
-from stdfit.validity.kit import Combination, Definition, Fitted, Kit, Rung, SourceFile
+from stdfit.validity.kit import Ancestor, Combination, Definition, Fitted, Kit, Rung, SourceFile
 from stdfit.validity.limit import Limit
+from stdfit.validity.thru import LINE_TERMS, LineTerm, Thru
+from stdfit.writing.decoding import decoder_fault
 from stdfit.writing.kit_checks import checked, refuse_control_characters
 from stdfit.writing.kit_file import FORMAT, rows_of, triangle_size
+from stdfit.writing.session_file import MeanTable, SessionTable, session_from
+from stdfit.writing.sheet_reading import looks_like_a_sheet, parse_sheet
 
 LARGEST_BYTES = 32 * 2**20
 
@@ -39,6 +42,8 @@ class _Head(_Strict):
     connector_top_hz: Size
     warnings: list[str]
     checks: list[str] = []
+    measured: str = ""
+    calibration: str = ""
 
 
 class _Parameter(_Strict):
@@ -50,6 +55,8 @@ class _Parameter(_Strict):
     high_95: float
     role: str
     covariance_name: str
+    given_value: float | None = None
+    given_u: Annotated[float, msgspec.Meta(gt=0.0)] | None = None
 
 
 class _Combination(_Strict):
@@ -84,6 +91,7 @@ class _Standard(_Strict):
     orders_tried: list[str] = []
     orders_limit_hz: list[Size] = []
     combination: list[_Combination] = []
+    matings: Annotated[int, msgspec.Meta(ge=0, le=10**9)] | None = None
 
 
 class _Rung(_Strict):
@@ -108,6 +116,28 @@ class _File(_Strict):
     sha256: str
 
 
+class _Ancestor(_Strict):
+    name: str
+    created: str
+    sha256: str
+    of: str
+
+
+class _Term(_Strict):
+    value: float
+    u: Size
+    low_95: float
+    high_95: float
+
+
+class _Thru(_Strict):
+    name: str
+    sha256: str
+    delay_ps: _Term
+    loss_gohm_per_s: _Term
+    z0_ohm: _Term
+
+
 class _Whole(_Strict):
     format: str
     kit: _Head
@@ -116,9 +146,12 @@ class _Whole(_Strict):
     ladder: list[_Rung] = []
     source: list[_Source] = []
     file: list[_File] = []
+    ancestor: list[_Ancestor] = []
+    thru: _Thru | None = None
+    session: SessionTable | None = None
 
 
-_FIELDS: dict[str, type[_Strict]] = {
+_FIELDS: dict[str, type[msgspec.Struct]] = {
     "kit": _Head,
     "standard": _Standard,
     "parameter": _Parameter,
@@ -128,24 +161,17 @@ _FIELDS: dict[str, type[_Strict]] = {
     "covariance": _Covariance,
     "source": _Source,
     "file": _File,
+    "ancestor": _Ancestor,
+    "thru": _Thru,
+    "session": SessionTable,
+    "mean": MeanTable,
+    **dict.fromkeys((name for name, _ in LINE_TERMS), _Term),
 }
 """The tables by the last part of their key."""
 
-_IN_WORDS = {
-    "float": "a number",
-    "int": "a whole number",
-    "str": "text",
-    "array": "a list",
-    "object": "a table",
-    "bool": "true or false",
-    "date": "a date",
-    "datetime": "a date",
-    "time": "a time",
-}
-
 
 def read_kit(path: Path | str) -> Kit:
-    """Return the kit of a kit file.
+    """Return the kit of a kit file, or the kit as it is typed from the JSON of an entry sheet.
 
     Raises
     ------
@@ -167,7 +193,7 @@ def read_kit(path: Path | str) -> Kit:
     except (OSError, ValueError) as fault:
         why = getattr(fault, "strerror", None) or "not a possible file name"
         raise KitError(f"cannot be read: {why}", "check the path", file=repr(str(path))[1:-1]) from fault
-    return parse_kit(text, path)
+    return parse_sheet(text, path) if looks_like_a_sheet(text) else parse_kit(text, path)
 
 
 def parse_kit(text: str, path: Path | str) -> Kit:
@@ -195,23 +221,9 @@ def parse_kit(text: str, path: Path | str) -> Kit:
     try:
         whole = msgspec.convert(values, _Whole)
     except msgspec.ValidationError as fault:
-        raise _fault(str(fault), path) from fault
+        raise decoder_fault(str(fault), path, _FIELDS, _Whole) from fault
     refuse_control_characters(values, path)
     return checked(_kit(whole, path), path)
-
-
-def _fault(message: str, path: Path | str) -> KitError:
-    """Turn a decoder's message into one with key and nearest valid key."""
-    what, _, where = message.rpartition(" - at `$")
-    what, where = (what, where.rstrip("`").lstrip(".")) if what else (message, "")
-    unknown = re.fullmatch("Object contains unknown field `(.*)`", what, re.DOTALL)
-    if unknown is not None:
-        table = re.sub(r"\[[^]]*\]", "", where).split(".")[-1]
-        known = _FIELDS.get(table, _Whole).__struct_fields__
-        key = ".".join(part for part in (where, quoted(unknown[1])[1:-1]) if part)
-        return KitError("unknown key", suggestion(unknown[1], known), file=path, key=key)
-    what = re.sub("`([a-z]+)`", lambda word: _IN_WORDS.get(word[1], word[0]), what[:1].lower() + what[1:])
-    return KitError(what, "take the file as stdfit wrote it", file=path, key=where or None)
 
 
 def _kit(whole: _Whole, path: Path | str) -> Kit:
@@ -250,7 +262,20 @@ def _kit(whole: _Whole, path: Path | str) -> Kit:
         files=tuple(SourceFile(one.standard, one.name, one.sha256) for one in whole.file),
         warnings=tuple(head.warnings),
         checks=tuple(head.checks),
+        ancestors=tuple(Ancestor(one.name, one.created, one.sha256, one.of) for one in whole.ancestor),
+        thru=None if whole.thru is None else _thru(whole.thru),
+        measured=head.measured,
+        calibration=head.calibration,
+        session=None if whole.session is None else session_from(whole.session),
     )
+
+
+def _thru(one: _Thru) -> Thru:
+    delay, loss, z0 = (
+        LineTerm(term.value, term.u, term.low_95, term.high_95)
+        for term in (one.delay_ps, one.loss_gohm_per_s, one.z0_ohm)
+    )
+    return Thru(one.name, (delay, loss, z0), one.sha256)
 
 
 def _definition(one: _Standard, within: float, path: Path | str) -> Definition:
@@ -261,6 +286,14 @@ def _definition(one: _Standard, within: float, path: Path | str) -> Definition:
             file=path,
             key=f"standard '{one.name}'.orders_tried",
         )
+    for place, own in enumerate(one.parameter):
+        if (own.given_value is None) != (own.given_u is None):
+            raise KitError(
+                "given_value and given_u stand together or not at all",
+                "take the file as stdfit wrote it",
+                file=path,
+                key=f"standard '{one.name}'.parameter[{place}].given_value",
+            )
     return Definition(
         name=one.name,
         kind=one.kind,
@@ -271,7 +304,10 @@ def _definition(one: _Standard, within: float, path: Path | str) -> Definition:
         fit_low_hz=one.fit_from_hz,
         fit_top_hz=one.fit_to_hz,
         parameters=tuple(
-            Fitted(p.name, p.unit, p.value, p.u, p.low_95, p.high_95, p.role, p.covariance_name)
+            Fitted(
+                *(p.name, p.unit, p.value, p.u, p.low_95, p.high_95, p.role, p.covariance_name),
+                given=None if p.given_value is None or p.given_u is None else (p.given_value, p.given_u),
+            )
             for p in one.parameter
         ),
         combinations=tuple(
@@ -283,4 +319,5 @@ def _definition(one: _Standard, within: float, path: Path | str) -> Definition:
         limit=Limit(within, one.limit_hz, one.limit_reason),
         notes=tuple(one.notes),
         tried=tuple(zip(one.orders_tried, one.orders_limit_hz, strict=True)),
+        matings=one.matings,
     )

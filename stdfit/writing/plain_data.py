@@ -8,6 +8,7 @@ import numpy as np
 from stdfit.base.arrays import FloatArray
 from stdfit.validity.kit import Kit, curve
 from stdfit.validity.limit import Limit
+from stdfit.writing.adapter_words import line_data
 
 
 def kit_data(kit: Kit) -> dict[str, Any]:
@@ -70,6 +71,13 @@ def kit_data(kit: Kit) -> dict[str, Any]:
         ],
         "warnings": list(kit.warnings),
         "checks": list(kit.checks),
+        "ancestors": [
+            {"name": one.name, "created": one.created, "sha256": one.sha256, "of": one.of}
+            for one in kit.ancestors
+        ],
+        "thru": None
+        if kit.thru is None
+        else {"name": kit.thru.name, "sha256": kit.thru.sha256, **line_data(kit.thru.line)},
     }
 
 

@@ -99,7 +99,9 @@ class Loft:
             own, parameters=tuple(replace(p, of=p.of.replace("open.", "cap.")) for p in own.parameters)
         )
         rest = tuple(one for one in self.kit.definitions if one.kind != "open")
-        other = replace(self.kit, name="Other set", definitions=(own, *rest), order=order, files=())
+        other = replace(
+            self.kit, name="Other set", definitions=(own, *rest), order=order, files=(), session=None
+        )
         (self.folder / "other.toml").write_text(kit_text(other), encoding="utf-8")
 
     def bench(self, *parts, state="raw"):

@@ -10,6 +10,7 @@ import numpy as np
 import pytest
 
 from stdfit.cli import main
+from stdfit.pipeline import with_limits
 from stdfit.validity.kit import curve
 from stdfit.writing.kit_file import kit_text
 from stdfit.writing.kit_reading import read_kit
@@ -37,7 +38,10 @@ def other_file(kit_file, tmp_path):
     )
     changed = (replace(first, name="cap"), second, replace(load, parameters=higher))
     path = tmp_path / "other.toml"
-    path.write_text(kit_text(replace(kit, name="Other set", definitions=changed, files=())), encoding="utf-8")
+    path.write_text(
+        kit_text(replace(kit, name="Other set", definitions=changed, files=(), session=None)),
+        encoding="utf-8",
+    )
     return path
 
 
@@ -135,7 +139,8 @@ def test_without_a_bound_there_is_no_ratio(kit_file, tmp_path, capsys):
 )
 def test_what_cannot_be_compared(kit_file, tmp_path, capsys, change, words):
     path = tmp_path / "other.toml"
-    path.write_text(kit_text(replace(read_kit(kit_file), **change)), encoding="utf-8")
+    other = with_limits(replace(read_kit(kit_file), session=None, **change))
+    path.write_text(kit_text(other), encoding="utf-8")
     assert main(["compare", str(kit_file), str(path)]) == 2
     out, err = capsys.readouterr()
     assert out == ""

@@ -4,9 +4,12 @@ The kit that corrected them had offsets of its own, so the reference plane lies 
 about +1.7 ps, the short about −0.5 ps, and the load's |Γ| rises from about 0.007 at 1 GHz to 0.023 at 8 GHz.
 """
 
+import cmath
 import csv
 import io
 import json
+import math
+import re
 import shutil
 from pathlib import Path
 
@@ -91,3 +94,27 @@ def test_the_load_rises_to_what_was_read(measured, command):
 def test_what_had_to_be_assumed_is_told(measured):
     assert "one connection" in measured[1].stderr
     assert all(line.startswith("stdfit: warning: ") for line in measured[1].stderr.splitlines())
+
+
+def test_what_ideal_standards_would_have_cost_is_told_in_one_line(measured, command):
+    """A device equal to the open or short is shown wrong by what that standard is off; no passive device by more than
+    the three together with weights of at most 1, 1 and 2."""
+    out = command(measured[0], "show", "kit.toml").stdout
+    (line,) = [one for one in out.splitlines() if "typed in as ideal" in one]
+    told, with_values = line.split("; with these values by at most ")
+    cost = {float(ghz): float(value) for value, ghz in re.findall(r"([\d.]+) at ([\d.]+) GHz", told)}
+    assert list(cost) == [1.0, 3.0, 6.0]
+    for (ghz, value), bound in zip(cost.items(), with_values.split(", "), strict=True):
+        off = [abs(read_at(name, ghz) - ideal) for name, ideal in (("open", 1), ("short", -1), ("load", 0))]
+        assert max(off[:2]) - float(bound) <= value <= off[0] + off[1] + 2.0 * off[2] + float(bound)
+        assert value > float(bound)
+
+
+def read_at(name, ghz):
+    """Return the reading nearest to a frequency, from the file itself."""
+    text = (READINGS / f"{name}.s1p").read_text(encoding="utf-8")
+    (options,) = [line.split() for line in text.splitlines() if line.startswith("#")]
+    assert [one.upper() for one in options[1:4]] == ["HZ", "S", "DB"]
+    rows = [line.split() for line in text.splitlines() if line[:1].isdigit()]
+    nearest = min(rows, key=lambda row: abs(float(row[0]) - 1e9 * ghz))
+    return cmath.rect(10.0 ** (float(nearest[1]) / 20.0), math.radians(float(nearest[2])))

@@ -12,9 +12,20 @@ from stdfit.cli import main
 from stdfit.data.bench import read_bench
 from stdfit.trials import demo_scenario, draw_bench, families, write_bench
 from stdfit.trials import study as study_module
+from stdfit.trials.devices import devices_inside
 from stdfit.trials.like import scenario_like
 from stdfit.trials.score import Score
-from stdfit.trials.study import DEMO, NOT_STATED, family_table, row_of, run, study_data, study_table, trial
+from stdfit.trials.study import (
+    DEMO,
+    NOT_STATED,
+    Trial,
+    family_table,
+    row_of,
+    run,
+    study_data,
+    study_table,
+    trial,
+)
 
 
 @pytest.fixture(scope="module")
@@ -79,12 +90,13 @@ def one_score(error, bound, alone, quantities, limit, limit_true):
 def test_figures_of_a_tiny_case_worked_out_by_hand():
     first = one_score([1.0, 3.0, 1.0, 1.0], [2.0] * 4, [0.5] * 4, (True,), 0.5, True)
     second = one_score([1.0, 1.0, 1.0, 1.0], [2.0] * 4, [1.0] * 4, (False, True), 0.7, False)
-    row = row_of("invented", [[first, second], [first], None])
+    row = row_of("invented", [Trial((first, second), 1.0), Trial((first,), 0.5), None])
     assert (row.family, row.benches, row.failed) == ("invented", 3, 1)
     # Three curves: 3/4, 4/4 and 3/4 of the points inside; 0, 4/4 and 0 for the plain covariance.
     assert row.coverage == pytest.approx(2.5 / 3.0)
     assert row.coverage_alone == pytest.approx(1.0 / 3.0)
     assert row.quantities == pytest.approx(3.0 / 4.0)
+    assert row.devices == pytest.approx(0.75)
     assert row.limits_true == pytest.approx(1.0 / 2.0)
     assert row.limit == pytest.approx(1.7 / 3.0)
     # Of 12 errors two are 3 and ten are 1: the 95 % quantile lies between the two largest.
@@ -110,7 +122,9 @@ def trial_of_first():
     rng = np.random.default_rng([study_module.zlib.crc32(b"few points"), 3, 0])
     from stdfit.trials.score import score
 
-    return score(draw_bench(families()["few points"](rng), rng))[1]
+    simulated = draw_bench(families()["few points"](rng), rng)
+    kit, scores = score(simulated)
+    return Trial(tuple(scores), devices_inside(kit, simulated, rng))
 
 
 def test_nothing_but_failures_is_told_and_is_valid_json(monkeypatch, capsys):

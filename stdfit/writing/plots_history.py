@@ -1,0 +1,75 @@
+"""A history as a picture: one panel for each value, the same bytes every time."""
+
+import io
+from pathlib import Path
+
+import numpy as np
+from matplotlib import rc_context
+from matplotlib.artist import Artist
+from matplotlib.axes import Axes
+from matplotlib.backends.backend_svg import FigureCanvasSVG
+from matplotlib.figure import Figure
+
+from stdfit.base.arrays import FloatArray
+from stdfit.validity.history import Course, History
+from stdfit.validity.history_kits import MATING
+from stdfit.validity.trend import SAME, STEP
+
+TITLE = "stdfit history"
+"""Stands in the file, so that only such files are overwritten."""
+
+PANEL_INCHES = (7.0, 2.6)
+
+
+def history_svg(found: History) -> str:
+    """Return the picture of a history as SVG text."""
+    count = len(found.courses)
+    with rc_context({"svg.hashsalt": TITLE, "svg.fonttype": "path", "font.size": 9.0}):
+        figure = Figure(figsize=(PANEL_INCHES[0], PANEL_INCHES[1] * count), layout="constrained")
+        FigureCanvasSVG(figure)
+        for axes, course in zip(np.ravel(figure.subplots(count, 1)), found.courses, strict=True):
+            draw_course(axes, course)
+        stream = io.StringIO()
+        figure.savefig(stream, format="svg", metadata={"Title": TITLE, "Date": None, "Creator": None})
+    return stream.getvalue()
+
+
+def draw_course(axes: Axes, course: Course) -> list[Artist]:
+    """Draw values with their bounds, thick bars for what is each kit's own, and what was made of them."""
+    x = np.array([point.x for point in course.points])
+    value = np.array([point.value for point in course.points])
+    ends = np.array([[point.value - point.low, point.high - point.value] for point in course.points]).T
+    own = np.array([point.own_u95 for point in course.points])
+    artists: list[Artist] = [
+        *axes.errorbar(x, value, yerr=ends, fmt="none", ecolor="0.75", capsize=2.0).get_children(),
+        *axes.errorbar(
+            x, value, yerr=own, fmt="o", color="C0", elinewidth=2.5, markersize=4.0
+        ).get_children(),
+        *axes.plot(*_described(course, x, value), color="C1", linewidth=1.2),
+    ]
+    axes.set_title(f"{course.standard}: {course.label} ({course.trend.verdict})", loc="left")
+    axes.set_xlabel("matings" if course.per == MATING else "months since the first kit")
+    axes.set_ylabel(course.unit)
+    axes.grid(visible=True, color="0.92")
+    return artists
+
+
+def is_history_svg(path: Path) -> bool:
+    """Return whether a file says of itself that it is a picture of a history."""
+    try:
+        return path.is_file() and f"<dc:title>{TITLE}</dc:title>".encode() in path.read_bytes()[:8192]
+    except OSError:
+        return False
+
+
+def _described(course: Course, x: FloatArray, value: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Return the line or the step that is drawn: through the middle of the values."""
+    trend, middle = course.trend, float(value.mean())
+    if trend.verdict == STEP and trend.after is not None and trend.step is not None:
+        cut = trend.after + 1
+        edge = 0.5 * (x[cut - 1] + x[cut])
+        before = middle - trend.step.value * (x.size - cut) / x.size
+        behind = before + trend.step.value
+        return np.array([x[0], edge, edge, x[-1]]), np.array([before, before, behind, behind])
+    slope = 0.0 if trend.verdict == SAME else trend.slope.value
+    return x, np.asarray(middle + slope * (x - x.mean()))
