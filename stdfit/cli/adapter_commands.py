@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 def adapter(asked: argparse.Namespace) -> int:
     """Determine an adapter from known standards behind it."""
     from stdfit.data.bench import read_bench
-    from stdfit.pipeline.adapter_determined import determine_adapter
+    from stdfit.pipeline.adapters.determined import determine_adapter
     from stdfit.writing.adapter_file import adapter_text
     from stdfit.writing.adapter_touchstone import adapter_touchstone
     from stdfit.writing.adapter_words import adapter_data, adapter_summary

@@ -15,7 +15,7 @@ def check(asked: argparse.Namespace) -> int:
     """Say whether a kit agrees with devices that it was not made from."""
     from stdfit.base.errors import RequestError
     from stdfit.pipeline.checking import check_kit
-    from stdfit.validity.check import FAILS, SILENT
+    from stdfit.validity.device.check import FAILS, SILENT
     from stdfit.writing.check_text import COLUMNS, check_data, check_rows, check_text
 
     if asked.csv and asked.json:

@@ -14,8 +14,8 @@ if TYPE_CHECKING:
 def sheet(asked: argparse.Namespace) -> int:
     """Print the entry sheet of a kit."""
     from stdfit.base.errors import RequestError
-    from stdfit.validity.entry_sheet import Wanted, entry_sheet
-    from stdfit.validity.entry_units import units_from
+    from stdfit.validity.entry.sheet import Wanted, entry_sheet
+    from stdfit.validity.entry.units import units_from
     from stdfit.writing.kit_reading import read_kit
     from stdfit.writing.sheet_data import COLUMNS, sheet_data, sheet_rows
     from stdfit.writing.sheet_text import sheet_text

@@ -16,7 +16,7 @@ def history(asked: argparse.Namespace) -> int:
     """Say what has become of standards over the kits of a folder."""
     from stdfit.base.errors import RequestError
     from stdfit.pipeline.history_folder import find_kits
-    from stdfit.validity.history import history
+    from stdfit.validity.change.history import history
     from stdfit.writing.history_text import COLUMNS, history_data, history_rows, history_text
 
     if asked.csv and asked.json:

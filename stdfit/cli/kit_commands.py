@@ -45,7 +45,7 @@ def curve(asked: argparse.Namespace) -> int:
 def limit(asked: argparse.Namespace) -> int:
     """Print limits and reasons."""
     from stdfit.base.errors import RequestError
-    from stdfit.validity.device_limits import answers, impedance_within, phase_within, return_loss_within
+    from stdfit.validity.device.questions import answers, impedance_within, phase_within, return_loss_within
     from stdfit.validity.limits import limits
     from stdfit.writing.device_text import answer_data, answer_lines
     from stdfit.writing.kit_reading import read_kit
@@ -81,7 +81,7 @@ def device(asked: argparse.Namespace) -> int:
     import numpy as np
 
     from stdfit.base.errors import RequestError
-    from stdfit.validity.device import common_top, device_map, three_of
+    from stdfit.validity.device.bound import common_top, device_map, three_of
     from stdfit.writing.device_text import TABLE_GHZ, device_data, device_rows, device_text, round_frequencies
     from stdfit.writing.kit_reading import read_kit
 

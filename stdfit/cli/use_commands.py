@@ -76,8 +76,8 @@ def compare(asked: argparse.Namespace) -> int:
     from pathlib import Path
 
     from stdfit.base.errors import RequestError
-    from stdfit.validity.compare import compare
-    from stdfit.validity.pairing import ideal_like
+    from stdfit.validity.device.compare import compare
+    from stdfit.validity.device.pairing import ideal_like
     from stdfit.writing.compare_text import (
         COLUMNS,
         compare_data,

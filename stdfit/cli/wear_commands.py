@@ -15,7 +15,7 @@ def wear(asked: argparse.Namespace) -> int:
     """Say whether standards have changed, in what, and what the old definition is still good for."""
     from stdfit.base.errors import RequestError
     from stdfit.pipeline.wearing import wear_of
-    from stdfit.validity.wear import CHANGED
+    from stdfit.validity.change.wear import CHANGED
     from stdfit.writing.wear_text import COLUMNS, wear_data, wear_rows, wear_text
 
     if asked.csv and asked.json:

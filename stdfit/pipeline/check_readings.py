@@ -16,8 +16,8 @@ from stdfit.data.bench_records import DeviceEntry, StandardEntry
 from stdfit.data.readings import read_reading
 from stdfit.data.soundness import HIGHEST_MAGNITUDE
 from stdfit.data.verify import verify_standards
-from stdfit.validity.check import Mask
-from stdfit.validity.device import common_top, device_map, three_of
+from stdfit.validity.device.bound import common_top, device_map, three_of
+from stdfit.validity.device.check import Mask
 from stdfit.validity.kit import Definition, Kit
 
 FEWEST = 8

@@ -13,7 +13,7 @@ from stdfit.data.bench import Bench, read_bench
 from stdfit.data.bench_records import DeviceEntry
 from stdfit.data.readings import read_reading
 from stdfit.fitting.screen import screen_points
-from stdfit.pipeline.adapter_brought import refuse_adapters
+from stdfit.pipeline.adapters.brought import refuse_adapters
 from stdfit.pipeline.check_readings import (
     FEWEST,
     check_sweeps,
@@ -23,12 +23,12 @@ from stdfit.pipeline.check_readings import (
     standards_of,
     usable_frequencies,
 )
-from stdfit.validity.check import Check, Finding, Mask, by_physics, compared
-from stdfit.validity.check_day import Day, Stack, correct_day, device_uncertainty
-from stdfit.validity.check_value import Value, given_value, value_from_file, value_from_kit
-from stdfit.validity.device import device_map
+from stdfit.validity.device.bound import device_map
+from stdfit.validity.device.check import Check, Finding, Mask, by_physics, compared
+from stdfit.validity.device.check_day import Day, Stack, correct_day, device_uncertainty
+from stdfit.validity.device.check_value import Value, given_value, value_from_file, value_from_kit
+from stdfit.validity.device.pairing import shared
 from stdfit.validity.kit import Kit
-from stdfit.validity.pairing import shared
 from stdfit.writing.kit_reading import read_kit
 
 UNSURE = 2.0

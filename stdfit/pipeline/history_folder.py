@@ -4,7 +4,7 @@ import hashlib
 from pathlib import Path
 
 from stdfit.base.errors import KitError, RequestError
-from stdfit.validity.history_kits import Dated
+from stdfit.validity.change.history_kits import Dated
 from stdfit.writing.kit_file import is_kit_file
 from stdfit.writing.kit_reading import read_kit
 

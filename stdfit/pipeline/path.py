@@ -12,16 +12,16 @@ from stdfit.base.records import Sweep
 from stdfit.data.bench import Bench, read_bench
 from stdfit.data.readings import read_reading
 from stdfit.data.soundness import HIGHEST_MAGNITUDE
-from stdfit.pipeline.adapter_brought import refuse_behind
-from stdfit.pipeline.adapter_known import thru_of
+from stdfit.pipeline.adapters.brought import refuse_behind
+from stdfit.pipeline.adapters.known import thru_of
 from stdfit.pipeline.finished import finished, program_version, with_limits
-from stdfit.pipeline.inherited import never_surer
 from stdfit.pipeline.kept_readings import session_of
 from stdfit.pipeline.prepare import Prepared, prepare
-from stdfit.pipeline.referenced import prepare_referenced
-from stdfit.pipeline.references import FEWEST, count_references
+from stdfit.pipeline.raw.inherited import never_surer
+from stdfit.pipeline.raw.referenced import prepare_referenced
+from stdfit.pipeline.raw.references import FEWEST, count_references
+from stdfit.pipeline.raw.unreferenced import characterise_unreferenced
 from stdfit.pipeline.settle import choose_all, settle
-from stdfit.pipeline.unreferenced import characterise_unreferenced
 from stdfit.uncertainty.monte_carlo import compare_with_linear
 from stdfit.validity.define import Settled, define, given_contradictions
 from stdfit.validity.kit import Kit, SourceFile

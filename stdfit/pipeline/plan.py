@@ -8,10 +8,10 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray
 from stdfit.fitting.observed import Observed
 from stdfit.fitting.roles import Wish
-from stdfit.pipeline.adapter_acting import OF_ADAPTERS
+from stdfit.pipeline.adapters.acting import OF_ADAPTERS
 from stdfit.pipeline.path import kit_of
 from stdfit.pipeline.prepare import Prepared, sources_of
-from stdfit.pipeline.reference_remedies import OF_REFERENCES, with_reference_connections
+from stdfit.pipeline.raw.remedies import OF_REFERENCES, with_reference_connections
 from stdfit.pipeline.settle import choose_all, settle
 from stdfit.uncertainty.budget import radius
 from stdfit.uncertainty.sources import LumpedSource, SharedSource, SmoothSource, Source, WhiteSource

@@ -14,10 +14,10 @@ from stdfit.data.verify import verify_standards
 from stdfit.fitting.observed import Observed, noise_of, without_delay
 from stdfit.fitting.roles import Wish
 from stdfit.fitting.screen import screen_points
-from stdfit.pipeline.adapter_acting import adapter_sources_on, residual_sources
-from stdfit.pipeline.adapter_brought import brought, to_verify
-from stdfit.pipeline.adapter_known import adapter_ancestors, adapter_cautions
-from stdfit.pipeline.adapter_planes import NO_ADAPTERS, Planes, planes_of
+from stdfit.pipeline.adapters.acting import adapter_sources_on, residual_sources
+from stdfit.pipeline.adapters.brought import brought, to_verify
+from stdfit.pipeline.adapters.known import adapter_ancestors, adapter_cautions
+from stdfit.pipeline.adapters.planes import NO_ADAPTERS, Planes, planes_of
 from stdfit.uncertainty.connections import Repeatability, assumed_repeatability, pooled_repeatability
 from stdfit.uncertainty.outlying import without_outlying
 from stdfit.uncertainty.sources import Source, connection_sources

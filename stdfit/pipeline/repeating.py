@@ -10,7 +10,7 @@ from stdfit.circuits.connectors import family_of
 from stdfit.data.readings import read_reading
 from stdfit.data.repeat_file import RepeatEntry, RepeatFile, read_repeat_file
 from stdfit.data.verify import verify_standards
-from stdfit.validity.repeat_study import Repeats, repeats_of
+from stdfit.validity.change.repeat_study import Repeats, repeats_of
 
 
 def study_repeats(

@@ -6,9 +6,9 @@ from pathlib import Path
 from stdfit.base.errors import RequestError
 from stdfit.data.bench import BENCH_NAME, read_bench
 from stdfit.pipeline.path import fit_bench
+from stdfit.validity.change.refusals import refuse_words
+from stdfit.validity.change.wear import Wear, wear
 from stdfit.validity.kit import Kit
-from stdfit.validity.wear import Wear, wear
-from stdfit.validity.wear_refusals import refuse_words
 from stdfit.writing.kit_file import is_kit_file
 from stdfit.writing.kit_reading import read_kit
 

@@ -10,7 +10,7 @@ from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.records import Sweep
 from stdfit.data.bench_records import AdapterEntry, Bench, StandardEntry
 from stdfit.pipeline import characterise
-from stdfit.pipeline.adapter_determined import adapter_from
+from stdfit.pipeline.adapters.determined import adapter_from
 from stdfit.trials.analyser import draw_residuals, imperfect_correction
 from stdfit.trials.bench import SimulatedBench, draw_bench
 from stdfit.trials.elements import Element, LineSection, StepCapacitance

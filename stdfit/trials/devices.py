@@ -4,7 +4,7 @@ import numpy as np
 
 from stdfit.circuits.error_box import corrected, solve_error_box
 from stdfit.trials.score import Truth
-from stdfit.validity.device import device_bound, device_map, three_of
+from stdfit.validity.device.bound import device_bound, device_map, three_of
 from stdfit.validity.kit import Kit
 
 FREQUENCIES = 40

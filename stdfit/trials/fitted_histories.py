@@ -11,7 +11,7 @@ from stdfit.trials.bench import SimulatedBench, draw_bench
 from stdfit.trials.families import demo_scenario
 from stdfit.trials.score import bench_of
 from stdfit.trials.session import connect, draw_connections, draw_noise
-from stdfit.validity.history_kits import Dated
+from stdfit.validity.change.history_kits import Dated
 
 
 def draw_fitted_kits(

@@ -10,7 +10,7 @@ from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.records import Sweep
 from stdfit.data.bench_records import Bench, Given, StandardEntry
 from stdfit.pipeline import choose_all, kit_of, prepare, settle
-from stdfit.pipeline.unreferenced import eliminated
+from stdfit.pipeline.raw.unreferenced import eliminated
 from stdfit.trials.analyser import draw_residuals
 from stdfit.trials.bench import draw_bench, read_out
 from stdfit.trials.elements import LineSection, PinEnd, PlateEnd

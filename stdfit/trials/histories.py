@@ -9,9 +9,9 @@ import numpy as np
 from stdfit.base.arrays import FloatArray
 from stdfit.circuits.standard import reflection
 from stdfit.uncertainty.budget import Share
-from stdfit.validity.followed import weights_of_whole
-from stdfit.validity.history import Course, History, history
-from stdfit.validity.history_kits import Dated
+from stdfit.validity.change.followed import weights_of_whole
+from stdfit.validity.change.history import Course, History, history
+from stdfit.validity.change.history_kits import Dated
 from stdfit.validity.kit import Definition, Kit, total_covariance
 
 MATINGS = 20

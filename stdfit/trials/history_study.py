@@ -10,8 +10,8 @@ import numpy as np
 from stdfit.trials.fitted_histories import draw_fitted_kits
 from stdfit.trials.histories import Change, own_sd, study
 from stdfit.trials.repeats import study_sweeps, study_values
-from stdfit.validity.history import history
-from stdfit.validity.trend import DRIFT, EITHER, SAME, STEP
+from stdfit.validity.change.history import history
+from stdfit.validity.change.trend import DRIFT, EITHER, SAME, STEP
 from stdfit.writing.kit_reading import read_kit
 
 VERDICTS = (DRIFT, STEP, EITHER, SAME)

@@ -10,7 +10,7 @@ from stdfit.base.arrays import ComplexArray, FloatArray, frozen_complex
 from stdfit.base.records import Sweep
 from stdfit.data.bench_records import Bench, StandardEntry
 from stdfit.pipeline import Prepared, choose_all, kit_of, prepare, settle
-from stdfit.pipeline.referenced import prepare_referenced
+from stdfit.pipeline.raw.referenced import prepare_referenced
 from stdfit.trials.analyser import Residuals, StatedDecibels, draw_residuals, imperfect_correction
 from stdfit.trials.bench import Drawn, SimulatedBench, draw_bench, draw_evidence, draw_standards
 from stdfit.trials.parts import Part, reflection

@@ -13,8 +13,8 @@ from stdfit.trials.families import demo_scenario
 from stdfit.trials.parts import reflection
 from stdfit.trials.session import Connections, connect
 from stdfit.uncertainty.connections import responses
-from stdfit.validity.nested import Components, Design, components
-from stdfit.validity.repeat_study import repeats_of, seen_parts
+from stdfit.validity.change.nested import Components, Design, components
+from stdfit.validity.change.repeat_study import repeats_of, seen_parts
 
 SHIFT_PS, OHM, FARAD_FF = 0.15, 0.015, 0.9
 """Standard deviations of a connection: plane shift, series resistance, shunt capacitance."""

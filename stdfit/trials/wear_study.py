@@ -19,9 +19,9 @@ from stdfit.trials.families import demo_scenario, families
 from stdfit.trials.scenario import Scenario
 from stdfit.trials.score import bench_of
 from stdfit.trials.wear_pair import Worn, draw_pair
+from stdfit.validity.change.wear import CHANGED, SAME, Wear, wear
 from stdfit.validity.choose import Choice
 from stdfit.validity.kit import Kit
-from stdfit.validity.wear import CHANGED, SAME, Wear, wear
 
 CHANGES = (
     Worn("open", "plane shift", shift_ps=0.5),

@@ -3,7 +3,7 @@
 import math
 from typing import Any
 
-from stdfit.validity.check import AGREES, DOUBT, FAILS, Check, Finding
+from stdfit.validity.device.check import AGREES, DOUBT, FAILS, Check, Finding
 from stdfit.writing.aligned import aligned
 from stdfit.writing.numbers import frequency
 

@@ -7,8 +7,8 @@ from typing import Any
 import numpy as np
 
 from stdfit.base.arrays import FloatArray
-from stdfit.validity.compare import Comparison, differences_at
-from stdfit.validity.difference import Difference
+from stdfit.validity.device.compare import Comparison, differences_at
+from stdfit.validity.device.difference import Difference
 from stdfit.writing.aligned import aligned
 from stdfit.writing.device_text import TABLE_GHZ, round_frequencies
 from stdfit.writing.numbers import frequency

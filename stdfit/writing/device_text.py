@@ -7,9 +7,22 @@ import numpy as np
 
 from stdfit.base.arrays import FloatArray
 from stdfit.base.errors import RequestError
-from stdfit.validity.device import DeviceMap, by_magnitude, common_top, device_map, residual_terms, three_of
-from stdfit.validity.device_limits import Answer, answers, impedance_within, phase_within, return_loss_within
-from stdfit.validity.ideal import cost_of_ideal
+from stdfit.validity.device.bound import (
+    DeviceMap,
+    by_magnitude,
+    common_top,
+    device_map,
+    residual_terms,
+    three_of,
+)
+from stdfit.validity.device.ideal import cost_of_ideal
+from stdfit.validity.device.questions import (
+    Answer,
+    answers,
+    impedance_within,
+    phase_within,
+    return_loss_within,
+)
 from stdfit.validity.kit import Kit
 from stdfit.writing.aligned import aligned
 from stdfit.writing.numbers import frequency

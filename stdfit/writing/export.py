@@ -12,7 +12,7 @@ import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.errors import RequestError
-from stdfit.validity.joint import finite_curve, joint_covariance, own_covariance
+from stdfit.validity.device.joint import finite_curve, joint_covariance, own_covariance
 from stdfit.validity.kit import Definition, Kit, misfit_at
 from stdfit.writing.plain_names import as_ascii, file_names
 

@@ -3,9 +3,9 @@
 import math
 from typing import Any
 
-from stdfit.validity.history import Course, History
-from stdfit.validity.time_left import TimeLeft
-from stdfit.validity.trend import DRIFT, EITHER, SAME, STEP, TOO_FEW, Interval
+from stdfit.validity.change.history import Course, History
+from stdfit.validity.change.time_left import TimeLeft
+from stdfit.validity.change.trend import DRIFT, EITHER, SAME, STEP, TOO_FEW, Interval
 from stdfit.writing.aligned import aligned
 from stdfit.writing.numbers import frequency
 

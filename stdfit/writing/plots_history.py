@@ -11,9 +11,9 @@ from matplotlib.backends.backend_svg import FigureCanvasSVG
 from matplotlib.figure import Figure
 
 from stdfit.base.arrays import FloatArray
-from stdfit.validity.history import Course, History
-from stdfit.validity.history_kits import MATING
-from stdfit.validity.trend import SAME, STEP
+from stdfit.validity.change.history import Course, History
+from stdfit.validity.change.history_kits import MATING
+from stdfit.validity.change.trend import SAME, STEP
 
 TITLE = "stdfit history"
 """Stands in the file, so that only such files are overwritten."""

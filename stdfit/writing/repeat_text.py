@@ -5,8 +5,8 @@ from collections.abc import Sequence
 from typing import Any
 
 from stdfit.data.repeat_file import RepeatFile
-from stdfit.validity.nested import GAIN, LEVELS, Components
-from stdfit.validity.repeat_study import Repeats, Scatter
+from stdfit.validity.change.nested import GAIN, LEVELS, Components
+from stdfit.validity.change.repeat_study import Repeats, Scatter
 from stdfit.writing.aligned import aligned
 from stdfit.writing.numbers import frequency
 

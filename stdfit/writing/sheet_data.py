@@ -6,8 +6,8 @@ from typing import Any
 import numpy as np
 
 from stdfit.base.arrays import FloatArray
-from stdfit.validity.entry_sheet import Entry, Sheet, ideal_cost
-from stdfit.validity.entry_terms import term_of
+from stdfit.validity.entry.sheet import Entry, Sheet, ideal_cost
+from stdfit.validity.entry.terms import term_of
 from stdfit.validity.limit import Limit
 from stdfit.writing.sheet_reading import FORMAT
 

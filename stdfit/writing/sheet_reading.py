@@ -12,9 +12,9 @@ from stdfit.base.arrays import FloatArray
 from stdfit.base.errors import KitError
 from stdfit.circuits.standard import PARAMETERS
 from stdfit.data.words import quoted, suggestion
-from stdfit.validity.entry_kit import ORDER, held
-from stdfit.validity.entry_terms import default_of, terms_of
-from stdfit.validity.entry_units import CHOICES, Units, typing_of
+from stdfit.validity.entry.kept import ORDER, held
+from stdfit.validity.entry.terms import default_of, terms_of
+from stdfit.validity.entry.units import CHOICES, Units, typing_of
 from stdfit.validity.kit import Definition, Kit
 from stdfit.validity.limit import Limit
 from stdfit.validity.limits import ladder

@@ -1,7 +1,7 @@
 """An entry sheet in words and aligned columns, for a terminal or a printer."""
 
-from stdfit.validity.entry_sheet import Entry, Sheet
-from stdfit.validity.entry_terms import default_of
+from stdfit.validity.entry.sheet import Entry, Sheet
+from stdfit.validity.entry.terms import default_of
 from stdfit.writing.aligned import aligned
 from stdfit.writing.numbers import frequency
 from stdfit.writing.sheet_data import told_cost

@@ -3,8 +3,8 @@
 import math
 from typing import Any
 
-from stdfit.validity.wear import CHANGED, CLEARLY, UNSURE, StandardWear, Wear
-from stdfit.validity.wear_cause import Cause
+from stdfit.validity.change.cause import Cause
+from stdfit.validity.change.wear import CHANGED, CLEARLY, UNSURE, StandardWear, Wear
 from stdfit.writing.aligned import aligned
 from stdfit.writing.numbers import frequency
 

@@ -113,8 +113,8 @@ def test_a_kit_that_holds_no_three_standards(capsys):
 def test_without_a_bound_there_is_no_ratio(kit_file, tmp_path, capsys):
     """Two kits without sources and without misfits: every difference is beyond all bounds."""
     kit = read_kit(kit_file)
-    from stdfit.validity.compare import compare
-    from stdfit.validity.pairing import ideal_like
+    from stdfit.validity.device.compare import compare
+    from stdfit.validity.device.pairing import ideal_like
     from stdfit.writing.compare_text import compare_data, compare_text, table_frequencies
 
     parts = tuple(

@@ -16,8 +16,8 @@ import pytest
 
 from stdfit.data.bench import read_bench
 from stdfit.pipeline import read_sweeps
-from stdfit.pipeline.anchors import gather
-from stdfit.pipeline.eliminate import eliminate
+from stdfit.pipeline.raw.anchors import gather
+from stdfit.pipeline.raw.eliminate import eliminate
 
 READINGS = Path(__file__).parents[2].parent / "shared" / "readings" / "switched"
 

@@ -4,7 +4,7 @@ import pytest
 
 from stdfit.base.errors import BenchError, RequestError
 from stdfit.data.bench import parse_bench
-from stdfit.pipeline.adapter_brought import refuse_adapters
+from stdfit.pipeline.adapters.brought import refuse_adapters
 
 HEAD = """format = "stdfit-bench/1"
 kit = { name = "Invented set", connector = "SMA" }

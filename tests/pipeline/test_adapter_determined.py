@@ -12,7 +12,7 @@ from stdfit.circuits.error_box import seen_raw
 from stdfit.circuits.standard import reflection
 from stdfit.circuits.two_port import box_of
 from stdfit.data.bench_records import AdapterEntry, Bench, Given, StandardEntry, StatedResidual
-from stdfit.pipeline.adapter_determined import adapter_from
+from stdfit.pipeline.adapters.determined import adapter_from
 from stdfit.trials.adapters import draw_adapter, s_parameters
 from stdfit.validity.ancestry import Origin
 

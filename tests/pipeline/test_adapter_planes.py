@@ -12,10 +12,10 @@ from stdfit.circuits.standard import reflection
 from stdfit.circuits.two_port import terms_by_s
 from stdfit.data.bench_records import AdapterEntry, Given, StatedResidual
 from stdfit.pipeline import characterise, prepare
-from stdfit.pipeline.adapter_acting import adapter_sources_on, residual_sources
-from stdfit.pipeline.adapter_brought import brought
-from stdfit.pipeline.adapter_known import Determined, Estimated
-from stdfit.pipeline.adapter_planes import Planes, planes_of
+from stdfit.pipeline.adapters.acting import adapter_sources_on, residual_sources
+from stdfit.pipeline.adapters.brought import brought
+from stdfit.pipeline.adapters.known import Determined, Estimated
+from stdfit.pipeline.adapters.planes import Planes, planes_of
 from stdfit.trials.adapters import draw_adapter, s_parameters
 from stdfit.uncertainty.connections import assumed_repeatability
 from stdfit.uncertainty.region import CIRCULAR

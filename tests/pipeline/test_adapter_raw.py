@@ -11,7 +11,7 @@ from stdfit.circuits.error_box import seen_raw
 from stdfit.circuits.two_port import box_of
 from stdfit.data.bench_records import AdapterEntry, Given, StandardEntry
 from stdfit.pipeline import characterise, prepare_bench
-from stdfit.pipeline.adapter_planes import planes_of
+from stdfit.pipeline.adapters.planes import planes_of
 from stdfit.validity.kit import curve
 from stdfit.writing.kit_file import kit_text
 

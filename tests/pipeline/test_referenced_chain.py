@@ -10,8 +10,8 @@ from stdfit.circuits.standard import reflection
 from stdfit.cli import main
 from stdfit.data.bench import read_bench
 from stdfit.pipeline import choose_all, kit_of, prepare_bench, read_sweeps, settle
-from stdfit.pipeline.inherited import LIFTED, never_surer
-from stdfit.validity.device import device_bound, device_map, three_of
+from stdfit.pipeline.raw.inherited import LIFTED, never_surer
+from stdfit.validity.device.bound import device_bound, device_map, three_of
 from stdfit.validity.kit import Ancestor, curve
 from stdfit.writing.kit_file import kit_text
 from stdfit.writing.kit_reading import parse_kit, read_kit

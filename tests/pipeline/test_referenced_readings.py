@@ -11,7 +11,7 @@ from stdfit.circuits.standard import PARAMETERS
 from stdfit.uncertainty.budget import Share
 from stdfit.uncertainty.region import CIRCULAR
 from stdfit.uncertainty.sources import LumpedSource, SharedSource, SmoothSource
-from stdfit.validity.joint import joint_covariance
+from stdfit.validity.device.joint import joint_covariance
 from stdfit.validity.kit import curve, misfit_at, model
 
 SETS = tuple(

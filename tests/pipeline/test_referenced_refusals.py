@@ -8,7 +8,7 @@ import pytest
 from stdfit.cli import main
 from stdfit.data.bench import read_bench
 from stdfit.pipeline.path import too_few_references
-from stdfit.pipeline.references import count_references
+from stdfit.pipeline.raw.references import count_references
 from stdfit.trials.files import touchstone_text
 
 USUAL = (("known open", "open", ""), ("known short", "short", ""), ("known load", "load", ""))

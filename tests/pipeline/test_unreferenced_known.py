@@ -7,8 +7,8 @@ import pytest
 
 from stdfit.data.bench import read_bench
 from stdfit.pipeline import fit_bench
-from stdfit.pipeline.known_standards import known_sources
-from stdfit.pipeline.references import looked_up
+from stdfit.pipeline.raw.known_standards import known_sources
+from stdfit.pipeline.raw.references import looked_up
 from stdfit.uncertainty.sources import SharedSource
 from stdfit.validity.kit import curve, model, total_covariance
 from stdfit.writing.kit_file import kit_text

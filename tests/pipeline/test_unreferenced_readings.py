@@ -10,8 +10,9 @@ from stdfit.base.records import Sweep
 from stdfit.circuits.error_box import seen_raw
 from stdfit.circuits.standard import reflection
 from stdfit.data.bench_records import Bench, Given, StandardEntry
-from stdfit.pipeline import characterise, eliminate
-from stdfit.pipeline.anchors import gather
+from stdfit.pipeline import characterise
+from stdfit.pipeline.raw import eliminate
+from stdfit.pipeline.raw.anchors import gather
 from stdfit.uncertainty.connections import responses
 from stdfit.validity.kit import curve
 from stdfit.writing.kit_file import kit_text

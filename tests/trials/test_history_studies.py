@@ -6,7 +6,7 @@ import pytest
 from stdfit.trials.fitted_histories import draw_fitted_kits
 from stdfit.trials.histories import Change, draw_kits, true_error
 from stdfit.trials.history_study import repeats
-from stdfit.validity.history import history
+from stdfit.validity.change.history import history
 
 
 def test_kits_without_errors_of_their_own_would_be_the_truth(usual_kit):

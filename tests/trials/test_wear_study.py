@@ -5,7 +5,7 @@ import pytest
 
 from stdfit.trials.wear_pair import Worn, draw_pair
 from stdfit.trials.wear_study import CHANGES, main, one_pair, wear_scenario
-from stdfit.validity.wear import CHANGED
+from stdfit.validity.change.wear import CHANGED
 
 PAIRS = 8
 FEW = 6

@@ -5,8 +5,8 @@ import pytest
 
 from stdfit.circuits.line import see_through_line
 from stdfit.circuits.standard import reflection
-from stdfit.validity.check import AGREES, FAILS, SILENT, by_physics
-from stdfit.validity.check_physics import plain_line, reflects_fully, steady_loss
+from stdfit.validity.device.check import AGREES, FAILS, SILENT, by_physics
+from stdfit.validity.device.check_physics import plain_line, reflects_fully, steady_loss
 
 GRID = np.linspace(50e6, 6e9, 121)
 ALL = np.ones(GRID.size, dtype=bool)

@@ -9,10 +9,10 @@ from stdfit.circuits.connectors import family_of
 from stdfit.circuits.error_box import seen_raw
 from stdfit.circuits.standard import reflection
 from stdfit.uncertainty.connections import responses
-from stdfit.validity.check import AGREES, FAILS, Check, by_physics, compared
-from stdfit.validity.check_day import Stack, correct_day, device_uncertainty
-from stdfit.validity.check_value import Value
-from stdfit.validity.device import device_bound, device_map, three_of
+from stdfit.validity.device.bound import device_bound, device_map, three_of
+from stdfit.validity.device.check import AGREES, FAILS, Check, by_physics, compared
+from stdfit.validity.device.check_day import Stack, correct_day, device_uncertainty
+from stdfit.validity.device.check_value import Value
 from stdfit.validity.kit import curve
 
 GRID = np.linspace(50e6, 6e9, 51)

@@ -8,7 +8,7 @@ import pytest
 from stdfit.base.records import Sweep
 from stdfit.circuits.standard import reflection
 from stdfit.data.bench_records import Given, StatedBound
-from stdfit.validity.check_value import given_value, value_from_file, value_from_kit
+from stdfit.validity.device.check_value import given_value, value_from_file, value_from_kit
 from stdfit.validity.kit import curve
 
 LINE = 1.959963984540054  # 95 % of a normal value on a line

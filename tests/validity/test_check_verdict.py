@@ -10,10 +10,10 @@ from stdfit.base.errors import PhysicsError
 from stdfit.circuits.connectors import FAMILIES
 from stdfit.circuits.error_box import seen_raw
 from stdfit.uncertainty.connections import Repeatability
-from stdfit.validity.check import AGREES, DOUBT, FAILS, SILENT, Check, Finding, compared, curve_factor
-from stdfit.validity.check_day import Stack, correct_day, device_uncertainty
-from stdfit.validity.check_value import Value
-from stdfit.validity.device import device_map, three_of
+from stdfit.validity.device.bound import device_map, three_of
+from stdfit.validity.device.check import AGREES, DOUBT, FAILS, SILENT, Check, Finding, compared, curve_factor
+from stdfit.validity.device.check_day import Stack, correct_day, device_uncertainty
+from stdfit.validity.device.check_value import Value
 
 HERTZ = np.linspace(1e9, 5e9, 100)
 ALL = np.ones(100, dtype=bool)

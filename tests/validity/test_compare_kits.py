@@ -8,11 +8,11 @@ import pytest
 from stdfit.base.errors import RequestError
 from stdfit.circuits.error_box import corrected, solve_error_box
 from stdfit.circuits.standard import IDEAL
-from stdfit.validity.compare import DEVICE, TERMS, compare, differences_at, kit_differences
-from stdfit.validity.device import by_magnitude, device_map, residual_terms, three_of
-from stdfit.validity.difference import bands_within, ratio_of
+from stdfit.validity.device.bound import by_magnitude, device_map, residual_terms, three_of
+from stdfit.validity.device.compare import DEVICE, TERMS, compare, differences_at, kit_differences
+from stdfit.validity.device.difference import bands_within, ratio_of
+from stdfit.validity.device.pairing import ideal_like, pair_up
 from stdfit.validity.kit import curve
-from stdfit.validity.pairing import ideal_like, pair_up
 
 
 def moved(kit, name, parameter, by):

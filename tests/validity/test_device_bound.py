@@ -8,8 +8,8 @@ import pytest
 from stdfit.base.errors import RequestError
 from stdfit.circuits.residual_map import device_weights
 from stdfit.uncertainty.budget import radius
-from stdfit.validity import device as device_module
-from stdfit.validity.device import (
+from stdfit.validity.device import bound as device_module
+from stdfit.validity.device.bound import (
     all_phases,
     by_magnitude,
     device_bound,

@@ -7,8 +7,8 @@ import numpy as np
 import pytest
 
 from stdfit.base.errors import RequestError
-from stdfit.validity.device import device_bound, device_map, residual_terms, three_of
-from stdfit.validity.device_limits import answers, impedance_within, phase_within, return_loss_within
+from stdfit.validity.device.bound import device_bound, device_map, residual_terms, three_of
+from stdfit.validity.device.questions import answers, impedance_within, phase_within, return_loss_within
 
 ROUND = np.exp(2j * np.pi * np.arange(720) / 720)
 LINE = 1.959963984540054  # 95 % of a normal variable on a line

@@ -7,8 +7,8 @@ import pytest
 
 from stdfit.circuits.standard import PARAMETERS, reflection
 from stdfit.fitting.reduced import PULL, Target, cost_of
-from stdfit.validity.entry_rounding import jointly, plainly
-from stdfit.validity.entry_units import nearest_number, typing_of, units_from
+from stdfit.validity.entry.rounding import jointly, plainly
+from stdfit.validity.entry.units import nearest_number, typing_of, units_from
 
 SIZES = {
     "open": [40.0, 2.0, 1.0, 40.0, 3000.0, 400.0, 40.0],

@@ -8,11 +8,11 @@ import pytest
 from stdfit.base.errors import RequestError
 from stdfit.circuits.standard import PARAMETERS, reflection
 from stdfit.uncertainty.budget import Share
-from stdfit.validity.entry_error import distance, largest_distance, rounded_up, stated
-from stdfit.validity.entry_kit import held
-from stdfit.validity.entry_sheet import Wanted, entry_sheet, ideal_cost, typed_kit
-from stdfit.validity.entry_terms import terms_of
-from stdfit.validity.entry_units import nearest_number, units_from
+from stdfit.validity.entry.error import distance, largest_distance, rounded_up, stated
+from stdfit.validity.entry.kept import held
+from stdfit.validity.entry.sheet import Wanted, entry_sheet, ideal_cost, typed_kit
+from stdfit.validity.entry.terms import terms_of
+from stdfit.validity.entry.units import nearest_number, units_from
 from stdfit.validity.kit import Definition, Kit, curve
 from stdfit.validity.limit import Limit
 from stdfit.validity.limits import limits

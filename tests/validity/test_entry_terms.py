@@ -4,7 +4,7 @@ import pytest
 
 from stdfit.base.errors import RequestError
 from stdfit.circuits.standard import PARAMETERS
-from stdfit.validity.entry_terms import accepted_places, digits_of, terms_of
+from stdfit.validity.entry.terms import accepted_places, digits_of, terms_of
 
 
 @pytest.fixture(scope="module")

@@ -5,7 +5,7 @@ import pytest
 
 from stdfit.base.errors import RequestError
 from stdfit.circuits.standard import PARAMETERS, reflection
-from stdfit.validity.entry_units import (
+from stdfit.validity.entry.units import (
     CHOICES,
     Units,
     last_digit,

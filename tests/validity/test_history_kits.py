@@ -7,13 +7,13 @@ import pytest
 
 from stdfit.base.errors import RequestError
 from stdfit.trials.histories import Change, draw_kits, own_sd, study
-from stdfit.validity.common_errors import root_of
-from stdfit.validity.followed import effect, followed, weights_of_whole
-from stdfit.validity.history import history
-from stdfit.validity.history_kits import MATING, MONTH, Dated, day_of
+from stdfit.validity.change.common_errors import root_of
+from stdfit.validity.change.followed import effect, followed, weights_of_whole
+from stdfit.validity.change.history import history
+from stdfit.validity.change.history_kits import MATING, MONTH, Dated, day_of
+from stdfit.validity.change.time_left import PART_OF_LIMIT, time_left
+from stdfit.validity.change.trend import DRIFT, SAME, STEP, Interval
 from stdfit.validity.kit import Ancestor, SourceFile, curve
-from stdfit.validity.time_left import PART_OF_LIMIT, time_left
-from stdfit.validity.trend import DRIFT, SAME, STEP, Interval
 
 
 @pytest.fixture(scope="module")

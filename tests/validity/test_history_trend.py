@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from stdfit.validity.trend import (
+from stdfit.validity.change.trend import (
     DRIFT,
     EITHER,
     SAME,

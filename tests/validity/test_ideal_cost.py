@@ -5,8 +5,8 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from stdfit.validity.device import all_phases, device_map, three_of
-from stdfit.validity.ideal import cost_of_ideal
+from stdfit.validity.device.bound import all_phases, device_map, three_of
+from stdfit.validity.device.ideal import cost_of_ideal
 
 GRID = np.array([1e9, 3e9, 6e9])
 SOURCE = {"load": {"load.resistance_ohm": 0.1}}

@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from stdfit.trials.repeats import draw_values, study_values
-from stdfit.validity.nested import GAIN, Components, Design, components
+from stdfit.validity.change.nested import GAIN, Components, Design, components
 
 # Wing lengths of mosquitoes, 3 cages × 4 females × 2 measurements (R. R. Sokal, F. J. Rohlf, Biometry, two-level
 # nested analysis of variance with equal sample sizes; data and mean squares from memory, which agree with each other).
@@ -96,7 +96,7 @@ def test_uncertainty_of_a_mean():
 @pytest.mark.parametrize("above, single", [(0.0, 1.0), (0.5, 1.0), (1.0, 1.0), (0.1, 1.0), (1.0, 0.0)])
 def test_worth_making_is_where_one_more_brings_less(above, single):
     """The closed form against a search; without a floor averaging alone gives 5: √(5/6) = 0.913, √(4/5) = 0.894."""
-    from stdfit.validity.nested import _worth
+    from stdfit.validity.change.nested import _worth
 
     (found,) = _worth(np.array([[above**2], [single**2], [0.0]]), 1.0)
 

@@ -6,7 +6,7 @@ import pytest
 from stdfit.base.errors import RequestError
 from stdfit.trials.repeats import study_sweeps
 from stdfit.uncertainty.connections import responses
-from stdfit.validity.repeat_study import repeats_of, seen_parts
+from stdfit.validity.change.repeat_study import repeats_of, seen_parts
 
 F = np.linspace(50e6, 6e9, 101)
 SMA = (0.02, 0.2, 0.1)

@@ -12,13 +12,13 @@ from stdfit.trials.wear_pair import Worn, draw_pair
 from stdfit.trials.wear_study import quick_kit, wear_scenario
 from stdfit.uncertainty.budget import Share
 from stdfit.uncertainty.connections import responses
-from stdfit.validity import wear_statistic
+from stdfit.validity.change import statistic as wear_statistic
+from stdfit.validity.change.cause import CAPACITANCE, INDUCTANCE
+from stdfit.validity.change.pairs import changes
+from stdfit.validity.change.statistic import has_moved, pointwise_bound, project, unexplained
+from stdfit.validity.change.wear import CHANGED, SAME, UNSURE, wear
+from stdfit.validity.device.pairing import pair_up
 from stdfit.validity.kit import Ancestor
-from stdfit.validity.pairing import pair_up
-from stdfit.validity.wear import CHANGED, SAME, UNSURE, wear
-from stdfit.validity.wear_cause import CAPACITANCE, INDUCTANCE
-from stdfit.validity.wear_pairs import changes
-from stdfit.validity.wear_statistic import has_moved, pointwise_bound, project, unexplained
 
 SEED = 31
 

@@ -6,8 +6,8 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from stdfit.validity.device import by_magnitude, device_map, residual_terms, three_of
-from stdfit.validity.device_limits import Answer, answers, phase_within, return_loss_within
+from stdfit.validity.device.bound import by_magnitude, device_map, residual_terms, three_of
+from stdfit.validity.device.questions import Answer, answers, phase_within, return_loss_within
 from stdfit.writing.device_text import (
     TABLE_GHZ,
     answer_data,

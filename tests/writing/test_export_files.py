@@ -12,8 +12,8 @@ from stdfit.circuits.error_box import corrected, seen_raw, solve_error_box
 from stdfit.data.readings import read_reading
 from stdfit.uncertainty.budget import Share
 from stdfit.uncertainty.region import radius_95
-from stdfit.validity.device import device_map, three_of
-from stdfit.validity.joint import joint_covariance, own_covariance
+from stdfit.validity.device.bound import device_map, three_of
+from stdfit.validity.device.joint import joint_covariance, own_covariance
 from stdfit.validity.kit import curve, misfit_at, model
 from stdfit.writing.export import (
     FIRST_LINE,

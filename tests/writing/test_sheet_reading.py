@@ -8,8 +8,8 @@ import numpy as np
 import pytest
 
 from stdfit.base.errors import KitError
-from stdfit.validity.entry_sheet import Wanted, entry_sheet, typed_kit
-from stdfit.validity.entry_units import units_from
+from stdfit.validity.entry.sheet import Wanted, entry_sheet, typed_kit
+from stdfit.validity.entry.units import units_from
 from stdfit.validity.kit import curve
 from stdfit.validity.limits import limits
 from stdfit.writing.kit_file import kit_text

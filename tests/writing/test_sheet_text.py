@@ -4,8 +4,8 @@ from dataclasses import replace
 
 import pytest
 
-from stdfit.validity.entry_sheet import Wanted, entry_sheet
-from stdfit.validity.entry_units import units_from
+from stdfit.validity.entry.sheet import Wanted, entry_sheet
+from stdfit.validity.entry.units import units_from
 from stdfit.validity.limit import Limit
 from stdfit.writing.sheet_data import COLUMNS, sheet_rows
 from stdfit.writing.sheet_text import sheet_text, verdict

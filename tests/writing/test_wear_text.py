@@ -7,8 +7,8 @@ import pytest
 
 from stdfit.trials.wear_pair import Worn, draw_pair
 from stdfit.trials.wear_study import quick_kit, wear_scenario
-from stdfit.validity.wear import wear
-from stdfit.validity.wear_cause import Cause, Explained
+from stdfit.validity.change.cause import Cause, Explained
+from stdfit.validity.change.wear import wear
 from stdfit.writing.wear_text import COLUMNS, wear_data, wear_rows, wear_text, wear_verdict
 
 

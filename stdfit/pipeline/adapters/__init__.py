@@ -1,0 +1,1 @@
+"""Adapters: determined, and taken away from readings."""

@@ -1,0 +1,1 @@
+"""Raw readings: with references, and without."""

@@ -1,0 +1,1 @@
+"""Has a standard changed: wear, history, repeatability."""

@@ -1,0 +1,1 @@
+"""What a kit does to devices; kits checked and compared."""

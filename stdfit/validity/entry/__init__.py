@@ -1,0 +1,1 @@
+"""What to type where only part of a definition is accepted."""
