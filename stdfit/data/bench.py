@@ -1,7 +1,6 @@
 """Bench files: the text says what was measured and with what; out comes a `Bench`."""
 
 import re
-import stat
 import tomllib
 from pathlib import Path
 
@@ -12,6 +11,7 @@ from stdfit.data.bench_devices import decode_devices
 from stdfit.data.bench_records import Bench, Given, PlannedSweep, StandardEntry, StatedResidual
 from stdfit.data.bench_standards import decode_standards
 from stdfit.data.bench_table import Table
+from stdfit.data.whole_text import whole_text
 from stdfit.data.words import nearest, quoted
 
 __all__ = ["Bench", "Given", "PlannedSweep", "StandardEntry", "StatedResidual", "parse_bench", "read_bench"]
@@ -40,29 +40,13 @@ def read_bench(path: Path | str, *, devices_alone: bool = False) -> Bench:
         The file cannot be read, is no TOML, or says something that cannot be.
     """
     path = Path(path)
-    try:
-        if path.is_dir():
-            path = path / BENCH_NAME
-            if not path.exists():
-                raise BenchError(
-                    f"the folder holds no {BENCH_NAME}", "write one, or name the file", file=path.parent
-                )
-        status = path.stat()
-        if not stat.S_ISREG(status.st_mode):
-            raise BenchError("not an ordinary file", "name a bench file", file=path)
-        if status.st_size > LARGEST_BYTES:
-            raise BenchError("larger than 4 MB", "name a bench file", file=path)
-        text = path.read_bytes().decode("utf-8-sig")
-    except FileNotFoundError as fault:
-        raise BenchError("no such bench file", "check the path", file=path) from fault
-    except UnicodeDecodeError as fault:
-        line = fault.object.count(b"\n", 0, fault.start) + 1
-        raise BenchError("not UTF-8 text", "save the bench file as UTF-8", file=path, line=line) from fault
-    except (OSError, ValueError) as fault:
-        reason = (
-            fault.strerror if isinstance(fault, OSError) and fault.strerror else "not a possible file name"
-        )
-        raise BenchError(f"cannot be read: {reason}", "check the path", file=repr(str(path))[1:-1]) from fault
+    if path.is_dir():
+        path = path / BENCH_NAME
+        if not path.exists():
+            raise BenchError(
+                f"the folder holds no {BENCH_NAME}", "write one, or name the file", file=path.parent
+            )
+    text = whole_text(path, "bench file", LARGEST_BYTES, BenchError, "check the path")
     return parse_bench(text, path, devices_alone=devices_alone)
 
 

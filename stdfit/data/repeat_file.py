@@ -8,6 +8,7 @@ from stdfit.base.errors import BenchError
 from stdfit.data.bench_files import matching_files
 from stdfit.data.bench_standards import GIVEN_NAMES, decode_port
 from stdfit.data.bench_table import Table
+from stdfit.data.whole_text import whole_text
 from stdfit.data.words import quoted
 
 FORMAT = "stdfit-repeatability/1"
@@ -70,20 +71,8 @@ def read_repeat_file(path: Path | str) -> RepeatFile:
         The file cannot be read, is no TOML, or says something that cannot be.
     """
     path = Path(path)
-    try:
-        path = path / FILE_NAME if path.is_dir() else path
-        if path.exists() and not path.is_file():
-            raise BenchError("not an ordinary file", "name a repeatability file", file=path)
-        if path.stat().st_size > LARGEST_BYTES:
-            raise BenchError("larger than 4 MB", "name a repeatability file", file=path)
-        text = path.read_bytes().decode("utf-8-sig")
-    except FileNotFoundError as fault:
-        raise BenchError("no such repeatability file", "check the path, or write one", file=path) from fault
-    except UnicodeDecodeError as fault:
-        raise BenchError("not UTF-8 text", "save the file as UTF-8", file=path) from fault
-    except (OSError, ValueError) as fault:
-        why = getattr(fault, "strerror", None) or "not a possible file name"
-        raise BenchError(f"cannot be read: {why}", "check the path", file=repr(str(path))[1:-1]) from fault
+    path = path / FILE_NAME if path.is_dir() else path
+    text = whole_text(path, "repeatability file", LARGEST_BYTES, BenchError, "check the path, or write one")
     return parse_repeat_file(text, path)
 
 

@@ -1,7 +1,6 @@
 """Adapter files read back, strictly: what passes can be used without a fault."""
 
 import re
-import stat
 import tomllib
 from collections.abc import Iterator
 from pathlib import Path
@@ -11,6 +10,7 @@ import msgspec
 import numpy as np
 
 from stdfit.base.errors import KitError
+from stdfit.data.whole_text import whole_text
 from stdfit.data.words import quoted
 from stdfit.validity.adapter import S_NAMES, Adapter
 from stdfit.validity.kit import Ancestor, SourceFile
@@ -137,20 +137,7 @@ def read_adapter(path: Path | str) -> Adapter:
         The file cannot be read, is no adapter file, or says something that cannot be.
     """
     path = Path(path)
-    try:
-        status = path.stat()
-        if not stat.S_ISREG(status.st_mode):
-            raise KitError("not an ordinary file", "name an adapter file", file=path)
-        if status.st_size > LARGEST_BYTES:
-            raise KitError("larger than 64 MB", "name an adapter file", file=path)
-        text = path.read_bytes().decode("utf-8-sig")
-    except FileNotFoundError as fault:
-        raise KitError("no such adapter file", "write one with 'stdfit adapter BENCH'", file=path) from fault
-    except UnicodeDecodeError as fault:
-        raise KitError("not UTF-8 text", "name an adapter file", file=path) from fault
-    except (OSError, ValueError) as fault:
-        why = getattr(fault, "strerror", None) or "not a possible file name"
-        raise KitError(f"cannot be read: {why}", "check the path", file=repr(str(path))[1:-1]) from fault
+    text = whole_text(path, "adapter file", LARGEST_BYTES, KitError, "write one with 'stdfit adapter BENCH'")
     return parse_adapter(text, path)
 
 

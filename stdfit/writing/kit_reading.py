@@ -1,6 +1,5 @@
 """Kit files read back: decoded strictly, then handed to `kit_checks`."""
 
-import stat
 import tomllib
 from pathlib import Path
 from typing import Annotated
@@ -9,6 +8,7 @@ import msgspec
 import numpy as np
 
 from stdfit.base.errors import KitError
+from stdfit.data.whole_text import whole_text
 from stdfit.data.words import quoted
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Ancestor, Combination, Definition, Fitted, Kit, Rung, SourceFile
@@ -179,20 +179,7 @@ def read_kit(path: Path | str) -> Kit:
         The file cannot be read, is no kit file, or says something that cannot be.
     """
     path = Path(path)
-    try:
-        status = path.stat()
-        if not stat.S_ISREG(status.st_mode):
-            raise KitError("not an ordinary file", "name a kit file", file=path)
-        if status.st_size > LARGEST_BYTES:
-            raise KitError("larger than 32 MB", "name a kit file", file=path)
-        text = path.read_bytes().decode("utf-8-sig")
-    except FileNotFoundError as fault:
-        raise KitError("no such kit file", "write one with 'stdfit fit BENCH -o KIT'", file=path) from fault
-    except UnicodeDecodeError as fault:
-        raise KitError("not UTF-8 text", "name a kit file", file=path) from fault
-    except (OSError, ValueError) as fault:
-        why = getattr(fault, "strerror", None) or "not a possible file name"
-        raise KitError(f"cannot be read: {why}", "check the path", file=repr(str(path))[1:-1]) from fault
+    text = whole_text(path, "kit file", LARGEST_BYTES, KitError, "write one with 'stdfit fit BENCH -o KIT'")
     return parse_sheet(text, path) if looks_like_a_sheet(text) else parse_kit(text, path)
 
 
