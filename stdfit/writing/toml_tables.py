@@ -1,9 +1,10 @@
 """TOML tables as they are written to files, so that reading one back and writing it again gives the same bytes."""
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from typing import Any
 
 import tomlkit
+from tomlkit.items import Item, Trivia
 
 
 def table_of(**values: Any) -> Any:
@@ -25,9 +26,42 @@ def printable(value: Any) -> Any:
     return value
 
 
+class _Numbers(Item):
+    """Numbers in their final form: a library that looks at each of them takes longer than the fit."""
+
+    def __init__(self, text: str) -> None:
+        super().__init__(Trivia())
+        self._text = text
+
+    @property
+    def discriminant(self) -> int:
+        """What tomlkit tells lists by."""
+        return 8
+
+    @property
+    def value(self) -> str:
+        """The text."""
+        return self._text
+
+    def unwrap(self) -> str:
+        """Return the text."""
+        return self._text
+
+    def as_string(self) -> str:
+        """Return the text."""
+        return self._text
+
+    def _getstate(self, protocol: int = 3) -> tuple[str]:
+        return (self._text,)
+
+
 def numbers_of(values: Sequence[float]) -> Any:
-    """Return a list of numbers with all their digits; to add them one by one takes the square of their number."""
-    return tomlkit.array(f"[{', '.join(map(repr, values))}]")
+    """Return a list of numbers with all their digits."""
+    return _Numbers(_listed(values))
+
+
+def _listed(values: Sequence[float]) -> str:
+    return f"[{', '.join(map(repr, values))}]"
 
 
 def tables_of(items: Any) -> Any:
@@ -38,10 +72,7 @@ def tables_of(items: Any) -> Any:
     return tables
 
 
-def rows_below_each_other(rows: Any) -> Any:
-    """Return a list of lists, each on a line of its own."""
-    listed = tomlkit.array()
-    for row in rows:
-        listed.append(numbers_of(row))
-    listed.multiline(True)
-    return listed
+def rows_below_each_other(rows: Iterable[Sequence[float]]) -> Any:
+    """Return a list of lists of numbers, each on a line of its own."""
+    lines = [f"    {_listed(row)}," for row in rows]
+    return _Numbers("\n".join(["[", *lines, "]"]))
