@@ -70,5 +70,5 @@ def _check_plot(path: Path) -> None:
         raise RequestError("a plot is an SVG file", "let its name end in .svg", file=path)
     if not path.parent.is_dir():
         raise RequestError("no such folder", "make it, or name another place", file=path.parent)
-    if path.exists() and not is_history_svg(path):
+    if (path.exists() or path.is_symlink()) and not is_history_svg(path):
         raise RequestError("exists and is no plot of a history", "name another file", file=path)

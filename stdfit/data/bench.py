@@ -88,7 +88,11 @@ def parse_bench(text: str, path: Path, *, devices_alone: bool = False) -> Bench:
         "analyser",
         ("state", "residual", "calibrated_with", "calibration"),
     )
-    state = analyser.choice("state", ("corrected", "raw"))
+    state = analyser.choice(
+        "state",
+        ("corrected", "raw"),
+        mend='write "corrected" (read through the analyser\'s own correction) or "raw" (without any)',
+    )
     if state == "raw" and "residual" in analyser:
         raise analyser.fault(
             "residual", "belongs to corrected readings", 'leave it out, or set state = "corrected"'

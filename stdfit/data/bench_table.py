@@ -75,11 +75,11 @@ class Table:
             raise self.fault(key, "holds a control character", "use plain text on one line")
         return value
 
-    def choice(self, key: str, choices: Sequence[str], default: str | None = None) -> str:
-        """Return one of the known words."""
+    def choice(self, key: str, choices: Sequence[str], default: str | None = None, *, mend: str = "") -> str:
+        """Return one of the known words; `mend` says what to do where the nearest of them would mislead."""
         value = self.text(key, default)
         if value not in choices:
-            raise self.fault(key, f"{quoted(value)} is not known", suggestion(value, choices))
+            raise self.fault(key, f"{quoted(value)} is not known", mend or suggestion(value, choices))
         return value
 
     def number(self, key: str, default: float | None = None, *, above: float | None = None) -> float:

@@ -44,8 +44,9 @@ def contradicted(problem: Problem, values: FloatArray, errors: FloatArray, withi
     size = float(np.sqrt(np.mean(errors**2)))
     if size > TOLD * within:
         said.append(
-            f"the standards contradict each other by about {size:.2g}, more than connections and noise explain: a "
-            "length or a file may be wrong, or a standard does not follow its model. The bounds hold it as misfit"
+            f"the standards contradict each other by about {min(size, 2.0):.2g}, more than connections and noise "
+            "explain: a length (in ps, one way?) or a file may be wrong, or a standard does not follow its model. The "
+            "bounds hold the last, not a wrong length"
         )
     return tuple(said)
 

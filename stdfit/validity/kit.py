@@ -228,8 +228,21 @@ class Kit:
 
 
 def model(kit: Kit, definition: Definition, frequency_hz: FloatArray) -> tuple[ComplexArray, ComplexArray]:
-    """Return Γ, shape (n,), and its derivatives by the quantities of the joint covariance, shape (n, p)."""
-    gamma, own = reflection(definition.kind, definition.values, frequency_hz, kit.reference_ohm)
+    """Return Γ, shape (n,), and its derivatives by the quantities of the joint covariance, shape (n, p).
+
+    Raises
+    ------
+    RequestError
+        A frequency is so close to zero, or the definition so far from sense, that numbers overflow.
+    """
+    with np.errstate(all="ignore"):
+        gamma, own = reflection(definition.kind, definition.values, frequency_hz, kit.reference_ohm)
+    faulty = ~(np.isfinite(gamma) & np.isfinite(own).all(axis=1))
+    if faulty.any():
+        raise RequestError(
+            f"the reflection of '{definition.name}' cannot be computed at {float(frequency_hz[faulty][0]):.4g} Hz",
+            f"ask for frequencies from {definition.read_low_hz:.10g} Hz on, where the readings begin",
+        )
     place = {name: k for k, name in enumerate(kit.order)}
     design = np.zeros((frequency_hz.size, len(kit.order)), dtype=complex)
     for k, parameter in enumerate(definition.parameters):

@@ -32,11 +32,14 @@ class Found:
         Names relative to the folder.
     by_name : bool
         Whether the kind was read off the names; otherwise off the readings.
+    name : str
+        What its files are called, where several standards of its kind are told apart by that; else empty.
     """
 
     kind: str
     files: tuple[str, ...]
     by_name: bool
+    name: str = ""
 
 
 def find_standards(folder: Path) -> tuple[list[Found], list[str]]:
@@ -82,8 +85,21 @@ def find_standards(folder: Path) -> tuple[list[Found], list[str]]:
         raise RequestError(
             f"no readings of standards found{why}", f"put files {', '.join(SUFFIXES)} there", file=folder
         )
-    found = [Found(kind, tuple(files), by_name) for (kind, by_name), files in groups.items()]
+    found = [one for (kind, by_name), files in groups.items() for one in _standards(kind, files, by_name)]
     return sorted(found, key=lambda one: KINDS.index(one.kind)), left_out
+
+
+def _standards(kind: str, files: Sequence[str], by_name: bool) -> list[Found]:
+    """Part the files of a kind by what stands before their last number: "offset-short-1-2" is not "short-2"."""
+    stems: dict[str, list[str]] = {}
+    for file in files:
+        stems.setdefault(re.sub(r"[\W_]*\d+$", "", Path(file).stem), []).append(file)
+    if len(stems) == 1 or all(len(own) == 1 for own in stems.values()):
+        return [Found(kind, tuple(files), by_name)]
+    return [
+        Found(kind, tuple(own), by_name, re.sub(r"[\W_]+", " ", stem).strip() or kind)
+        for stem, own in stems.items()
+    ]
 
 
 def kind_by_name(stem: str) -> str | None:
@@ -126,7 +142,7 @@ def draft(folder_name: str, found: Sequence[Found]) -> str:
         "within = 0.02                          # tolerance on |error of Γ|; 0.02 is -34 dB",
         "",
         "[analyser]",
-        'state = "corrected"',
+        'state = "corrected"                    # <-- "raw" if the analyser\'s own correction was off',
         "# <-- What is left of the analyser's errors after its own correction, 95 % bounds. They come from",
         "# the data sheet of the kit it was corrected with. The values below are those of a modest calibration",
         "# (common practice, no source); without this table the same are assumed.",
@@ -139,7 +155,7 @@ def draft(folder_name: str, found: Sequence[Found]) -> str:
     counts: dict[str, int] = {}
     for one in found:
         counts[one.kind] = counts.get(one.kind, 0) + 1
-        name = one.kind if counts[one.kind] == 1 else f"{one.kind} {counts[one.kind]}"
+        name = one.name or (one.kind if counts[one.kind] == 1 else f"{one.kind} {counts[one.kind]}")
         doubt = "" if one.by_name else "               # <-- guessed from the readings"
         lines += [
             "",

@@ -90,10 +90,17 @@ def _notes(found: Check) -> list[str]:
             else "its value is not known where the verdict is given"
         )
         notes.append(f"'{one.device}' against {one.against}: {why}")
+    for one in found.telling:
+        hertz = one.frequency_hz[one.judged]
+        if hertz[0] > found.low_hz or hertz[-1] < found.top_hz:
+            band = f"{frequency(float(hertz[0]))} to {frequency(float(hertz[-1]))}"
+            notes.append(
+                f"'{one.device}' against {one.against}: judged from {band} alone, where its value is known"
+            )
     if found.telling:
         notes.append(
-            f"fails: more than 5 % of a curve beyond {found.factor:.2f} bounds, by chance alone in at most 1 of 20 "
-            "checks; in doubt: more than 5 % beyond one bound"
+            f"fails: more than 5 % of a curve beyond {found.factor:.2f} bounds, by chance alone in about 1 of 20 "
+            "checks or fewer; in doubt: more than 5 % beyond one bound"
         )
     if found.verdict in (FAILS, DOUBT):
         notes.append(

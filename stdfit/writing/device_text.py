@@ -93,8 +93,9 @@ def _db(magnitude: FloatArray) -> FloatArray:
 
 
 def _spread_db(magnitude: FloatArray) -> FloatArray:
-    """Return 20·log10(1 + |T|): by how much a reflection may be shown too large."""
-    return np.asarray(20.0 * np.log10(1.0 + magnitude))
+    """Return −20·log10(1 − |T|): by how much a reflection may be shown too small, which is the larger side."""
+    with np.errstate(divide="ignore"):
+        return np.asarray(-20.0 * np.log10(np.maximum(1.0 - magnitude, 0.0)))
 
 
 def device_data(kit: Kit, errors: DeviceMap, magnitudes: Sequence[float]) -> dict[str, Any]:

@@ -12,8 +12,8 @@ import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.errors import RequestError
-from stdfit.validity.device.joint import finite_curve, joint_covariance, own_covariance
-from stdfit.validity.kit import Definition, Kit, misfit_at
+from stdfit.validity.device.joint import joint_covariance, own_covariance
+from stdfit.validity.kit import Definition, Kit, curve, misfit_at
 from stdfit.writing.plain_names import as_ascii, file_names
 
 POINTS = 201
@@ -93,7 +93,7 @@ def export_grid(
             "start above 0 Hz, and end above the start",
         )
     for definition in kit.definitions:  # refuse the end that was asked for, not some point before it
-        finite_curve(kit, definition, np.array([low_hz, top_hz]))
+        curve(kit, definition, np.array([low_hz, top_hz]))
     if points < 2:
         raise RequestError(
             "a grid with two ends has at least two points", "name a single frequency with --at"
@@ -124,7 +124,7 @@ def export_files(kit: Kit, frequency_hz: FloatArray) -> dict[str, str]:
         raise RequestError("there is no frequency to export", "name one or more")
     files, rows = {}, []
     for definition, name in zip(kit.definitions, file_names(kit), strict=True):
-        gamma, bound = finite_curve(kit, definition, grid)
+        gamma, bound = curve(kit, definition, grid)
         files[name] = touchstone_text(kit, definition, grid, gamma, bound)
         rows += _standard_rows(kit, definition, grid, gamma, bound)
     files[STANDARDS] = _csv(STANDARD_COLUMNS, rows)

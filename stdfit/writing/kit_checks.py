@@ -7,8 +7,8 @@ from pathlib import Path
 import numpy as np
 
 from stdfit.base.arrays import FloatArray
-from stdfit.base.errors import KitError
-from stdfit.circuits.standard import PARAMETERS
+from stdfit.base.errors import KitError, RequestError
+from stdfit.circuits.standard import PARAMETERS, reflection
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Definition, Kit, curve
 from stdfit.validity.limits import limits
@@ -220,11 +220,13 @@ def _curves(kit: Kit) -> Faults:
     for s, definition in enumerate(kit.definitions):
         low, top = definition.read_low_hz, definition.read_top_hz
         grid = np.concatenate([np.linspace(low, top, CURVE_POINTS), definition.misfit_hz])
+        grid = grid[(grid > 0.0) & (grid <= top)]
         try:
             with np.errstate(all="raise", under="ignore"):
-                gamma, bound = curve(kit, definition, grid[(grid > 0.0) & (grid <= top)])
+                reflection(definition.kind, definition.values, grid, kit.reference_ohm)
+                gamma, bound = curve(kit, definition, grid)
             sound = bool((np.isfinite(gamma) & np.isfinite(bound)).all())
-        except FloatingPointError:
+        except (FloatingPointError, RequestError):
             sound = False
         if not sound:
             yield f"standard[{s}].parameter", "the values give no finite reflection and bound"

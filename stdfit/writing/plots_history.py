@@ -1,6 +1,7 @@
 """A history as a picture: one panel for each value, the same bytes every time."""
 
 import io
+import warnings
 from pathlib import Path
 
 import numpy as np
@@ -30,7 +31,11 @@ def history_svg(found: History) -> str:
         for axes, course in zip(np.ravel(figure.subplots(count, 1)), found.courses, strict=True):
             draw_course(axes, course)
         stream = io.StringIO()
-        figure.savefig(stream, format="svg", metadata={"Title": TITLE, "Date": None, "Creator": None})
+        with warnings.catch_warnings():
+            warnings.filterwarnings(
+                "ignore", "Glyph .* missing"
+            )  # a name in another script is drawn as boxes
+            figure.savefig(stream, format="svg", metadata={"Title": TITLE, "Date": None, "Creator": None})
     return stream.getvalue()
 
 
@@ -47,9 +52,11 @@ def draw_course(axes: Axes, course: Course) -> list[Artist]:
         ).get_children(),
         *axes.plot(*_described(course, x, value), color="C1", linewidth=1.2),
     ]
-    axes.set_title(f"{course.standard}: {course.label} ({course.trend.verdict})", loc="left")
+    axes.set_title(
+        f"{course.standard}: {course.label} ({course.trend.verdict})", loc="left", parse_math=False
+    )
     axes.set_xlabel("matings" if course.per == MATING else "months since the first kit")
-    axes.set_ylabel(course.unit)
+    axes.set_ylabel(course.unit, parse_math=False)
     axes.grid(visible=True, color="0.92")
     return artists
 

@@ -13,6 +13,8 @@ from stdfit.writing.numbers import frequency
 MEANS = (1, 2, 3, 5, 10)
 """Connections whose mean is told."""
 
+LACKS = "; the calibration's part is not known, and not in it"
+
 
 def repeat_text(described: RepeatFile, found: Sequence[Repeats]) -> str:
     """Return the components of each standard, and how many connections are worth making, the verdict last."""
@@ -24,15 +26,14 @@ def repeat_text(described: RepeatFile, found: Sequence[Repeats]) -> str:
         lines += aligned(rows)
         for part in one.unseen:
             lines.append(f"  {part}: these readings do not tell it apart from the other parts")
-        lines += ["", "  standard uncertainty of a mean of so many connections in one calibration"]
+        lacks = "" if all(_knows_calibrations(row.found) for row in one.rows) else LACKS
+        lines += ["", f"  standard uncertainty of a mean of so many connections in one calibration{lacks}"]
         means = [["", *map(str, MEANS), "the calibration alone"]]
         for row in one.rows:
             scale, unit = _scale(row)
-            each = [f"{_figure(scale * row.found.of_mean(n))}{unit}" for n in MEANS]
-            floor = row.found.sd[0]
-            means.append(
-                [_what(row), *each, "not known" if math.isnan(floor) else f"{_figure(scale * floor)}{unit}"]
-            )
+            told = [*(row.found.of_mean(n) for n in MEANS), float(row.found.sd[0])]
+            each = ["not known" if math.isnan(u) else f"{_figure(scale * u)}{unit}" for u in told]
+            means.append([_what(row), *each])
         lines += aligned(means)
     return "\n".join([*lines, "", repeat_verdict(found)]) + "\n"
 
@@ -50,7 +51,7 @@ def repeat_verdict(found: Sequence[Repeats]) -> str:
     one, row = max(asked, key=lambda pair: pair[1].found.worth[0])
     worth, low, high = row.found.worth
     told = f"worth making: {worth} connections ({low} … {high}) in one calibration, for {one.standard} at {_at(row)}"
-    if math.isnan(row.found.sd[0]):
+    if not _knows_calibrations(row.found):
         return f"{told}; with one calibration only, what it leaves is not known, and averaging alone decides"
     return f"{told}; one more makes the mean surer by less than {100 * GAIN:.0f} %"
 
@@ -94,7 +95,8 @@ def _row_data(row: Scatter) -> dict[str, Any]:
         },
         "worth_making": found.worth[0] if known else None,
         "worth_making_95": list(found.worth[1:]) if known else None,
-        "u_of_mean": {str(n): found.of_mean(n) for n in MEANS},
+        "u_of_mean": {str(n): None if math.isnan(u := found.of_mean(n)) else u for n in MEANS},
+        "u_of_mean_holds_calibration": _knows_calibrations(found),
     }
 
 
@@ -130,6 +132,10 @@ def _cells(row: Scatter) -> list[str]:
         ends = f"{_figure(scale * low)} … {_figure(scale * high)}"
         cells.append("not told apart" if math.isnan(sd) else f"{_figure(scale * sd)}{unit} ({ends})")
     return cells
+
+
+def _knows_calibrations(found: Components) -> bool:
+    return not math.isnan(found.sd[0])
 
 
 def _knows_connections(found: Components) -> bool:

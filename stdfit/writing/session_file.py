@@ -15,7 +15,13 @@ Size = Annotated[float, msgspec.Meta(ge=0.0)]
 Freedom = Annotated[float, msgspec.Meta(gt=0.0)]
 
 HIGHEST_MAGNITUDE = 3.0
-"""A mean |Γ| above this is no reading of a standard."""
+"""A mean |Γ| above this is no reading of a standard, and no error of one is as large."""
+
+LARGEST_SCATTER = 1000.0
+"""Ω or ps: no connection scatters by more."""
+
+FEWEST_FREEDOM = 0.1
+"""With fewer degrees of freedom an error may have any size: a fit counts none below 0.3."""
 
 
 class MeanTable(msgspec.Struct, forbid_unknown_fields=True):
@@ -100,8 +106,15 @@ def session_faults(kit: Kit) -> Iterator[tuple[str, str]]:
         return
     if session.scatter_sd.shape != (len(PARTS),) or not np.isfinite(session.scatter_sd).all():
         yield "session.connection_sd", f"{len(PARTS)} finite numbers are needed: {', '.join(PARTS)}"
+    elif (session.scatter_sd > LARGEST_SCATTER).any():
+        yield "session.connection_sd", f"no connection scatters by more than {LARGEST_SCATTER:g} Ω or ps"
+    few = f"below {FEWEST_FREEDOM:g} degrees of freedom nothing is known of a size"
     if session.scatter_freedom.shape != (len(PARTS),):
         yield "session.connection_freedom", f"{len(PARTS)} numbers are needed: {', '.join(PARTS)}"
+    elif not (session.scatter_freedom >= FEWEST_FREEDOM).all():
+        yield "session.connection_freedom", few
+    if not session.session_freedom >= FEWEST_FREEDOM:
+        yield "session.session_freedom", few
     names = [one.standard for one in session.means]
     if len(set(names)) != len(names):
         yield "session.mean", "a standard is named twice"
@@ -120,8 +133,12 @@ def _mean_faults(one: MeanReading, key: str) -> Iterator[tuple[str, str]]:
             yield f"{key}.{name}", "the lists of a mean reading must be equally long"
         elif not np.isfinite(values).all():
             yield f"{key}.{name}", "a value is not a finite number"
-    if not np.isfinite(one.noise_sd):
-        yield f"{key}.noise_sd", "not a finite number"
+        elif name != "mean_re" and (values > HIGHEST_MAGNITUDE).any():
+            yield f"{key}.{name}", f"no error of a reading is larger than {HIGHEST_MAGNITUDE:g}"
+    if not one.noise_sd <= HIGHEST_MAGNITUDE:
+        yield f"{key}.noise_sd", f"no noise of a reading is larger than {HIGHEST_MAGNITUDE:g}"
+    if (one.frequency_hz <= 0.0).any():
+        yield f"{key}.frequency_hz", "a frequency is not above 0 Hz"
     if not np.isfinite(one.frequency_hz).all() or (np.diff(one.frequency_hz) <= 0.0).any():
         yield f"{key}.frequency_hz", "the frequencies do not rise"
     if (np.abs(one.gamma) > HIGHEST_MAGNITUDE).any():

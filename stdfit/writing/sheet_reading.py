@@ -26,6 +26,9 @@ FORMAT = "stdfit-sheet/1"
 NUMBER = re.compile(r"-?\d{1,20}(\.\d{1,20})?([eE][+-]?\d{1,3})?", re.ASCII)
 """A number that people type."""
 
+LONGEST_PS = 1e6
+"""No standard is a microsecond long."""
+
 Size = Annotated[float, msgspec.Meta(ge=0.0)]
 Above = Annotated[float, msgspec.Meta(gt=0.0)]
 Count = Annotated[int, msgspec.Meta(ge=1)]
@@ -249,7 +252,21 @@ def _values(one: _Standard, key: str, whole: _Whole, units: Units, path: Path | 
     numbers = np.zeros(default.size)
     numbers[list(typed)] = list(typed.values())
     with np.errstate(all="ignore"):  # what is not finite is refused later
-        return typing.meant(numbers, list(typed), default)
+        values = typing.meant(numbers, list(typed), default)
+    for t, place in enumerate(typed):
+        fault = _no_line(typing.parameters[place].name, float(values[place]))
+        if fault:
+            raise KitError(fault, MEND, file=path, key=f"{key}.typed[{t}].number")
+    return values
+
+
+def _no_line(name: str, value: float) -> str:
+    """Return why no offset line has this value, nothing where one may."""
+    if name == "offset_z0_ohm" and value <= 0.0:
+        return f"an offset Z0 of {value:g} Ω; it must be above 0"
+    if name == "offset_delay_ps" and LONGEST_PS <= abs(value) < np.inf:
+        return f"an offset delay of {value:g} ps; it must be below {LONGEST_PS:g} ps"
+    return ""
 
 
 def _number(given: str | float, key: str, path: Path | str) -> float:

@@ -161,6 +161,7 @@ def test_a_kit_with_a_wrong_open_fails(loft):
     assert (code, err) == (1, "")
     assert out.splitlines()[-1].startswith("the check fails up to 2.")
     assert "read the device again" in out
+    assert "'cap' against its stated values: judged from 1." in out  # its bound begins at 1 GHz
     data = json.loads(loft.check("--json")[1])
     assert (data["result"], data["devices"][0]["verdict"]) == ("fails", "fails")
     assert data["devices"][0]["largest_in_bounds"] > 1.27

@@ -154,7 +154,7 @@ def test_what_cannot_be_compared(kit_file, tmp_path, capsys, change, words):
         (["none.toml"], "none.toml: no such kit file"),
         (["./ideal"], "ideal: no such kit file"),
         (["ideal", "--at", "7e9"], "7000000000 Hz lies outside the readings"),
-        (["ideal", "--at", "1e-300"], "nothing can be computed at 1e-300 Hz"),
+        (["ideal", "--at", "1e-300"], "cannot be computed at 1e-300 Hz"),
         (["ideal", "--csv", "--json"], "--csv and --json are asked for at once"),
     ],
 )

@@ -98,6 +98,25 @@ def test_plot_is_the_same_bytes_twice_and_overwrites_plots_alone(run, tmp_path):
     assert plot.read_text(encoding="utf-8") == "<svg/>"
 
 
+def test_plot_does_not_follow_a_link_that_leads_nowhere(run, tmp_path):
+    plot, elsewhere = tmp_path / "shelf.svg", tmp_path / "elsewhere.svg"
+    plot.symlink_to(elsewhere)
+    code, out, err = run("--plot", plot)
+    assert (code, out) == (2, "")
+    assert "no plot of a history" in err
+    assert plot.is_symlink()
+    assert not elsewhere.exists()
+
+
+def test_a_tolerance_that_no_definition_keeps_is_told_in_words(run):
+    code, out, _ = run("--within", "1e-300")
+    words = "not within 1e-300 even now, from the first reading on"
+    assert code == 0
+    assert any(words in line and "open" in line for line in out.splitlines())
+    assert any(words in note for note in json.loads(run("--within", "1e-300", "--json")[1])["notes"])
+    assert "even now" not in run()[1]
+
+
 @pytest.mark.parametrize(
     "options, said",
     [

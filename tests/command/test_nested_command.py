@@ -74,6 +74,7 @@ def test_json_says_the_same(run):
     assert [one["what"] for one in short["components"]].count("|ΔΓ|") == 4
     shift = next(one for one in short["components"] if one["what"] == "plane shift")
     assert shift["connection"]["low_95"] < 0.15 < shift["connection"]["high_95"]
+    assert shift["u_of_mean_holds_calibration"] is True
     assert shift["u_of_mean"]["1"] > shift["u_of_mean"]["10"] > 0.0
     assert shift["worth_making_95"][0] <= shift["worth_making"] <= shift["worth_making_95"][1]
 
@@ -83,12 +84,19 @@ def test_what_the_design_does_not_tell(run):
     assert code == 0
     assert "not told apart" in out
     assert "with one calibration only" in out.splitlines()[-1]
+    lacks = "calibration; the calibration's part is not known, and not in it"
+    assert lacks in out
+    assert lacks not in run()[1]
     code, out, _ = run(text=HEAD + table("a", ["a-1-*.s1p"]))
     assert code == 0
     assert out.splitlines()[-1].startswith("connections are not told apart from calibrations")
     said = json.loads(run("--json", text=HEAD + table("a", ["a-1-*.s1p"]))[1])
     assert said["standards"][0]["components"][0]["calibration"] is None
     assert said["standards"][0]["components"][0]["worth_making"] is None
+    assert set(said["standards"][0]["components"][0]["u_of_mean"].values()) == {None}
+    assert said["standards"][0]["components"][0]["u_of_mean_holds_calibration"] is False
+    table_of_means = out.split("standard uncertainty of a mean")[1].splitlines()
+    assert all(line.count("not known") == 6 for line in table_of_means if "shift" in line or "ΔΓ" in line)
 
 
 def test_a_list_of_names_is_one_connection(run):

@@ -61,7 +61,7 @@ def test_a_file_between_its_points():
     own = np.linspace(0.5e9, 6e9, 45)
     values = [55.0, 1.5, 50.0, 3.0, 0.0, 0.0, 0.0]
     sweep = Sweep(own, reflection("short", values, own, 50.0)[0])
-    stated = StatedBound([1e9, 5e9], [1e-9, 3e-9])
+    stated = StatedBound(np.array([0.8e9, 1e9, 5e9, 6e9]), np.array([1e-9, 1e-9, 3e-9, 3e-9]))
     on = value_from_file(sweep, stated, own[3:6])
     np.testing.assert_allclose(on.gamma, sweep.gamma[3:6], rtol=1e-12)
     np.testing.assert_allclose(on.bound, np.interp(own[3:6], [1e9, 5e9], [1e-9, 3e-9]), rtol=1e-9)
@@ -74,6 +74,26 @@ def test_a_file_between_its_points():
     assert between.bound.max() < 3.0 * error.max()
     outside = value_from_file(sweep, stated, np.array([0.4e9, 6.1e9]))
     assert np.isnan(outside.bound).all()
+    # A table of bounds ends at its ends; a single bound holds everywhere.
+    beyond = value_from_file(sweep, stated, np.array([0.7e9, 0.8e9, 6e9]))
+    assert np.isnan(beyond.bound).tolist() == [True, False, False]
+    single = value_from_file(sweep, StatedBound(np.array([1.0]), np.array([1e-3])), np.array([0.7e9, 6e9]))
+    assert np.isfinite(single.bound).all()
+
+
+@pytest.mark.parametrize("value, u", [(50.0, 1e200), (1e300, 0.1), (1e300, 1e300)])
+def test_any_figures_give_a_value_without_a_warning(value, u):
+    """Warnings are errors here."""
+    found = given_value("load", {"resistance_ohm": Given(value, u)}, HERTZ, 50.0)
+    assert np.isfinite(found.gamma).all()
+    assert (found.bound <= 2.0).all()
+    if value == 50.0:
+        assert found.bound.tolist() == [2.0, 2.0]
+
+
+def test_figures_that_give_no_reflection_tell_nothing():
+    given = {"offset_delay_ps": Given(30.0), "offset_loss_gohm_per_s": Given(1e300)}
+    assert np.isnan(given_value("open", given, HERTZ, 50.0).bound).all()
 
 
 def test_nothing_can_be_changed_afterwards():

@@ -93,6 +93,16 @@ def test_uncertainty_of_a_mean():
     assert made(0.0, 0.0, 6.0, repeats=4.0).of_mean(9) == pytest.approx(1.0)
 
 
+def test_one_connection_does_not_say_what_a_mean_of_connections_is_worth():
+    """What scatters from connection to connection stands in no level of five repeats of one connection."""
+    alone = components(Design.of([[5]]), np.arange(5.0))
+    assert np.isnan([alone.of_mean(n) for n in (1, 5)]).all()
+    # One connection in each calibration: it stays in the level above, and so in the mean.
+    above = components(Design.of([[3], [3]]), np.arange(6.0))
+    assert np.isfinite(above.of_mean(1))
+    assert np.isfinite(components(Design.of([[1, 1, 1]]), np.arange(3.0)).of_mean(1))
+
+
 @pytest.mark.parametrize("above, single", [(0.0, 1.0), (0.5, 1.0), (1.0, 1.0), (0.1, 1.0), (1.0, 0.0)])
 def test_worth_making_is_where_one_more_brings_less(above, single):
     """The closed form against a search; without a floor averaging alone gives 5: √(5/6) = 0.913, √(4/5) = 0.894."""

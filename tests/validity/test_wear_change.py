@@ -10,15 +10,16 @@ from stdfit.base.errors import RequestError
 from stdfit.circuits.line import see_through_line
 from stdfit.trials.wear_pair import Worn, draw_pair
 from stdfit.trials.wear_study import quick_kit, wear_scenario
-from stdfit.uncertainty.budget import Share
+from stdfit.uncertainty.budget import Share, radius
 from stdfit.uncertainty.connections import responses
 from stdfit.validity.change import statistic as wear_statistic
-from stdfit.validity.change.cause import CAPACITANCE, INDUCTANCE
+from stdfit.validity.change.cause import CAPACITANCE, CAUSES, CONTACT, INDUCTANCE, SHIFT
 from stdfit.validity.change.pairs import changes
 from stdfit.validity.change.statistic import has_moved, pointwise_bound, project, unexplained
 from stdfit.validity.change.wear import CHANGED, SAME, UNSURE, wear
 from stdfit.validity.device.pairing import pair_up
-from stdfit.validity.kit import Ancestor
+from stdfit.validity.kit import Ancestor, misfit_at, model
+from stdfit.validity.limit import first_gap
 
 SEED = 31
 
@@ -57,11 +58,29 @@ def test_nothing_has_changed(unworn):
     assert found.shared == "calibration of the analyser"
 
 
-def test_what_has_not_changed_is_as_good_as_it_was(unworn):
-    found = wear(*unworn)
-    assert [one.old_limit_hz for one in found.standards] == [
-        one.limit.limit_hz for one in unworn[0].definitions
-    ]
+def test_what_has_not_changed_serves_as_far_as_no_hidden_change_spoils_it(unworn):
+    """The better of two limits, each from its own bound on the error of the old definition."""
+    old, new = unworn
+    for one, change in zip(wear(old, new).standards, changes(old, new, pair_up(old, new).pairs), strict=True):
+        assert one.verdict == SAME
+        projected, f = project(change), change.frequency_hz
+        below = f < one.old_limit_hz
+        first, design = model(old, one.pair.one, f)
+        second, again = model(new, one.pair.two, f)
+        hidden = np.abs(projected.explained) + projected.unsure()
+        hidden += radius(design, old.shares) + misfit_at(one.pair.one, f)
+        differing = np.abs(first - second) + radius(again, new.shares) + misfit_at(one.pair.two, f)
+        reach = max(first_gap(f, bound, old.within)[0] for bound in (hidden, differing))
+        assert one.old_limit_hz == pytest.approx(reach, rel=0.02)
+        assert min(hidden[below].max(), differing[below].max()) <= old.within * 1.001
+
+
+def test_a_change_as_large_as_the_tolerance_that_may_hide_is_no_room_for_the_old_bound(unworn):
+    """Nothing is common, and the hidden change alone uses up most of the tolerance: the old limit is not repeated."""
+    one = of(wear(unworn[0], replace(unworn[1], calibration="B")), "open")
+    assert one.verdict == SAME
+    assert one.unsure > 0.5 * unworn[0].within
+    assert 0.0 < one.old_limit_hz < 0.95 * one.pair.one.limit.limit_hz
 
 
 def test_a_plane_shift_is_found_named_and_measured(shifted):
@@ -179,7 +198,7 @@ def test_where_the_sweep_is_low_shift_and_capacitance_cannot_be_told_apart():
     low = np.linspace(10e6, 300e6, 201)
     one = of(wear(*kits(Worn("open", "", shift_ps=4.0), frequency_hz=low)), "open")
     told = {cause.name for causes in (one.explained.causes, *one.explained.instead) for cause in causes}
-    assert {"plane shift", "capacitance"} <= told
+    assert {"plane shift", "capacitance at the connector"} <= told
 
 
 def test_the_unit_of_each_cause_is_what_it_says():
@@ -263,7 +282,7 @@ def test_the_other_side_of_a_connector_is_another(unworn):
         )
 
 
-def test_another_plane_is_refused(unworn):
+def test_another_plane_is_refused(unworn, monkeypatch):
     """All full reflections turned by 20 ps: nobody's pin has moved by 6 mm."""
     old, new = unworn
     turned = tuple(
@@ -272,6 +291,29 @@ def test_another_plane_is_refused(unworn):
     )
     with pytest.raises(RequestError, match="reference planes of the kits lie"):
         wear(old, replace(new, session=replace(new.session, means=turned)))
+    # The shift is found by what it is, wherever it stands among the causes.
+    monkeypatch.setitem(CAUSES, "open", (SHIFT, CONTACT, CAPACITANCE))
+    monkeypatch.setitem(CAUSES, "short", (SHIFT, CONTACT, INDUCTANCE))
+    with pytest.raises(RequestError, match="reference planes of the kits lie"):
+        wear(old, replace(new, session=replace(new.session, means=turned)))
+
+
+def test_a_law_that_is_not_finite_is_refused(unworn):
+    """Hardly any degrees of freedom, or sizes whose squares overflow: no verdict comes from them."""
+    (change, *_) = changes(*unworn, pair_up(*unworn).pairs)
+    projected = project(change)
+    spoilt = replace(projected, shares=(replace(projected.shares[0], freedom=1e-300), *projected.shares[1:]))
+    with pytest.raises(RequestError, match="too large or too little known"):
+        has_moved(spoilt)
+    with pytest.raises(RequestError, match="too large or too little known"):
+        has_moved(replace(projected, found=np.full(projected.found.size, 1e200)))
+
+
+def test_lumped_parts_are_told_as_what_they_are_at_the_connector():
+    """They are no part of the standard's own C0 or L0."""
+    reactive = [kind for kinds in CAUSES.values() for kind in kinds if kind.unit in ("fF", "pH")]
+    assert len(reactive) == 3
+    assert all(kind.name.endswith(" at the connector") for kind in reactive)
 
 
 def test_no_common_band_is_refused(unworn):

@@ -44,7 +44,7 @@ def test_rows_hold_terms_in_decibels_and_bounds(errors):
     np.testing.assert_allclose(columns[0], GRID)
     np.testing.assert_allclose(10.0 ** (-columns[1] / 20.0), terms.directivity)
     np.testing.assert_allclose(10.0 ** (-columns[2] / 20.0), terms.source_match)
-    np.testing.assert_allclose(10.0 ** (columns[3] / 20.0) - 1.0, terms.reflection_tracking)
+    np.testing.assert_allclose(1.0 - 10.0 ** (-columns[3] / 20.0), terms.reflection_tracking)
     worst, typical = by_magnitude(errors, (0.1, 1.0))
     np.testing.assert_allclose(columns[4::2].T, worst)
     np.testing.assert_allclose(columns[5::2].T, typical)

@@ -67,6 +67,25 @@ FAULTS = {
     "size inf": (r"calibration_sd = \[[^,]*", "calibration_sd = [inf", "session.mean[0].calibration_sd"),
     "noise negative": (r"noise_sd = ", "noise_sd = -", "session.mean[0].noise_sd"),
     "falling": (r"(noise_sd[^\n]*\nfrequency_hz = \[)[^,]*", r"\g<1>5e9", "session.mean[0].frequency_hz"),
+    "scatter too large": (r"connection_sd = \[[^,]*", "connection_sd = [1e200", "session.connection_sd"),
+    "hardly a freedom": (
+        r"connection_freedom = \[[^,]*",
+        "connection_freedom = [1e-300",
+        "session.connection_freedom",
+    ),
+    "hardly any freedom": (
+        r"session_freedom = [^\n]*",
+        "session_freedom = 1e-300",
+        "session.session_freedom",
+    ),
+    "noise too large": (r"noise_sd = [^\n]*", "noise_sd = 1e200", "session.mean[0].noise_sd"),
+    "size too large": (
+        r"calibration_sd = \[[^,]*",
+        "calibration_sd = [1e200",
+        "session.mean[0].calibration_sd",
+    ),
+    "day too large": (r"session_sd = \[[^,]*", "session_sd = [1e200", "session.mean[0].session_sd"),
+    "at 0 Hz": (r"(noise_sd[^\n]*\nfrequency_hz = \[)[^,]*", r"\g<1>0.0", "session.mean[0].frequency_hz"),
     "unknown key": (r"noise_sd = ", "noise = 1\nnoise_sd = ", "session.mean[0].noise"),
     "control character": ("first of May", "first\\\\tof May", "kit.calibration"),
 }

@@ -114,6 +114,17 @@ FIRST = ("standards", 0)
 CURVE = (*FIRST, "bound_and_extra")
 
 
+def z0_of(number):
+    """Type an offset Z0 as well."""
+
+    def change(data):
+        first = data["standards"][0]
+        first["typed"].append({"term": "z0", "number": number, "unit": "Ω"})
+        first["left_out"] = [one for one in first["left_out"] if one != "z0"]
+
+    return change
+
+
 @pytest.mark.parametrize(
     ("change", "what", "key"),
     [
@@ -136,6 +147,18 @@ CURVE = (*FIRST, "bound_and_extra")
         (put([*FIRST, "typed", 0, "number"], "nan"), "'nan' is not a number", "standards[0].typed[0].number"),
         (put([*FIRST, "typed", 0, "number"], "1e999"), "not a finite number", "standards[0].typed[0]"),
         (put([*FIRST, "typed", 0, "number"], True), "expected", "standards[0].typed[0].number"),
+        (
+            put([*FIRST, "typed", 0, "number"], "1e30"),
+            "an offset delay of ",
+            "standards[0].typed[0].number",
+        ),
+        (
+            put([*FIRST, "typed", 0, "number"], "-1e300"),
+            "must be below 1e+06 ps",
+            "standards[0].typed[0].number",
+        ),
+        (z0_of("-50"), "an offset Z0 of -50 Ω", "standards[0].typed[3].number"),
+        (z0_of("0"), "must be above 0", "standards[0].typed[3].number"),
         (put([*FIRST, "typed", 2, "number"], "1e290"), "no finite reflection", "standards[0].typed"),
         (put([*CURVE, "value"], [0.1]), "equally long", "standards[0].bound_and_extra"),
         (put([*CURVE, "value", 0], -0.1), "expected", "standards[0].bound_and_extra.value[0]"),

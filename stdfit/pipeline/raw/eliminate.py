@@ -104,6 +104,18 @@ def eliminate(gathered: Gathered, highest_hz: float = np.inf, before: Eliminated
     FitError
         The fit does not settle on finite values.
     """
+    try:
+        with np.errstate(all="ignore"):
+            return _eliminated(gathered, highest_hz, before)
+    except np.linalg.LinAlgError as fault:
+        raise FitError(
+            "the given values do not fit the readings at all",
+            "check lengths (ps one way, not mm), resistances, and which file is whose",
+        ) from fault
+
+
+def _eliminated(gathered: Gathered, highest_hz: float, before: Eliminated | None) -> Eliminated:
+    """Fit and push."""
     bench, f = gathered.bench, gathered.frequency_hz
     inside = f <= highest_hz
     mean = np.stack([stack.mean(axis=0) for stack in gathered.stacks], axis=1)

@@ -45,9 +45,9 @@ CONTACT = Kind("contact resistance", (1.0, 0.0, 0.0), "Ω")
 LOAD_RESISTANCE = Kind("resistance of the load or of its contact", (1.0, 0.0, 0.0), "Ω")
 SHIFT = Kind("plane shift", (0.0, 1.0, 0.0), "ps")
 # A series inductance L is t = l/2 and x = l with l = L/Zr; a shunt capacitance t = c/2 and x = −c with c = C·Zr.
-CAPACITANCE = Kind("capacitance", (0.0, 0.5, -1.0), "fF", "1/Zr")
-INDUCTANCE = Kind("inductance", (0.0, 0.5, 1.0), "pH", "Zr")
-REACTANCE = Kind("reactance L − C·Zr²", (0.0, 0.0, 1.0), "pH", "Zr")
+CAPACITANCE = Kind("capacitance at the connector", (0.0, 0.5, -1.0), "fF", "1/Zr")
+INDUCTANCE = Kind("inductance at the connector", (0.0, 0.5, 1.0), "pH", "Zr")
+REACTANCE = Kind("reactance L − C·Zr² at the connector", (0.0, 0.0, 1.0), "pH", "Zr")
 
 CAUSES = {
     "open": (CONTACT, SHIFT, CAPACITANCE),
@@ -171,6 +171,11 @@ def visible(projected: Projected) -> tuple[Cause, ...]:
         sizes(projected, (kind,), weight, projected.shares)[0]
         for kind in CAUSES[projected.change.pair.one.kind]
     )
+
+
+def visible_shift(projected: Projected) -> Cause:
+    """Return the plane shift alone, with the size that the readings would give it."""
+    return next(cause for cause in visible(projected) if cause.unit == SHIFT.unit)
 
 
 def _taken(projected: Projected, kinds: Sequence[Kind], weight: FloatArray) -> float:

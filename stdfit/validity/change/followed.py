@@ -72,7 +72,7 @@ def effect(kit: Kit, definition: Definition, one: Followed, frequency_hz: FloatA
 def weights_of_whole(kind: str, values: FloatArray, reference_ohm: float) -> dict[str, float]:
     """Return how parameters, in trade units, add up to what the readings fix.
 
-    Zr·(τ/Z0 + C0) in ps of an open, (τ·Z0 + L0)/Zr in ps of a short, L − C·Z0² in pH of a load; τ the delay, Z0 the
+    Zr·(τ/Z0 + C0) in ps of an open, (τ·Z0 + L0)/Zr in ps of a short, L − C·Zr² in pH of a load; τ the delay, Z0 the
     impedance of the offset line, Zr the reference impedance. The weights are the derivatives by the parameters.
     """
     delay, z0, zr = float(values[0]), float(values[2]), reference_ohm

@@ -144,7 +144,8 @@ def history(
     alarm = 1.0 - (1.0 - ALARM) ** (1.0 / len(gathered))
     courses = tuple(_course(line, newest, alarm, tolerance, to_hz) for line in gathered)
     return History(
-        tuple(kits), tuple(aside), courses, tolerance, alarm, _notes(kits, courses, same_calibration)
+        *(tuple(kits), tuple(aside), courses, tolerance, alarm),
+        (*_never_served(courses, tolerance), *_notes(kits, courses, same_calibration)),
     )
 
 
@@ -175,6 +176,16 @@ def _course(line: Line, newest: Kit, alarm: float, within: float, to_hz: float |
     if said.verdict != STEP:
         left = time_left(newest, line.definition, one, said.slope, within, to_hz)
     return Course(line.definition.name, one.label, one.unit, line.per, points, said, left, line.common)
+
+
+def _never_served(courses: Sequence[Course], within: float) -> tuple[str, ...]:
+    """Say of which standards no time is told, since their bound is above the tolerance from the first reading on."""
+    names = dict.fromkeys(one.standard for one in courses if one.left is None and one.trend.verdict != STEP)
+    if not names:
+        return ()
+    return (
+        f"{', '.join(names)}: not within {within:g} even now, from the first reading on: no time left is told",
+    )
 
 
 def _notes(kits: Sequence[Dated], courses: Sequence[Course], same_calibration: bool) -> tuple[str, ...]:

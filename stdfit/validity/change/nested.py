@@ -87,8 +87,12 @@ class Components:
     def of_mean(self, connections: int) -> float:
         """Return the standard uncertainty of a mean of so many connections in one calibration.
 
-        u² = σa² + (σb² + σe²/r)/n, for n connections of r readings each.
+        u² = σa² + (σb² + σe²/r)/n, for n connections of r readings each. NaN where neither σb nor the σa that would
+        hold it is known: one connection does not say how connections scatter. Without σa the calibration's part is not
+        in it.
         """
+        if np.isnan(self.sd[:2]).all():
+            return float("nan")
         a, b, e = np.nan_to_num(self.sd) ** 2
         return float(np.sqrt(a + (b + e / self.repeats) / connections))
 

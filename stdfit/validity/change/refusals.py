@@ -8,7 +8,7 @@ import numpy as np
 
 from stdfit.base.errors import RequestError
 from stdfit.circuits.connectors import family_of
-from stdfit.validity.change.cause import visible
+from stdfit.validity.change.cause import visible_shift
 from stdfit.validity.change.difference import corrected_by_itself
 from stdfit.validity.change.statistic import Projected
 from stdfit.validity.kit import Kit, SourceFile
@@ -82,7 +82,7 @@ def refuse_other_plane(projected: Sequence[Projected]) -> None:
     ------
     RequestError
     """
-    shifts = [visible(one)[1].value for one in projected if one.change.pair.one.kind != "load"]
+    shifts = [visible_shift(one).value for one in projected if one.change.pair.one.kind != "load"]
     if len(shifts) < 2:
         return
     middle = float(np.mean(shifts))

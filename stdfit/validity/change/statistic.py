@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray, as_pairs, frozen_float
+from stdfit.base.errors import RequestError
 from stdfit.uncertainty.budget import Share, radius, radius_of_planes
 from stdfit.uncertainty.connections import responses, running_mean
 from stdfit.validity.change.difference import Change, Effect
@@ -90,7 +91,7 @@ def project(change: Change) -> Projected:
     """
     f, n = change.frequency_hz, change.frequency_hz.size
     basis = responses(change.gamma, f, change.reference_ohm)
-    weight = 1.0 / np.maximum(change.noise_sd**2 + n / PIECES * smooth_variance(change), 1e-16)
+    weight = 1.0 / np.maximum(change.noise_sd**2 + n / PIECES * smooth_variance(change)[0], 1e-16)
     scaled = as_pairs(basis) * UNITS
     both = np.concatenate([weight, weight])
     size, direction = np.linalg.eigh(scaled.T @ (both[:, None] * scaled))
@@ -104,13 +105,16 @@ def project(change: Change) -> Projected:
     return Projected(change, basis, parts, projector, found, tuple(shares))
 
 
-def smooth_variance(change: Change) -> FloatArray:
-    """Return the variance per component of all errors with a correlation length, shape (n,)."""
+def smooth_variance(change: Change) -> tuple[FloatArray, FloatArray]:
+    """Return the variance v per component of all errors with a correlation length, and Σ v²/ν, each of shape (n,)."""
     variance = np.zeros(change.frequency_hz.size)
+    estimated = np.zeros(change.frequency_hz.size)
     for effect in change.effects:
         if len(effect.vectors) > 1:
-            variance += 0.5 * np.max([(np.abs(own) ** 2).sum(axis=1) for own in effect.vectors], axis=0)
-    return variance
+            own = 0.5 * np.max([(np.abs(one) ** 2).sum(axis=1) for one in effect.vectors], axis=0)
+            variance += own
+            estimated += own**2 / effect.freedom
+    return variance, estimated
 
 
 def share_of(projector: FloatArray, effect: Effect) -> Share:
@@ -156,26 +160,25 @@ def has_moved(projected: Projected) -> Tested:
     The statistic is the smallest T² = βᵀ·C⁻¹·β over the correlation lengths. Its law is drawn from the errors: all
     smooth ones at one of the lengths, each length equally likely, and each variance with its degrees of freedom (JCGM
     101:2008, 6.4.9).
+
+    Raises
+    ------
+    RequestError
+        The law is not finite.
     """
     from scipy.special import chdtri
 
     covariances = projected.covariances
     rank = projected.found.size
     inverse = np.asarray(np.linalg.pinv(covariances, rcond=1e-12, hermitian=True), dtype=float)
-    rng = np.random.default_rng(SEED)
-    drawn = np.zeros((DRAWS, rank))
-    lengths = rng.integers(covariances.shape[0], size=DRAWS)
-    for share in projected.shares:
-        value, vector = np.linalg.eigh(share.covariances)
-        roots = vector * np.sqrt(np.maximum(value, 0.0))[:, None, :]
-        numbers = rng.standard_normal((DRAWS, rank))
-        if np.isfinite(share.freedom):
-            numbers *= np.sqrt(share.freedom / rng.chisquare(share.freedom, DRAWS))[:, None]
-        for length in range(covariances.shape[0]):
-            root = roots[min(length, roots.shape[0] - 1)]
-            drawn[lengths == length] += numbers[lengths == length] @ root.T
-    law = _smallest(drawn, inverse)
-    statistic = float(_smallest(projected.found[None], inverse)[0])
+    with np.errstate(all="ignore"):  # what is not finite is refused
+        law = _smallest(_drawn(projected), inverse)
+        statistic = float(_smallest(projected.found[None], inverse)[0])
+    if not (np.isfinite(law).all() and np.isfinite(statistic)):
+        raise RequestError(
+            f"the errors of '{projected.change.pair.label}' are too large or too little known to compare with",
+            "look at the sizes and degrees of freedom in the tables 'session' of both kit files, or fit again",
+        )
     usual = float(chdtri(rank, 0.05))
     return Tested(
         statistic,
@@ -183,6 +186,24 @@ def has_moved(projected: Projected) -> Tested:
         float((1 + np.count_nonzero(law >= statistic)) / (1 + DRAWS)),
         max(1.0, float(np.quantile(law, 0.95)) / usual),
     )
+
+
+def _drawn(projected: Projected) -> FloatArray:
+    """Return differences drawn from their errors, shape (`DRAWS`, k)."""
+    count, rank = projected.covariances.shape[0], projected.found.size
+    rng = np.random.default_rng(SEED)
+    drawn = np.zeros((DRAWS, rank))
+    lengths = rng.integers(count, size=DRAWS)
+    for share in projected.shares:
+        value, vector = np.linalg.eigh(share.covariances)
+        roots = vector * np.sqrt(np.maximum(value, 0.0))[:, None, :]
+        numbers = rng.standard_normal((DRAWS, rank))
+        if np.isfinite(share.freedom):
+            numbers *= np.sqrt(share.freedom / rng.chisquare(share.freedom, DRAWS))[:, None]
+        for length in range(count):
+            root = roots[min(length, roots.shape[0] - 1)]
+            drawn[lengths == length] += numbers[lengths == length] @ root.T
+    return drawn
 
 
 def _smallest(values: FloatArray, inverse: FloatArray) -> FloatArray:
@@ -211,18 +232,25 @@ class Rest:
 def unexplained(projected: Projected) -> Rest:
     """Compare what the parts do not explain with noise, smooth errors, and the correction's own part of a change.
 
-    The largest of m independent |r|²/σ² exceeds 2·x with a probability of m·e^(−x) at most. Of definitions nothing is
-    said: what their models do not follow is not in them.
+    One |r|²/σ² exceeds q with a probability of (1 + q/ν)^(−ν/2), e^(−q/2) for infinite degrees of freedom ν (Welch and
+    Satterthwaite), and any of n with n times that at most, however they go together (C. E. Bonferroni). Of definitions
+    nothing is said: what their models do not follow is not in them.
     """
     change = projected.change
     rest = change.difference - projected.explained
     window = 1 + 2 * (rest.size // (2 * WINDOWS))
     averaged = running_mean(rest, window)
-    variance = change.noise_sd**2 / window + (change.mixing * np.abs(projected.explained)) ** 2
-    variance = variance + smooth_variance(change)
-    ratio = np.abs(averaged) ** 2 / np.maximum(variance, 1e-18)
-    place = int(np.argmax(ratio))
-    chance = min(1.0, rest.size / window * float(np.exp(-0.5 * ratio[place])))
+    places = np.arange(rest.size)
+    # Windows are shorter at the ends.
+    taken = np.minimum(places + window // 2, rest.size - 1) - np.maximum(places - window // 2, 0) + 1
+    known = change.noise_sd**2 / taken + (change.mixing * np.abs(projected.explained)) ** 2
+    smooth, estimated = smooth_variance(change)
+    variance = np.maximum(known + smooth, 1e-18)
+    freedom = variance**2 / np.maximum(estimated, 1e-300)
+    ratio = np.abs(averaged) ** 2 / variance
+    single = np.exp(-0.5 * freedom * np.log1p(ratio / freedom))
+    place = int(np.argmin(single))
+    chance = min(1.0, rest.size * float(single[place]))
     if change.by == "definitions":
         chance = 1.0
     return Rest(float(np.abs(averaged[place])), float(change.frequency_hz[place]), chance)

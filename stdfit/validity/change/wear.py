@@ -1,7 +1,7 @@
 """Wear: has a standard changed since it was characterised, in what, and what is its old definition still good for."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -10,6 +10,7 @@ from stdfit.validity.change.cause import Cause, Explained, explain, visible
 from stdfit.validity.change.difference import same_correction
 from stdfit.validity.change.pairs import changes, weak_points
 from stdfit.validity.change.refusals import refuse, refuse_other_plane
+from stdfit.validity.change.serving import limits_of_old_and_new, limits_unless_hidden
 from stdfit.validity.change.statistic import (
     Projected,
     Rest,
@@ -22,8 +23,7 @@ from stdfit.validity.change.statistic import (
 )
 from stdfit.validity.device.difference import Difference, ratio_of
 from stdfit.validity.device.pairing import Pair, Pairing, pair_up
-from stdfit.validity.kit import Definition, Kit, model
-from stdfit.validity.limits import limits
+from stdfit.validity.kit import Kit
 
 CHANGED, SAME, UNSURE = "changed", "not changed", "too uncertain to tell"
 
@@ -149,9 +149,11 @@ def wear(old: Kit, new: Kit, *, same_calibration: bool = False) -> Wear:
     found = changes(old, new, pairing.pairs, same_calibration=same_calibration)
     projected = [project(one) for one in found]
     refuse_other_plane(projected)
+    both = limits_of_old_and_new(old, new, pairing.pairs)
+    kept = limits_unless_hidden(old, projected)
     standards = tuple(
-        _standard(old, one, len(found), *both)
-        for one, both in zip(projected, _limits(old, new, pairing.pairs), strict=True)
+        _standard(old, one, len(found), *each, beside)
+        for one, each, beside in zip(projected, both, kept, strict=True)
     )
     return Wear(
         old,
@@ -166,7 +168,7 @@ def wear(old: Kit, new: Kit, *, same_calibration: bool = False) -> Wear:
 
 
 def _standard(
-    old: Kit, projected: Projected, count: int, old_limit_hz: float, new_limit_hz: float
+    old: Kit, projected: Projected, count: int, old_limit_hz: float, new_limit_hz: float, beside_hz: float
 ) -> StandardWear:
     """Return the verdict on one standard; the levels are shared out among all of them."""
     change = projected.change
@@ -201,8 +203,8 @@ def _standard(
         unsure_at_hz=float(f[place]),
         judged_hz=float(f[judged][-1]),
         sharper=float(wide[place] / unsure[place]) if unsure[place] > 0.0 else 1.0,
-        # What has not changed is as good as it was: the difference of two fits is no error of the old one.
-        old_limit_hz=change.pair.one.limit.limit_hz if verdict == SAME else old_limit_hz,
+        # Both hold; the second leaves out what the lumped parts do not explain, and so serves only without a change.
+        old_limit_hz=old_limit_hz if verdict == CHANGED else max(old_limit_hz, beside_hz),
         new_limit_hz=new_limit_hz,
         other_cause=other_cause,
     )
@@ -222,17 +224,3 @@ def drift_like(standards: Sequence[StandardWear]) -> tuple[str, ...]:
         f"{names}: all have moved by about {middle:+.2g} ps, as the drift of a cable or analyser would make them: see "
         "whether a standard that nobody uses has moved as well",
     )
-
-
-def _limits(old: Kit, new: Kit, pairs: Sequence[Pair]) -> list[tuple[float, float]]:
-    """Return up to where each old definition serves, |Γ_old − Γ_new| + bound ≤ tolerance, and each new one."""
-    kept = replace(new, definitions=tuple(pair.two for pair in pairs))
-    before = {pair.two.name: pair.one for pair in pairs}
-
-    def moved(definition: Definition, frequency_hz: FloatArray) -> FloatArray:
-        one = model(old, before[definition.name], frequency_hz)[0]
-        return np.asarray(np.abs(one - model(new, definition, frequency_hz)[0]))
-
-    ((_, with_old),) = limits(kept, [old.within], moved)
-    ((_, with_new),) = limits(kept, [old.within])
-    return [(one.limit_hz, two.limit_hz) for one, two in zip(with_old, with_new, strict=True)]

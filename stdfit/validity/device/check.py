@@ -14,9 +14,6 @@ from stdfit.validity.limit import first_gap
 ALLOWED_OUTSIDE = 0.05
 """Part of the frequencies that may lie outside: the bounds are of 95 %."""
 
-STANDARDS = 3
-"""Standards of a correction, and errors of a kit that are independent of each other at a frequency."""
-
 AGREES, DOUBT, FAILS, SILENT = "agrees", "in doubt", "fails", "tells nothing"
 
 Mask = npt.NDArray[np.bool_]
@@ -183,7 +180,8 @@ def curve_factor(curves: int) -> float:
     """Return by how many bounds whole curves may be exceeded by chance, with 95 % confidence.
 
     Smooth errors have about four independent values over a sweep. That none of m = 4·curves normal values exceeds
-    k bounds of 95 % has the probability 0.95 when Φ(1.960·k) = (1 + 0.95^{1/m})/2.
+    k bounds of 95 % has the probability 0.95 when Φ(1.960·k) = (1 + 0.95^{1/m})/2. Errors that curves share make a
+    false alarm rarer.
 
     Parameters
     ----------
@@ -195,8 +193,8 @@ def curve_factor(curves: int) -> float:
 
     Examples
     --------
-    >>> round(curve_factor(1), 2), round(curve_factor(3), 2)
-    (1.27, 1.46)
+    >>> round(curve_factor(1), 2), round(curve_factor(3), 2), round(curve_factor(10), 2)
+    (1.27, 1.46, 1.64)
     """
     normal = NormalDist()
     level = 0.95 ** (1.0 / (INDEPENDENT * max(curves, 1)))
@@ -234,8 +232,11 @@ class Check:
 
     @property
     def factor(self) -> float:
-        """How many bounds a curve may be off by chance: any number of devices share the errors of three standards."""
-        return curve_factor(min(len({one.device for one in self.telling}), STANDARDS))
+        """How many bounds a curve may be off by chance.
+
+        Every finding counts: devices share the errors of the kit, but each has connections and a value of its own.
+        """
+        return curve_factor(len(self.telling))
 
     @property
     def telling(self) -> tuple[Finding, ...]:

@@ -61,6 +61,10 @@ def given_value(
         In trade units; without an uncertainty a parameter is taken as exact.
     frequency_hz : array of shape (n,)
     reference_ohm : float
+
+    Notes
+    -----
+    A bound is no more than `LARGEST`. Figures that give no reflection at all tell nothing: the bound is NaN there.
     """
     values, sizes, assumed = [], [], []
     for parameter in PARAMETERS[kind]:
@@ -73,13 +77,24 @@ def given_value(
                 assumed.append(f"{parameter.label} {value:g} ± {u:g} {parameter.unit}")
         values.append(value)
         sizes.append(u)
-    gamma, slopes = reflection(kind, values, frequency_hz, reference_ohm)
-    steps = slopes * np.array(sizes)
+    with np.errstate(all="ignore"):  # a bench may hold any figures
+        gamma, slopes = reflection(kind, values, frequency_hz, reference_ohm)
+        steps = np.where(np.array(sizes) > 0.0, slopes * np.array(sizes), 0.0)
+    # A step this long makes the bound the largest anyway.
+    steps = _clipped(steps.real) + 1j * _clipped(steps.imag)
     plane = np.stack(
         [(steps.real**2).sum(-1), (steps.imag**2).sum(-1), (steps.real * steps.imag).sum(-1)], axis=-1
     )
     bound = np.minimum(radius_of_planes([plane[None]], [np.inf]), LARGEST)
-    return Value("its given values", gamma, bound, tuple(assumed))
+    known = np.isfinite(gamma)
+    return Value(
+        "its given values", np.where(known, gamma, 0.0), np.where(known, bound, np.nan), tuple(assumed)
+    )
+
+
+def _clipped(steps: FloatArray) -> FloatArray:
+    longest = 100.0 * LARGEST
+    return np.clip(np.nan_to_num(steps, nan=longest), -longest, longest)
 
 
 def _usual(kind: str, parameter: Parameter, reference_ohm: float) -> tuple[float, float]:
@@ -102,7 +117,7 @@ def value_from_kit(kit: Kit, definition: Definition, frequency_hz: FloatArray) -
 
 
 def value_from_file(sweep: Sweep, stated: StatedBound, frequency_hz: FloatArray) -> Value:
-    """Return a value that was read elsewhere; nothing is known outside its frequencies.
+    """Return a value that was read elsewhere; nothing is known outside its frequencies, nor outside a table of bounds.
 
     Between its points it is a straight line, after the phase that grows with frequency is turned back. That is wrong by
     at most h²/8·|Γ″|, which is added to the bound: 4t(1 − t)·|Δ²Γ|/8 at the part t of a step.
@@ -112,12 +127,15 @@ def value_from_file(sweep: Sweep, stated: StatedBound, frequency_hz: FloatArray)
     sweep : Sweep
         m points.
     stated : StatedBound
+        One element holds for all frequencies.
     frequency_hz : array of shape (n,)
     """
     own = sweep.frequency_hz
     slope = phase_slope(own, sweep.gamma)
     straight = sweep.gamma * np.exp(-1j * slope * own)
     known = (frequency_hz >= own[0]) & (frequency_hz <= own[-1])
+    if stated.frequency_hz.size > 1:
+        known &= (frequency_hz >= stated.frequency_hz[0]) & (frequency_hz <= stated.frequency_hz[-1])
     gamma = np.interp(frequency_hz, own, straight.real) + 1j * np.interp(frequency_hz, own, straight.imag)
     gamma = gamma * np.exp(1j * slope * frequency_hz)
     left = np.clip(np.searchsorted(own, frequency_hz, side="right") - 1, 0, own.size - 2)

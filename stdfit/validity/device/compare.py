@@ -7,7 +7,6 @@ import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.errors import RequestError
-from stdfit.circuits.error_box import corrected, solve_error_box
 from stdfit.circuits.residual_map import device_weights, term_weights
 from stdfit.validity.device.bound import (
     DeviceMap,
@@ -18,9 +17,9 @@ from stdfit.validity.device.bound import (
     three_of,
 )
 from stdfit.validity.device.difference import Difference, ratio_of
-from stdfit.validity.device.joint import finite_curve
+from stdfit.validity.device.ideal import largest_change
 from stdfit.validity.device.pairing import Pair, Pairing, pair_up, shared
-from stdfit.validity.kit import Definition, Kit
+from stdfit.validity.kit import Definition, Kit, curve
 
 POINTS = 401
 """Frequencies at which kits are compared, besides those of the misfits."""
@@ -113,7 +112,7 @@ def standard_difference(one: Kit, two: Kit, pair: Pair, frequency_hz: FloatArray
         A frequency lies outside the readings of one of them, or too close to zero.
     """
     (gamma_one, bound_one), (gamma_two, bound_two) = (
-        finite_curve(kit, own, frequency_hz) for kit, own in ((one, pair.one), (two, pair.two))
+        curve(kit, own, frequency_hz) for kit, own in ((one, pair.one), (two, pair.two))
     )
     difference, bound = np.abs(gamma_one - gamma_two), np.hypot(bound_one, bound_two)
     return Difference(pair.label, frequency_hz, difference, bound, ratio_of(difference, bound))
@@ -198,13 +197,8 @@ def _weighted(weights: ComplexArray, change: ComplexArray) -> ComplexArray:
 
 
 def _exactly(one: DeviceMap, two: DeviceMap) -> float:
-    """Return how far apart devices of |Γ| = 1 are shown at most: read as the one kit, corrected with the other."""
-    try:
-        box = solve_error_box(two.standards, one.standards)
-    except np.linalg.LinAlgError:  # two standards of the other kit are the same
-        return float("nan")
-    shown: ComplexArray = corrected(box[:, None], all_phases())
-    return float(np.abs(shown - all_phases()).max())
+    """Return how far apart passive devices are shown at most: read as the one kit, corrected with the other."""
+    return max(largest_change(*pair) for pair in zip(two.standards, one.standards, strict=True))
 
 
 def _grid(pair: Pair) -> FloatArray:

@@ -6,38 +6,10 @@ tried; a covariance has to come from one of them, and here it comes from the one
 
 import numpy as np
 
-from stdfit.base.arrays import ComplexArray, FloatArray
-from stdfit.base.errors import RequestError
+from stdfit.base.arrays import FloatArray
 from stdfit.uncertainty.budget import Share, plane
 from stdfit.uncertainty.region import effective_freedom
-from stdfit.validity.kit import Definition, Kit, curve, model
-
-
-def finite_curve(
-    kit: Kit, definition: Definition, frequency_hz: FloatArray
-) -> tuple[ComplexArray, FloatArray]:
-    """Return Γ and its bound like `curve`, and refuse frequencies at which they overflow.
-
-    Parameters
-    ----------
-    kit : Kit
-    definition : Definition
-    frequency_hz : array of shape (n,)
-
-    Raises
-    ------
-    RequestError
-        A frequency lies outside the readings, or is so close to zero that nothing can be computed.
-    """
-    with np.errstate(all="ignore"):
-        gamma, bound = curve(kit, definition, frequency_hz)
-    faulty = ~(np.isfinite(gamma) & np.isfinite(bound))
-    if faulty.any():
-        raise RequestError(
-            f"nothing can be computed at {float(frequency_hz[faulty][0]):.4g} Hz, so close to zero",
-            f"ask for frequencies from {definition.read_low_hz:.10g} Hz on, where the readings begin",
-        )
-    return gamma, bound
+from stdfit.validity.kit import Definition, Kit, model
 
 
 def own_covariance(

@@ -11,7 +11,7 @@ from stdfit.validity.entry.choice import Choice, choose
 from stdfit.validity.entry.error import distance, stated
 from stdfit.validity.entry.kept import ORDER, held
 from stdfit.validity.entry.terms import accepted_places, digits_of
-from stdfit.validity.entry.units import Units, text_of, typing_of
+from stdfit.validity.entry.units import Units, text_of, typing_of, units_from
 from stdfit.validity.kit import Definition, Kit, curve
 from stdfit.validity.limit import Limit
 from stdfit.validity.limits import GRID_POINTS, ladder, limit_grid, limits
@@ -38,7 +38,7 @@ class Wanted:
     """
 
     accepts: tuple[str, ...] | None = None
-    units: Units = field(default_factory=lambda: Units({}))
+    units: Units = field(default_factory=lambda: units_from((), None))
     digits: tuple[str, ...] = ()
     within: float | None = None
     no_negative: bool = False
