@@ -248,9 +248,9 @@ def unexplained(projected: Projected) -> Rest:
     variance = np.maximum(known + smooth, 1e-18)
     freedom = variance**2 / np.maximum(estimated, 1e-300)
     ratio = np.abs(averaged) ** 2 / variance
-    single = np.exp(-0.5 * freedom * np.log1p(ratio / freedom))
-    place = int(np.argmin(single))
-    chance = min(1.0, rest.size * float(single[place]))
+    logarithm = -0.5 * freedom * np.log1p(ratio / freedom)
+    place = int(np.argmin(logarithm))
+    chance = min(1.0, rest.size * float(np.exp(logarithm[place])))
     if change.by == "definitions":
         chance = 1.0
     return Rest(float(np.abs(averaged[place])), float(change.frequency_hz[place]), chance)
