@@ -32,9 +32,8 @@ def history_svg(found: History) -> str:
             draw_course(axes, course)
         stream = io.StringIO()
         with warnings.catch_warnings():
-            warnings.filterwarnings(
-                "ignore", "Glyph .* missing"
-            )  # a name in another script is drawn as boxes
+            # A name in another script is drawn as boxes.
+            warnings.filterwarnings("ignore", "Glyph .* missing")
             figure.savefig(stream, format="svg", metadata={"Title": TITLE, "Date": None, "Creator": None})
     return stream.getvalue()
 
@@ -46,11 +45,20 @@ def draw_course(axes: Axes, course: Course) -> list[Artist]:
     ends = np.array([[point.value - point.low, point.high - point.value] for point in course.points]).T
     own = np.array([point.own_u95 for point in course.points])
     artists: list[Artist] = [
-        *axes.errorbar(x, value, yerr=ends, fmt="none", ecolor="0.75", capsize=2.0).get_children(),
         *axes.errorbar(
-            x, value, yerr=own, fmt="o", color="C0", elinewidth=2.5, markersize=4.0
+            x, value, yerr=ends, fmt="none", ecolor="0.75", capsize=2.0, label="95 %"
         ).get_children(),
-        *axes.plot(*_described(course, x, value), color="C1", linewidth=1.2),
+        *axes.errorbar(
+            x,
+            value,
+            yerr=own,
+            fmt="o",
+            color="C0",
+            elinewidth=2.5,
+            markersize=4.0,
+            label="of it each kit's own",
+        ).get_children(),
+        *axes.plot(*_described(course, x, value), color="C1", linewidth=1.2, label=course.trend.verdict),
     ]
     axes.set_title(
         f"{course.standard}: {course.label} ({course.trend.verdict})", loc="left", parse_math=False
@@ -58,6 +66,8 @@ def draw_course(axes: Axes, course: Course) -> list[Artist]:
     axes.set_xlabel("matings" if course.per == MATING else "months since the first kit")
     axes.set_ylabel(course.unit, parse_math=False)
     axes.grid(visible=True, color="0.92")
+    axes.legend(fontsize="small", frameon=False, ncols=3, loc="upper center")
+    axes.margins(y=0.25)
     return artists
 
 
