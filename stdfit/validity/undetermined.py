@@ -8,7 +8,6 @@ import numpy.typing as npt
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.fitting.problem import Quantity
 from stdfit.fitting.unknown_box import RawProblem, apart, coupled
-from stdfit.uncertainty.budget import inverse_of
 from stdfit.validity.choose import INDEPENDENT_PIECES
 
 READING_SIZE = 1e-3
@@ -22,11 +21,6 @@ UNFIXED_SCALE = 0.003
 
 UNREACHED = 1e-12
 """Smallest eigenvalue, against the largest, of directions in which quantities are told at all."""
-
-UNSEEN = 3.0
-"""A given value is checked poorly where the readings know it worse than this many times its own uncertainty."""
-
-MOST_TOLD = 4
 
 COINCIDE = 0.1
 """How well standards must be told from each other, against +1, −1 and 0, else the error terms are open."""
@@ -77,42 +71,6 @@ def undetermined(raw: RawProblem, scaled: FloatArray) -> tuple[str, ...]:
                 "the lines. Give the DC resistance of the load"
             )
     return (*said, *_coinciding(raw, gamma, inside))
-
-
-def unchecked(raw: RawProblem, scaled: FloatArray) -> tuple[str, ...]:
-    """Return a sentence on the given values in which a mistake would stay unseen: the bounds rest on them.
-
-    Without its own evidence of precision p a value whose variance is c would have the variance c/(1 − p·c): so well do
-    the readings and all other evidence know it.
-
-    Parameters
-    ----------
-    raw : RawProblem
-    scaled : array of shape (p,)
-    """
-    problem = raw.problem
-    gamma, design = raw.model(scaled)
-    inside = raw.weights.sum(axis=1) > 0.0
-    _, weight = coupled(gamma[inside], raw.weights[inside])
-    _, precision = problem.evidence()
-    normal = np.einsum("nsp,nst,ntq->pq", design[inside].conj(), weight, design[inside]).real
-    variance = np.diag(inverse_of(normal + np.diag(precision)))
-    told = []
-    for k, i in enumerate(problem.fitted):
-        one = problem.quantities[i]
-        if one.role != "given" or one.evidence_u is None:
-            continue
-        own = 1.0 - precision[k] * variance[k]
-        known = np.sqrt(variance[k] / own) * one.scale if own > UNREACHED else np.inf
-        if known > UNSEEN * one.evidence_u:
-            seen = f"below about {2.0 * known:.2g} {one.parameter.unit}" if known < 1e6 else "of any size"
-            told.append((known / one.evidence_u, f"in {one.standard}, {one.parameter.label}, {seen}"))
-    if not told:
-        return ()
-    worst = "; ".join(text for _, text in sorted(told, reverse=True)[:MOST_TOLD])
-    return (
-        f"the bounds rest on the given values, which the readings check poorly: a mistake {worst} stays unseen",
-    )
 
 
 def _precision(quantity: Quantity) -> float:

@@ -6,6 +6,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from stdfit.base.errors import FitError
 from stdfit.base.records import Sweep
 from stdfit.circuits.error_box import seen_raw
 from stdfit.circuits.standard import reflection
@@ -141,7 +142,7 @@ def test_bounds_hold_and_say_what_they_are_of(scattered):
     assert names == {"connections", "noise", "given values", "assumed values", "model errors"}
     assert {one.shape for one in kit.definitions} == {"constant+Z0", "even+Z0", "R+L+delay+Z0"}
     (line,) = kit.warnings
-    assert line.startswith("the bounds rest on the given values")
+    assert line.startswith("the bounds rest on the given lengths and resistances")
 
 
 def test_a_kit_file_of_it_reads_back(scattered):
@@ -247,3 +248,22 @@ def test_lines_that_are_shared_are_one_line():
     kit = characterise(replace(bench, standards=entries), parts.sweeps(), created="2000-01-01")
     delays = [kit.definition(name).parameters[0] for name in ("open", "load")]
     assert delays[0].of == delays[1].of == "open.offset_delay_ps"
+
+
+def lengths(**changed):
+    """Return what was measured, with other lengths in ps."""
+    given = {name: dict(evidence) for name, evidence in MEASURED.items()}
+    for name, value in changed.items():
+        given[name.replace("_", " ")]["offset_delay_ps"] = (value, 0.1)
+    return given
+
+
+def test_lengths_in_the_wrong_unit_are_told_and_are_no_fault_of_the_program():
+    """10 mm and 20 mm typed as ps."""
+    parts = Parts(given=lengths(offset_short_1=10.0, offset_short_2=20.0))
+    try:
+        said = " ".join(parts.kit().warnings)
+    except FitError as fault:
+        said = str(fault)
+    assert "length" in said
+    assert "one way" in said

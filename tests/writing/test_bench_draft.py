@@ -159,3 +159,17 @@ def test_the_offers_in_the_comments_are_good_bench_lines(tmp_path):
         ["offset_delay_ps"],
         ["resistance_ohm"],
     ]
+
+
+def test_standards_of_one_kind_are_told_apart_by_what_their_files_are_called(tmp_path):
+    names = [f"{stem}-{k}.s1p" for stem in ("short", "offset-short-1", "offset-short-2") for k in (1, 2)]
+    for name in names:
+        put(tmp_path, name, gamma_of("short"))
+    found, _ = find_standards(tmp_path)
+    assert {one.name: one.files for one in found} == {
+        "offset short 1": ("offset-short-1-1.s1p", "offset-short-1-2.s1p"),
+        "offset short 2": ("offset-short-2-1.s1p", "offset-short-2-2.s1p"),
+        "short": ("short-1.s1p", "short-2.s1p"),
+    }
+    bench = parse_bench(draft("Shed", found), tmp_path / "bench.toml")
+    assert sorted(entry.name for entry in bench.standards) == ["offset short 1", "offset short 2", "short"]

@@ -22,7 +22,13 @@ from stdfit.validity.choose import NEAR, Choice
 from stdfit.validity.contradicted import contradicted
 from stdfit.validity.define import Settled, define, given_contradictions
 from stdfit.validity.kit import Kit, SourceFile
-from stdfit.validity.undetermined import unchecked, undetermined
+from stdfit.validity.undetermined import undetermined
+
+UNCHECKED = (
+    "the bounds rest on the given lengths and resistances being right within their uncertainties: the readings check "
+    "them poorly, and a wrong one may go unseen. Measure them twice"
+)
+"""Said of every such kit: a length wrong by ten of its uncertainties may pass for an error of the models."""
 
 SHORTER = (0.8, 0.6, 0.45)
 """Parts of the sweep over which the set is fitted too; a shorter one is kept where its limit is clearly higher."""
@@ -132,7 +138,7 @@ def _kit(gathered: Gathered, found: Eliminated, files: tuple[SourceFile, ...], c
             *gathered.warnings,
             *scatter_cautions(problem.observed, found.scatter, gathered.family, gathered.bench.connector),
             *undetermined(found.raw, found.solution.values),
-            *unchecked(found.raw, found.solution.values),
+            UNCHECKED,
             *given_contradictions(settled),
             *contradicted(
                 problem, settled.values, found.errors[f[found.points] <= top], gathered.bench.within
