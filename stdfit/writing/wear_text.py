@@ -22,7 +22,8 @@ NEVER = 1e-3
 
 def wear_text(found: Wear) -> str:
     """Return verdict, causes, and what the old definition is still good for."""
-    lines = [f"{found.old.name} ({found.old.created}) against {found.new.name} ({found.new.created})", ""]
+    old, new = (f"{kit.name} ({kit.measured or kit.created})" for kit in (found.old, found.new))
+    lines = [f"{old} against {new}", ""]
     rows = [["standard", "verdict", "by chance", "largest Eₙ", "change known within"]]
     for one in found.standards:
         ratio, at_hz = one.difference.largest_ratio
