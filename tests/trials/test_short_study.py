@@ -1,4 +1,4 @@
-"""A short version of the long study: two benches of every family, with what so few can tell.
+"""A short version of the long study: three benches of every family, with what so few can tell.
 
 Neighbouring points of a curve, and the three standards of a bench, share one analyser and fail together, so a bench
 counts once. From bench to bench the part of the points that the bound covers has a standard deviation of 0.08 to
@@ -11,7 +11,7 @@ import pytest
 
 from stdfit.trials.study import family_names, run
 
-BENCHES = 2
+BENCHES = 3
 SPREAD = 0.10
 FAMILIES = tuple(family_names())
 
@@ -23,7 +23,7 @@ def rows():
 
 @pytest.mark.parametrize("family", FAMILIES)
 def test_every_family_is_covered(rows, family):
-    """Two benches: 0.95 − 3·0.10/√2 = 0.74. A bound that forgets a source of error falls far below it."""
+    """Three benches: 0.95 − 3·0.10/√3 = 0.78. A bound that forgets a source of error falls far below it."""
     row = rows[family]
     assert row.failed == 0
     assert row.benches == BENCHES
@@ -32,7 +32,7 @@ def test_every_family_is_covered(rows, family):
 
 
 def test_all_benches_together(rows):
-    """About 66 benches: 0.95 − 3·0.10/√66 = 0.91; for yes-or-no figures the binomial √(0.95·0.05/N)."""
+    """About 100 benches: 0.95 − 3·0.10/√100 = 0.92; for yes-or-no figures the binomial √(0.95·0.05/N)."""
     row = rows["all"]
     count = BENCHES * len(FAMILIES)
     assert row.benches == count
