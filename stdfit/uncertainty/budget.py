@@ -73,6 +73,14 @@ def outer(image: FloatArray) -> FloatArray:
     return np.asarray(image @ np.swapaxes(image, -1, -2))
 
 
+def factor_of(covariance: FloatArray) -> FloatArray:
+    """Return R with R·Rᵀ = C, shape (p, p); quantities of very different units are scaled first."""
+    size = np.sqrt(np.maximum(np.diag(covariance), 0.0))
+    size = np.where(size > 0.0, size, 1.0)
+    value, vector = np.linalg.eigh(covariance / size[:, None] / size)
+    return np.asarray(size[:, None] * vector * np.sqrt(np.maximum(value, 0.0)))
+
+
 def inverse_of(normal: FloatArray) -> FloatArray:
     """Return inverses of a stack of normal matrices, scaled first.
 

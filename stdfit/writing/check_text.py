@@ -5,7 +5,7 @@ from typing import Any
 
 from stdfit.validity.device.check import AGREES, DOUBT, FAILS, Check, Finding
 from stdfit.writing.aligned import aligned
-from stdfit.writing.numbers import frequency
+from stdfit.writing.numbers import figure, finite, frequency
 
 COLUMNS = (
     "device",
@@ -60,7 +60,7 @@ def _row(one: Finding, factor: float) -> list[str]:
     return [
         one.device,
         one.against,
-        f"{_figure(ratio)} at {frequency(hertz)}",
+        f"{figure(ratio)} at {frequency(hertz)}",
         f"{bound:.2g}",
         _part(one.inside()),
         frequency(to) if to > 0.0 else "nowhere",
@@ -72,12 +72,6 @@ def _row(one: Finding, factor: float) -> list[str]:
 def _part(part: float | None) -> str:
     # 99.6 % are not all.
     return "" if part is None else f"{math.floor(100.0 * part)} %"
-
-
-def _figure(value: float) -> str:
-    if value <= 0.0:
-        return "0"
-    return "without end" if not math.isfinite(value) else f"{value:.2g}" if value < 99.5 else f"{value:.0f}"
 
 
 def _notes(found: Check) -> list[str]:
@@ -120,7 +114,7 @@ def check_verdict(found: Check) -> str:
         return f"the kit agrees with {', '.join(names)} {band}"
     worst = max(told, key=lambda one: one.largest[0])
     ratio, hertz, _ = worst.largest
-    most = f"{worst.device} against {worst.against}, {_figure(ratio)} bounds at {frequency(hertz)}"
+    most = f"{worst.device} against {worst.against}, {figure(ratio)} bounds at {frequency(hertz)}"
     if found.verdict == FAILS:
         return f"the check fails {band}: {most}"
     return f"in doubt {band}, neither confirmed nor contradicted: {most}"
@@ -148,18 +142,14 @@ def _data(one: Finding, factor: float) -> dict[str, Any]:
     return {
         "name": one.device,
         "against": one.against,
-        "largest_in_bounds": _finite(ratio),
-        "largest_in_bounds_at_hz": _finite(hertz),
-        "bound_there": _finite(bound),
+        "largest_in_bounds": finite(ratio),
+        "largest_in_bounds_at_hz": finite(hertz),
+        "bound_there": finite(bound),
         "part_inside": one.inside(),
         "part_inside_beyond": one.inside(judged=False),
         "agrees_to_hz": one.agrees_to_hz if one.frequency_hz.size else None,
         "verdict": one.verdict(factor),
     }
-
-
-def _finite(value: float) -> float | None:
-    return value if math.isfinite(value) else None
 
 
 def check_rows(found: Check) -> list[list[Any]]:

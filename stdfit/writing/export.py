@@ -13,6 +13,7 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.errors import RequestError
 from stdfit.validity.device.joint import joint_covariance, own_covariance
+from stdfit.validity.entry.error import rounded_up as round_up
 from stdfit.validity.kit import Definition, Kit, curve, misfit_at
 from stdfit.writing.plain_names import as_ascii, file_names
 
@@ -174,10 +175,7 @@ def rounded_up(value: float) -> str:
     >>> rounded_up(0.0123401), rounded_up(0.02), rounded_up(0.0)
     ('0.0124', '0.02', '0')
     """
-    if not 0.0 < value < math.inf:
-        return f"{value:g}"
-    step = 10.0 ** (math.floor(math.log10(value)) - 2)
-    return f"{math.ceil(value / step - 1e-9) * step:.3g}"
+    return f"{round_up(value, 3):.3g}" if 0.0 < value < math.inf else f"{value:g}"
 
 
 def _standard_rows(

@@ -7,7 +7,7 @@ from stdfit.validity.change.history import Course, History
 from stdfit.validity.change.time_left import TimeLeft
 from stdfit.validity.change.trend import DRIFT, EITHER, SAME, STEP, TOO_FEW, Interval
 from stdfit.writing.aligned import aligned
-from stdfit.writing.numbers import frequency
+from stdfit.writing.numbers import finite, frequency
 
 COLUMNS = (
     *("standard", "quantity", "unit", "file", "measured", "matings", "per", "x"),
@@ -185,7 +185,7 @@ def _course_data(course: Course) -> dict[str, Any]:
             "within": left.within,
             "to_hz": left.to_hz,
             "used_up_at_hz": left.at_hz,
-            **{key: _finite(getattr(left, key)) for key in ("value", "low", "high")},
+            **{key: finite(getattr(left, key)) for key in ("value", "low", "high")},
         },
         "common": list(course.common),
         "points": [
@@ -206,10 +206,6 @@ def _course_data(course: Course) -> dict[str, Any]:
 
 def _ends(one: Interval) -> dict[str, float]:
     return {"value": one.value, "low_95": one.low, "high_95": one.high}
-
-
-def _finite(value: float) -> float | None:
-    return value if math.isfinite(value) else None
 
 
 def _interval(one: Interval, unit: str) -> str:

@@ -55,3 +55,23 @@ def rounded(value: float, digits: int) -> str:
 def label_of(kind: str, name: str) -> str:
     """Return the name of a parameter in a sentence."""
     return next(parameter.label for parameter in PARAMETERS[kind] if parameter.name == name)
+
+
+def figure(value: float) -> str:
+    """Return a size with two digits, and in words where it has no end.
+
+    Examples
+    --------
+    >>> figure(0.01234), figure(123.4), figure(0.0), figure(float("inf"))
+    ('0.012', '123', '0', 'without end')
+    """
+    if value <= 0.0:
+        return "0"
+    if not np.isfinite(value):
+        return "without end"
+    return f"{value:.2g}" if value < 99.5 else f"{value:.0f}"
+
+
+def finite(value: float) -> float | None:
+    """Return a number for JSON, which knows neither infinity nor NaN."""
+    return value if np.isfinite(value) else None

@@ -6,7 +6,7 @@ from typing import Any
 from stdfit.validity.change.cause import Cause
 from stdfit.validity.change.wear import CHANGED, CLEARLY, UNSURE, StandardWear, Wear
 from stdfit.writing.aligned import aligned
-from stdfit.writing.numbers import frequency
+from stdfit.writing.numbers import figure, frequency
 
 COLUMNS = ("standard", "frequency_hz", "difference", "bound", "normalised", "explained")
 
@@ -32,8 +32,8 @@ def wear_text(found: Wear) -> str:
                 one.pair.label,
                 one.verdict,
                 _chance(one.chance),
-                f"{_figure(ratio)} at {frequency(at_hz)}",
-                f"{_figure(one.unsure)} up to {frequency(one.judged_hz)}",
+                f"{figure(ratio)} at {frequency(at_hz)}",
+                f"{figure(one.unsure)} up to {frequency(one.judged_hz)}",
             ]
         )
     lines += [*aligned(rows, ""), ""]
@@ -139,7 +139,7 @@ def _told(one: StandardWear, found: Wear) -> list[str]:
         lines.append(f"{name}: nothing that a connector does explains the change")
     if one.other_cause:
         lines.append(
-            f"{name}: |ΔΓ| of {_figure(one.rest.size)} about {frequency(one.rest.at_hz)} has another cause: look at "
+            f"{name}: |ΔΓ| of {figure(one.rest.size)} about {frequency(one.rest.at_hz)} has another cause: look at "
             "the part itself"
         )
     if one.verdict != CHANGED:
@@ -193,12 +193,6 @@ def _chance(chance: float) -> str:
     if chance <= NEVER:
         return f"less than {100 * NEVER:g} %"
     return f"{100 * chance:.2g} %" if chance < 0.1 else f"{100 * chance:.0f} %"
-
-
-def _figure(value: float) -> str:
-    if not math.isfinite(value):
-        return "without end"
-    return f"{value:.2g}" if value < 99.5 else f"{value:.0f}"
 
 
 def _notes(found: Wear) -> list[str]:

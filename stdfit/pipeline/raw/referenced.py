@@ -23,11 +23,12 @@ from stdfit.pipeline.adapters.planes import planes_of
 from stdfit.pipeline.prepare import CORRECTED_HERE, Prepared, repeatability, scatter_cautions, single_points
 from stdfit.pipeline.raw.agreement import disagreements
 from stdfit.pipeline.raw.correction import Readings, by_set, observe, solve_sets, unsureness
+from stdfit.pipeline.raw.known_standards import known_cautions
 from stdfit.pipeline.raw.references import Reference, references_of, sets_of
 from stdfit.pipeline.raw.sources import drift_sources, kit_sources, reading_sources, weights_on
 from stdfit.uncertainty.outlying import without_outlying
 from stdfit.uncertainty.sources import connection_sources
-from stdfit.validity.ancestry import Origin, ancestors_by, distinct, related
+from stdfit.validity.ancestry import Origin, ancestors_by, distinct
 
 FEWEST_POINTS = 8
 """Readings that must lie in the band in which all references are known."""
@@ -250,14 +251,7 @@ def _without_outlying(
 
 def _reference_cautions(references: Sequence[Reference]) -> list[str]:
     """Say what the references do not tell: their own warnings, drift, and errors that two kits may share."""
-    origins = distinct([one.origin for one in references])
-    cautions = [f"reference {one.kit.name}: {warning}" for one in origins for warning in one.kit.warnings]
-    for group in related(origins):
-        if len(group) > 1:
-            cautions.append(
-                f"the kits {', '.join(one.kit.name for one in group)} have an ancestor or readings in common, and "
-                "how their errors go together is not known: they are counted so that any way is covered"
-            )
+    cautions = known_cautions(references)
     if len(sets_of(references)) == 1:
         cautions.append(
             "the references were read in one set: drift of the analyser is not in the bounds. Read them before and "

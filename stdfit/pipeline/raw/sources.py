@@ -13,6 +13,7 @@ from stdfit.base.errors import RequestError
 from stdfit.fitting.observed import Observed
 from stdfit.pipeline.raw.correction import SolvedSet
 from stdfit.pipeline.raw.references import Reference
+from stdfit.uncertainty.budget import factor_of
 from stdfit.uncertainty.connections import PARTS, Repeatability, responses
 from stdfit.uncertainty.region import CIRCULAR
 from stdfit.uncertainty.smooth import LENGTHS_PER_SPAN
@@ -80,7 +81,7 @@ def _shares(origin: Origin, combined: Sequence[ComplexArray]) -> list[Source]:
                 f"{len(LENGTHS_PER_SPAN)}",
                 "make the kit again with this version",
             )
-        roots = [_root(covariance) for covariance in share.covariances]
+        roots = [factor_of(covariance) for covariance in share.covariances]
         if any(root.any() for root in roots):
             # A kit with fewer lengths than others have keeps its last one: all places then have one of its own.
             places = range(len(LENGTHS_PER_SPAN) if len(roots) > 1 else 1)
@@ -90,14 +91,6 @@ def _shares(origin: Origin, combined: Sequence[ComplexArray]) -> list[Source]:
             name = f"reference kit ({_flat(origin.kit.name)}: {_flat(share.name)})"
             sources.append(SharedSource(name, vectors, share.freedom))
     return sources
-
-
-def _root(covariance: FloatArray) -> FloatArray:
-    """Return R with R·Rᵀ = C; quantities of very different units are scaled first."""
-    size = np.sqrt(np.maximum(np.diag(covariance), 0.0))
-    size = np.where(size > 0.0, size, 1.0)
-    value, vector = np.linalg.eigh(covariance / size[:, None] / size)
-    return np.asarray(size[:, None] * vector * np.sqrt(np.maximum(value, 0.0)))
 
 
 def _flat(name: str) -> str:

@@ -5,7 +5,7 @@ A definition follows readings only as far as order, range and evidence let it, s
 
 import numpy as np
 
-from stdfit.base.arrays import FloatArray
+from stdfit.uncertainty.budget import factor_of
 from stdfit.uncertainty.region import CIRCULAR
 from stdfit.validity.change.common_errors import root_of
 from stdfit.validity.change.difference import Change, Effect, enough, same_correction, smooth_effect
@@ -55,7 +55,7 @@ def by_definitions(pair: Pair, old: Kit, new: Kit, *, same_calibration: bool) ->
             Effect(
                 share.name,
                 share.freedom,
-                tuple(design @ _root(covariance) for covariance in share.covariances),
+                tuple(design @ factor_of(covariance) for covariance in share.covariances),
             )
             for share in kit.shares
         ]
@@ -85,11 +85,3 @@ def fitted_alike(pair: Pair) -> bool:
     """Tell whether two definitions have one order and range: only then errors of a common source act alike."""
     tops = pair.one.fit_top_hz, pair.two.fit_top_hz
     return pair.one.shape == pair.two.shape and bool(np.isclose(*tops, rtol=1e-6))
-
-
-def _root(covariance: FloatArray) -> FloatArray:
-    """Return R with R·Rᵀ = C; quantities of very different units are scaled first."""
-    size = np.sqrt(np.maximum(np.diag(covariance), 0.0))
-    size = np.where(size > 0.0, size, 1.0)
-    value, vector = np.linalg.eigh(covariance / size[:, None] / size)
-    return np.asarray(size[:, None] * vector * np.sqrt(np.maximum(value, 0.0)))
