@@ -3,6 +3,7 @@
 import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
+from stdfit.circuits.powers import powers_of
 
 
 def open_end(
@@ -31,7 +32,7 @@ def open_end(
     >>> complex(gamma[0])
     (1+0j)
     """
-    powers: FloatArray = frequency_hz[:, None] ** np.arange(4)
+    powers = powers_of(frequency_hz)
     susceptance = 2j * np.pi * frequency_hz
     y = susceptance * (capacitance @ powers.T) * reference_ohm
     gamma: ComplexArray = (1.0 - y) / (1.0 + y)

@@ -3,6 +3,7 @@
 import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
+from stdfit.circuits.powers import powers_of
 
 
 def short_end(
@@ -31,7 +32,7 @@ def short_end(
     >>> complex(gamma[0])
     (-1+0j)
     """
-    powers: FloatArray = frequency_hz[:, None] ** np.arange(4)
+    powers = powers_of(frequency_hz)
     reactance = 2j * np.pi * frequency_hz
     z = reactance * (inductance @ powers.T) / reference_ohm
     gamma: ComplexArray = (z - 1.0) / (z + 1.0)

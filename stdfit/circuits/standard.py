@@ -66,6 +66,8 @@ PARAMETERS: dict[str, tuple[Parameter, ...]] = {
 }
 """The parameters of each kind, in the order in which `reflection` takes them."""
 
+_UNITS = {kind: np.array([one.si for one in parameters]) for kind, parameters in PARAMETERS.items()}
+
 IDEAL: dict[str, complex] = {"open": 1.0, "short": -1.0, "load": 0.0}
 """Reflection of a standard of each kind that has no definition at all."""
 
@@ -93,7 +95,7 @@ def reflection(
     jacobian : complex array of shape (..., n, p)
         dΓ by each parameter, per trade unit.
     """
-    units = np.array([parameter.si for parameter in PARAMETERS[kind]])
+    units = _UNITS[kind]
     si = np.asarray(values, dtype=float) * units
     if kind == "open":
         end, by_end = open_end(frequency_hz, si[..., 3:], reference_ohm)
@@ -109,6 +111,9 @@ def reflection(
         z0_ohm=si[..., 2:3],
         reference_ohm=reference_ohm,
     )
-    by_offset = np.stack([seen.by_delay, seen.by_loss, seen.by_z0], axis=-1)
-    jacobian = np.concatenate([by_offset, seen.by_termination[..., None] * by_end], axis=-1) * units
+    jacobian = np.empty((*seen.gamma.shape, units.size), dtype=complex)
+    for place, by in enumerate((seen.by_delay, seen.by_loss, seen.by_z0)):
+        np.multiply(by, units[place], out=jacobian[..., place])
+    np.multiply(by_end, seen.by_termination[..., None], out=jacobian[..., 3:])
+    jacobian[..., 3:] *= units[3:]
     return seen.gamma, jacobian

@@ -5,9 +5,19 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from stdfit.base.arrays import ComplexArray, FloatArray, as_pairs
+from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.circuits.standard import Parameter, reflection
+from stdfit.fitting.evaluation import Evaluation
 from stdfit.fitting.observed import Observed
+from stdfit.fitting.solve import Solution, least_squares, near_least
+
+COARSE_POINTS = 100
+"""About how many readings of each standard are fitted first."""
+
+NEAR_TOLERANCE = 1e-6
+TOLERANCE = 1e-8
+"""Relative change of the sum of squares at which a search ends. A step near the end leaves some thousandths of what it
+found, so the sum is then known to better than 1e-10, and the values to far below a thousandth of any uncertainty."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -112,28 +122,37 @@ class Problem:
 
     def residual(self, scaled: FloatArray) -> FloatArray:
         """Return weighted residuals of readings, then of evidence."""
-        values = self.expand(scaled)
-        parts = []
-        for index, (observed, weight) in enumerate(zip(self.observed, self.weights, strict=True)):
-            inside = weight > 0.0
-            gamma, _ = self.model(index, values, observed.frequency_hz[inside])
-            parts.append(as_pairs((gamma - observed.gamma[inside]) * np.sqrt(weight[inside])))
-        target, precision = self.evidence()
-        told = precision > 0.0
-        parts.append(((scaled - target) * np.sqrt(precision))[told])
-        return np.concatenate(parts)
+        return Evaluation(self).residual(scaled)
 
     def jacobian(self, scaled: FloatArray) -> FloatArray:
         """Return the derivatives of `residual`."""
-        values = self.expand(scaled)
-        parts = []
-        for index, (observed, weight) in enumerate(zip(self.observed, self.weights, strict=True)):
-            inside = weight > 0.0
-            _, design = self.model(index, values, observed.frequency_hz[inside])
-            parts.append(as_pairs(design * np.sqrt(weight[inside])[:, None]))
-        _, precision = self.evidence()
-        parts.append(np.diag(np.sqrt(precision))[precision > 0.0])
-        return np.concatenate(parts)
+        return Evaluation(self).jacobian(scaled)
+
+    def solved(self, start: FloatArray) -> Solution:
+        """Return where the sum of squares is smallest, searched from the scaled values `start`.
+
+        Of many readings a part is fitted first: it comes as near for a part of the time.
+        """
+        near = self._thinned().nearly_solved(start)
+        both = Evaluation(self)
+        start = near if np.isfinite(near).all() else start
+        return least_squares(both.residual, both.jacobian, start, tolerance=TOLERANCE)
+
+    def nearly_solved(self, start: FloatArray) -> FloatArray:
+        """Return scaled values near the smallest sum of squares, searched from `start`."""
+        both = Evaluation(self)
+        return near_least(both.residual, both.jacobian, start, NEAR_TOLERANCE)
+
+    def _thinned(self) -> "Problem":
+        """Return the problem with every k-th reading of each standard, weighing as much as k."""
+        weights = []
+        for weight in self.weights:
+            inside = np.flatnonzero(weight > 0.0)
+            step = max(1, inside.size // COARSE_POINTS)
+            kept = np.zeros(weight.size)
+            kept[inside[::step]] = step * weight[inside[::step]]
+            weights.append(weight if step == 1 else kept)
+        return replace(self, weights=tuple(weights))
 
     def changed(self, place: int, **fields: object) -> "Problem":
         """Return a copy in which one quantity has other fields."""

@@ -12,6 +12,9 @@ Function = Callable[[FloatArray], FloatArray]
 OVERFLOW = 1e100
 """Stands for a residual that is not finite."""
 
+TIGHT = 1e-14
+"""Tolerance near the rounding floor."""
+
 FIRST_STEP = 1.0
 """First step at most this times the size of the values: a full Gauss–Newton step from far away overshoots."""
 
@@ -56,7 +59,9 @@ class Solution:
         return np.sqrt(np.diag(self.unscaled_covariance) * self.residual_variance)
 
 
-def least_squares(residual: Function, jacobian: Function, start: FloatArray) -> Solution:
+def least_squares(
+    residual: Function, jacobian: Function, start: FloatArray, *, tolerance: float = TIGHT
+) -> Solution:
     """Minimise the sum of squares of `residual` with analytic derivatives.
 
     Parameters
@@ -66,6 +71,8 @@ def least_squares(residual: Function, jacobian: Function, start: FloatArray) -> 
     jacobian : callable
         Takes values of shape (p,), returns derivatives of shape (n, p).
     start : array of shape (p,)
+    tolerance : float
+        Relative change of the sum of squares at which the search ends.
 
     Notes
     -----
@@ -89,7 +96,11 @@ def least_squares(residual: Function, jacobian: Function, start: FloatArray) -> 
         return found if np.isfinite(found).all() else np.full(found.size, OVERFLOW)
 
     result = lmfit.Minimizer(finite_residual, parameters, calc_covar=False).leastsq(
-        Dfun=lambda current: jacobian(at(current)), ftol=1e-14, xtol=1e-12, factor=FIRST_STEP, max_nfev=2000
+        Dfun=lambda current: jacobian(at(current)),
+        ftol=tolerance,
+        xtol=1e-12,
+        factor=FIRST_STEP,
+        max_nfev=2000,
     )
     values = at(result.params)
     design = jacobian(values)
@@ -105,13 +116,46 @@ def least_squares(residual: Function, jacobian: Function, start: FloatArray) -> 
     )
 
 
+def near_least(residual: Function, jacobian: Function, start: FloatArray, tolerance: float) -> FloatArray:
+    """Return values near the smallest sum of squares, or where the search got stuck.
+
+    The same search as `least_squares`, MINPACK's, asked directly: for starting points and comparisons, of which many
+    are needed, lmfit's bookkeeping takes as long as the search.
+
+    Parameters
+    ----------
+    residual, jacobian, start, tolerance
+        As for `least_squares`.
+    """
+    from scipy.optimize import leastsq
+
+    def finite_residual(values: FloatArray) -> FloatArray:
+        found = residual(values)
+        return found if np.isfinite(found).all() else np.full(found.size, OVERFLOW)
+
+    # With full output the reasons to stop come as codes, not as warnings.
+    found = leastsq(
+        finite_residual,
+        start,
+        Dfun=jacobian,
+        ftol=tolerance,
+        xtol=1e-12,
+        factor=FIRST_STEP,
+        maxfev=2000,
+        full_output=True,
+    )
+    return np.asarray(found[0])
+
+
 def inverse_of_normal(design: FloatArray) -> FloatArray:
     """Return (JᵀJ)⁻¹ by singular values, columns scaled first; unreachable directions get none of it."""
     if design.shape[1] == 0:
         return np.zeros((0, 0))
-    scale = np.linalg.norm(design, axis=0)
+    # The singular values of R are those of the design, and R is small.
+    triangle = np.linalg.qr(design, mode="r")
+    scale = np.linalg.norm(triangle, axis=0)
     scale[scale == 0.0] = 1.0
-    _, singular, right = np.linalg.svd(design / scale, full_matrices=False)
+    _, singular, right = np.linalg.svd(triangle / scale, full_matrices=False)
     keep = singular > singular[0] * 1e-13
     half = (right[keep].T / singular[keep]) / scale[:, None]
     return np.asarray(half @ half.T)

@@ -7,7 +7,6 @@ import numpy as np
 
 from stdfit.base.errors import FitError
 from stdfit.fitting.roles import build_problem, places_of, starting_values
-from stdfit.fitting.solve import least_squares
 from stdfit.pipeline.prepare import Prepared
 from stdfit.uncertainty.budget import radius, shares_of
 from stdfit.uncertainty.push import push, weighted
@@ -66,7 +65,7 @@ def settle(prepared: Prepared, choices: Sequence[Choice]) -> Settled:
     starts = starting_values(observed, bench.reference_ohm)
     problem = build_problem(observed, prepared.wishes, shapes, weights, starts, bench.reference_ohm)
     target, precision = problem.evidence()
-    solution = least_squares(problem.residual, problem.jacobian, target)
+    solution = problem.solved(target)
     if not np.isfinite(solution.values).all():
         raise FitError("the fit did not settle on finite values", "look at the readings of the standards")
     values = problem.expand(solution.values)
@@ -80,7 +79,7 @@ def settle(prepared: Prepared, choices: Sequence[Choice]) -> Settled:
         for i in bounded:
             held = held.changed(i, role="held", value=0.0)
         start, _ = held.evidence()
-        solution = least_squares(held.residual, held.jacobian, start)
+        solution = held.solved(start)
         values = held.expand(solution.values)
 
     span = (

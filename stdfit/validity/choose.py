@@ -14,7 +14,6 @@ from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.fitting.observed import Observed
 from stdfit.fitting.problem import Problem
 from stdfit.fitting.roles import NOT_CHOSEN, SHAPES, Wish, build_problem, places_of, starting_values
-from stdfit.fitting.solve import least_squares
 from stdfit.uncertainty.budget import Share, expanded, radius, shares_of
 from stdfit.uncertainty.push import push, weighted
 from stdfit.uncertainty.sources import Source, reading_variance
@@ -235,19 +234,19 @@ def _fit_order(
         [observed], [alone], [shape], [np.where(first, weight, 0.0)], starts, reference_ohm
     )
     target, precision = problem.evidence()
-    solution = least_squares(problem.residual, problem.jacobian, target)
-    gamma, design = problem.model(0, problem.expand(solution.values))
+    found = problem.nearly_solved(target)
+    gamma, design = problem.model(0, problem.expand(found))
     residual = observed.gamma - gamma
 
     span = (float(f[0]), float(f[-1]))
     pushed = push(design, weighted(design, weight), residual, f, span, sources, 0, cuts)
     inverse, shares = shares_of([pushed], sources, precision, places_of(problem))
-    pull = precision * (target - solution.values)
+    pull = precision * (target - found)
     step = np.einsum("cpq,cq->cp", inverse, pushed.projected + pull)
     return _Order(
         shape=shape,
         problem=problem,
-        scaled=solution.values + step,
+        scaled=found + step,
         shares=shares,
         radius=radius(design[points], shares),
         left=residual - step @ design.T,
