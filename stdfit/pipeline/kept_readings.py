@@ -1,10 +1,11 @@
 """What a kit keeps of the readings that it was made from."""
 
 from collections.abc import Sequence
+from math import ceil
 
 import numpy as np
 
-from stdfit.base.arrays import FloatArray
+from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.pipeline.prepare import Prepared
 from stdfit.uncertainty.region import effective_freedom
 from stdfit.uncertainty.sources import LumpedSource, Source, WhiteSource
@@ -12,6 +13,9 @@ from stdfit.validity.session import MeanReading, Session
 
 POINTS = 200
 """About how many readings are kept of each standard."""
+
+CONNECTION_POINTS = 50
+"""About how many of them are kept of each connection: enough to see which one stands apart, and in what."""
 
 OF_CALIBRATION = ("analyser residuals", "reference kit", "reference misfit")
 """How the names of sources begin that stay the same as long as the analyser is not calibrated anew."""
@@ -35,7 +39,10 @@ def session_of(prepared: Prepared) -> Session:
     ]
     means = []
     for k, observed in enumerate(prepared.observed):
-        kept = slice(None, None, max(1, observed.frequency_hz.size // POINTS))
+        step = max(1, observed.frequency_hz.size // POINTS)
+        kept = slice(None, None, step)
+        some = slice(None, None, step * ceil(observed.frequency_hz[kept].size / CONNECTION_POINTS))
+        repeated = observed.connections > 1
         calibration = [one for one in prepared.sources if one.name.startswith(OF_CALIBRATION)]
         white = sum(one.variances[k] for one in prepared.sources if isinstance(one, WhiteSource))
         means.append(
@@ -43,10 +50,12 @@ def session_of(prepared: Prepared) -> Session:
                 standard=observed.name,
                 connections=observed.connections,
                 frequency_hz=observed.frequency_hz[kept],
-                gamma=np.round(observed.gamma[kept], DECIMALS),
+                gamma=_rounded(observed.gamma[kept]),
                 calibration_sd=_size(calibration, k, observed.frequency_hz.size)[kept],
                 session_sd=_size(own, k, observed.frequency_hz.size)[kept],
                 noise_sd=float(_short(np.sqrt(white))),
+                connection_hz=observed.frequency_hz[some] if repeated else None,
+                deviations=_rounded(observed.deviations[:, some]) if repeated else None,
             )
         )
     return Session(
@@ -55,6 +64,11 @@ def session_of(prepared: Prepared) -> Session:
         session_freedom=_freedom(own, len(prepared.observed)),
         means=tuple(means),
     )
+
+
+def _rounded(values: ComplexArray) -> ComplexArray:
+    """Return readings as they are kept; without a minus before a zero, which would not come back from a file."""
+    return np.asarray(np.round(values, DECIMALS) + 0.0)
 
 
 def _size(sources: Sequence[Source], index: int, count: int) -> FloatArray:

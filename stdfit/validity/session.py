@@ -11,7 +11,7 @@ from stdfit.base.arrays import ComplexArray, FloatArray, frozen_complex, frozen_
 
 @dataclass(frozen=True, slots=True, eq=False)
 class MeanReading:
-    """The mean reading of one standard, and how large its errors are; each array has the shape (m,).
+    """The mean reading of one standard, and how large its errors are; arrays have the shape (m,) unless told.
 
     Attributes
     ----------
@@ -27,6 +27,10 @@ class MeanReading:
         The same of smooth errors of the session alone: scatter beyond the lumped parts, reference connections, drift.
     noise_sd : float
         White noise of the mean, per component.
+    connection_hz : array of shape (k,) or None
+        Some of the frequencies; None where there was one connection, or where they were not kept.
+    deviations : complex array of shape (c, k) or None
+        Each connection minus the mean, there.
     """
 
     standard: str
@@ -36,9 +40,15 @@ class MeanReading:
     calibration_sd: FloatArray
     session_sd: FloatArray
     noise_sd: float
+    connection_hz: FloatArray | None = None
+    deviations: ComplexArray | None = None
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "gamma", frozen_complex(self.gamma))
+        if self.connection_hz is not None:
+            object.__setattr__(self, "connection_hz", frozen_float(self.connection_hz))
+        if self.deviations is not None:
+            object.__setattr__(self, "deviations", frozen_complex(self.deviations))
         for name in ("frequency_hz", "calibration_sd", "session_sd"):
             object.__setattr__(self, name, frozen_float(getattr(self, name)))
 

@@ -1,20 +1,17 @@
 """A history as a picture: one panel for each value, the same bytes every time."""
 
-import io
-import warnings
 from pathlib import Path
 
 import numpy as np
-from matplotlib import rc_context
 from matplotlib.artist import Artist
 from matplotlib.axes import Axes
-from matplotlib.backends.backend_svg import FigureCanvasSVG
-from matplotlib.figure import Figure
 
 from stdfit.base.arrays import FloatArray
+from stdfit.data.ordinary import beginning
 from stdfit.validity.change.history import Course, History
 from stdfit.validity.change.history_kits import MATING
 from stdfit.validity.change.trend import SAME, STEP
+from stdfit.writing.pictures.vector import drawing_rules, new_figure, svg_file
 
 TITLE = "stdfit history"
 """Stands in the file, so that only such files are overwritten."""
@@ -25,17 +22,11 @@ PANEL_INCHES = (7.0, 2.6)
 def history_svg(found: History) -> str:
     """Return the picture of a history as SVG text."""
     count = len(found.courses)
-    with rc_context({"svg.hashsalt": TITLE, "svg.fonttype": "path", "font.size": 9.0}):
-        figure = Figure(figsize=(PANEL_INCHES[0], PANEL_INCHES[1] * count), layout="constrained")
-        FigureCanvasSVG(figure)
+    with drawing_rules(TITLE):
+        figure = new_figure(PANEL_INCHES[0], PANEL_INCHES[1] * count, layout="constrained")
         for axes, course in zip(np.ravel(figure.subplots(count, 1)), found.courses, strict=True):
             draw_course(axes, course)
-        stream = io.StringIO()
-        with warnings.catch_warnings():
-            # A name in another script is drawn as boxes.
-            warnings.filterwarnings("ignore", "Glyph .* missing")
-            figure.savefig(stream, format="svg", metadata={"Title": TITLE, "Date": None, "Creator": None})
-    return stream.getvalue()
+        return svg_file(figure, {"Title": TITLE})
 
 
 def draw_course(axes: Axes, course: Course) -> list[Artist]:
@@ -73,10 +64,7 @@ def draw_course(axes: Axes, course: Course) -> list[Artist]:
 
 def is_history_svg(path: Path) -> bool:
     """Return whether a file says of itself that it is a picture of a history."""
-    try:
-        return path.is_file() and f"<dc:title>{TITLE}</dc:title>".encode() in path.read_bytes()[:8192]
-    except OSError:
-        return False
+    return f"<dc:title>{TITLE}</dc:title>".encode() in beginning(path, 8192)
 
 
 def _described(course: Course, x: FloatArray, value: FloatArray) -> tuple[FloatArray, FloatArray]:

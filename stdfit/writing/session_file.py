@@ -1,15 +1,16 @@
 """The readings that a kit file keeps: its tables `session` and `session.mean`, written, read back and checked."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from typing import Annotated, Any
 
 import msgspec
 import numpy as np
 
+from stdfit.base.arrays import ComplexArray
 from stdfit.uncertainty.connections import PARTS
 from stdfit.validity.kit import Kit
 from stdfit.validity.session import MeanReading, Session
-from stdfit.writing.toml_tables import table_of, tables_of
+from stdfit.writing.toml_tables import rows_below_each_other, table_of, tables_of
 
 Size = Annotated[float, msgspec.Meta(ge=0.0)]
 Freedom = Annotated[float, msgspec.Meta(gt=0.0)]
@@ -35,6 +36,9 @@ class MeanTable(msgspec.Struct, forbid_unknown_fields=True):
     mean_im: list[float]
     calibration_sd: list[Size]
     session_sd: list[Size]
+    connection_hz: list[Size] | None = None
+    deviations_re: list[list[float]] | None = None
+    deviations_im: list[list[float]] | None = None
 
 
 class SessionTable(msgspec.Struct, forbid_unknown_fields=True):
@@ -65,6 +69,7 @@ def session_table(session: Session) -> Any:
                 mean_im=one.gamma.imag.tolist(),
                 calibration_sd=one.calibration_sd.tolist(),
                 session_sd=one.session_sd.tolist(),
+                **_connections(one),
             )
             for one in session.means
         ),
@@ -72,14 +77,24 @@ def session_table(session: Session) -> Any:
     return table
 
 
+def _connections(one: MeanReading) -> dict[str, Any]:
+    """Return the keys of what single connections read, one row for each."""
+    if one.connection_hz is None or one.deviations is None:
+        return {}
+    return {
+        "connection_hz": one.connection_hz.tolist(),
+        "deviations_re": rows_below_each_other(one.deviations.real.tolist()),
+        "deviations_im": rows_below_each_other(one.deviations.imag.tolist()),
+    }
+
+
 def session_from(table: SessionTable) -> Session:
     """Return what a table says; lists of different lengths are left to `session_faults`."""
     means = []
     for one in table.mean:
-        count = min(len(one.mean_re), len(one.mean_im))
-        gamma = np.array(one.mean_re[:count]) + 1j * np.array(one.mean_im[:count])
-        if len(one.mean_re) != len(one.mean_im):
-            gamma = np.zeros(0, dtype=complex)
+        gamma = np.zeros(0, dtype=complex)
+        if len(one.mean_re) == len(one.mean_im):
+            gamma = _complex(one.mean_re, one.mean_im)
         means.append(
             MeanReading(
                 standard=one.standard,
@@ -89,6 +104,8 @@ def session_from(table: SessionTable) -> Session:
                 calibration_sd=np.array(one.calibration_sd),
                 session_sd=np.array(one.session_sd),
                 noise_sd=one.noise_sd,
+                connection_hz=None if one.connection_hz is None else np.array(one.connection_hz, dtype=float),
+                deviations=_deviations(one),
             )
         )
     return Session(
@@ -97,6 +114,24 @@ def session_from(table: SessionTable) -> Session:
         session_freedom=table.session_freedom,
         means=tuple(means),
     )
+
+
+def _deviations(table: MeanTable) -> ComplexArray | None:
+    """Return what single connections read, without any value where the rows are not equally long."""
+    real, imag = table.deviations_re, table.deviations_im
+    if real is None and imag is None:
+        return None
+    real, imag = real or [], imag or []
+    if len(real) != len(imag) or len({len(row) for row in (*real, *imag)}) > 1:
+        return np.zeros((0, 0), dtype=complex)
+    return _complex(real, imag)
+
+
+def _complex(real: Sequence[Any], imag: Sequence[Any]) -> ComplexArray:
+    """Return complex numbers; a sum with 1j times the imaginary part would lose the minus before a zero."""
+    values = np.empty(np.shape(real), dtype=complex)
+    values.real, values.imag = real, imag
+    return values
 
 
 def session_faults(kit: Kit) -> Iterator[tuple[str, str]]:
@@ -143,3 +178,27 @@ def _mean_faults(one: MeanReading, key: str) -> Iterator[tuple[str, str]]:
         yield f"{key}.frequency_hz", "the frequencies do not rise"
     if (np.abs(one.gamma) > HIGHEST_MAGNITUDE).any():
         yield f"{key}.mean_re", f"|Γ| above {HIGHEST_MAGNITUDE:g} is no reading of a standard"
+    yield from _connection_faults(one, key)
+
+
+def _connection_faults(one: MeanReading, key: str) -> Iterator[tuple[str, str]]:
+    places, deviations = one.connection_hz, one.deviations
+    if places is None and deviations is None:
+        return
+    if places is None or deviations is None:
+        yield (
+            f"{key}.connection_hz",
+            "it stands together with deviations_re and deviations_im, or none of them",
+        )
+        return
+    if places.size < 1 or deviations.shape != (one.connections, places.size):
+        yield (
+            f"{key}.deviations_re",
+            "deviations_re and deviations_im need one row for each connection, each as long as connection_hz",
+        )
+    if not np.isfinite(places).all() or (places <= 0.0).any() or (np.diff(places) <= 0.0).any():
+        yield f"{key}.connection_hz", "the frequencies must be above 0 Hz and rise"
+    if not np.isfinite(deviations).all():
+        yield f"{key}.deviations_re", "a value is not a finite number"
+    elif (np.abs(deviations) > HIGHEST_MAGNITUDE).any():
+        yield f"{key}.deviations_re", f"no connection deviates by more than {HIGHEST_MAGNITUDE:g}"

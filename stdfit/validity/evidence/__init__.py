@@ -1,0 +1,1 @@
+"""What there is to see of a kit: readings, model, bound and its sources as arrays over frequency."""
