@@ -263,11 +263,17 @@ def test_every_command_and_option_is_described(capsys):
         section = page.partition(f"## `stdfit {command}`\n")[2].partition("\n## ")[0]
         assert f"$ stdfit {command}" in section, command
         options = set(re.findall(r"(?<![\w-])--[a-z][a-z-]*", help_of(capsys, command)))
-        for option in options - {"--help", "--json"}:
+        for option in options - {"--help", "--json", "--quiet"}:
             assert re.search(rf"`{option}(`| [A-Z])", section) or f", `{option} " in section, (
                 command,
                 option,
             )
+
+
+def test_what_every_command_takes_is_described_once():
+    page = (ROOT / "docs" / "commands.md").read_text(encoding="utf-8")
+    for option in ("--json", "--quiet"):
+        assert page.count(f"Every command takes `{option}`") == 1
 
 
 def test_exit_codes_are_described():

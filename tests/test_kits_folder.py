@@ -6,9 +6,10 @@ from pathlib import Path
 
 import pytest
 
-from stdfit import read_bench, read_kit
 from stdfit.cli import main
+from stdfit.data.bench import read_bench
 from stdfit.writing.kit_file import kit_text
+from stdfit.writing.kit_reading import read_kit
 
 KITS = Path(__file__).parents[1] / "kits"
 FOLDERS = sorted(path for path in KITS.iterdir() if path.is_dir())

@@ -12,6 +12,11 @@ StdfitError                 what, where, what to do
 
 from pathlib import Path
 
+from stdfit.base.shown import shown
+
+MOST_WORDS = 2000
+"""Characters of each half of a message; the longest lists of known words are shorter."""
+
 
 class StdfitError(Exception):
     """Root of all errors that are meant for a user's eyes.
@@ -49,17 +54,18 @@ class StdfitError(Exception):
     @property
     def where(self) -> str:
         """File, line and key, as far as they are known."""
-        parts = [str(self.file)] if self.file is not None else []
+        parts = [shown(self.file)] if self.file is not None else []
         if self.line is not None:
             parts.append(f"line {self.line}")
         if self.key is not None:
-            parts.append(f"key '{self.key}'")
+            parts.append(f"key '{shown(self.key)}'")
         return ", ".join(parts)
 
     def __str__(self) -> str:
-        """One line of what and where, and one of the mend."""
-        head = f"{self.where}: {self.what}" if self.where else self.what
-        return f"{head}\n{self.mend}" if self.mend else head
+        """One line of what and where, and one of the mend, whatever names are in them."""
+        what, mend = shown(self.what, MOST_WORDS), shown(self.mend, MOST_WORDS)
+        head = f"{self.where}: {what}" if self.where else what
+        return f"{head}\n{mend}" if mend else head
 
 
 class InputError(StdfitError):

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from stdfit.cli.exit_codes import DONE
-from stdfit.cli.screen import print_json, tell
+from stdfit.cli.screen import print_json, say, tell
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -33,10 +33,10 @@ def adapter(asked: argparse.Namespace) -> int:
     if asked.json:
         print_json({**adapter_data(found), "adapter_file": str(target), "touchstone_file": str(beside)})
         return DONE
-    print(adapter_summary(found))
-    print(f"adapter file: {target}")
-    print(f"Touchstone file: {beside}")
-    print("next: name the adapter file in an [[adapter]] table, and the adapter at standards behind it")
+    say(adapter_summary(found))
+    say(f"adapter file: {target}")
+    say(f"Touchstone file: {beside}")
+    say("next: name the adapter file in an [[adapter]] table, and the adapter at standards behind it")
     return DONE
 
 

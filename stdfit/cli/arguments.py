@@ -35,6 +35,11 @@ def parser() -> Parser:
         command = commands.add_parser(name, help=what.replace("%", "%%"), description=what)
         command.set_defaults(home=home)
         command.add_argument("--json", action="store_true", help="print the result as JSON")
+        command.add_argument(
+            "--quiet",
+            action="store_true",
+            help="print results and errors, nothing else",
+        )
         return command
 
     demo = add(
@@ -53,13 +58,20 @@ def parser() -> Parser:
         "fit", "characterise a kit: readings in, a kit file with bounds and a limit out", "bench_commands"
     )
     fit.add_argument(
-        "bench", metavar="BENCH", type=_path, help="a bench file, or a folder that holds bench.toml"
+        "bench",
+        metavar="BENCH",
+        type=_path,
+        nargs="+",
+        help="a bench file, or a folder that holds bench.toml; several are fitted at once, on all cores",
     )
     fit.add_argument(
         "-o", "--output", metavar="KIT", type=_path, help="kit file to write (kit.toml beside the bench file)"
     )
     fit.add_argument(
         "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the bench file's, 0.02)"
+    )
+    fit.add_argument(
+        "--report", metavar="FILE.html", type=_path, help="write a page for a browser, with pictures, as well"
     )
 
     fit.add_argument(
@@ -84,6 +96,16 @@ def parser() -> Parser:
 
     show = add("show", "show a kit file: what to type in, how sure, how far", "kit_commands")
     show.add_argument("kit", metavar="KIT", type=_path)
+
+    report = add(
+        "report",
+        "write a page for a browser: what to type in, how sure, how far, and the evidence with pictures",
+        "report_commands",
+    )
+    report.add_argument("kit", metavar="KIT", type=_path)
+    report.add_argument(
+        "-o", "--output", metavar="FILE.html", type=_path, help="page to write (KIT with .html, beside it)"
+    )
 
     curve = add("curve", "print reflection and 95 % bound over frequency as CSV", "kit_commands")
     curve.add_argument("kit", metavar="KIT", type=_path)
@@ -241,6 +263,17 @@ def parser() -> Parser:
         help="one calibration of the analyser served both: its errors are no change",
     )
     wear.add_argument("--csv", action="store_true", help="print all differences over frequency as CSV")
+
+    drawing = add(
+        "drawing",
+        "say what dimensions and materials tell of standards, as evidence for a bench file",
+        "drawing_commands",
+    )
+    drawing.add_argument("file", metavar="FILE", type=_path, help="a drawing file")
+    drawing.add_argument("--part", metavar="NAME", help="only this part")
+    drawing.add_argument(
+        "--to", dest="to_hz", metavar="HZ", type=_number, default=6e9, help="top of the band (6e9)"
+    )
 
     adapter = add(
         "adapter",

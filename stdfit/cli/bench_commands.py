@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 from stdfit.cli.exit_codes import DONE
-from stdfit.cli.screen import print_json, progress, tell, warn
+from stdfit.cli.report_commands import check_page, write_page
+from stdfit.cli.screen import print_json, print_text, progress, say, tell, warn
 from stdfit.cli.targets import check_target, default_target, write_kit
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
 if TYPE_CHECKING:
     import argparse
+    from pathlib import Path
 
 
 def new(asked: argparse.Namespace) -> int:
@@ -34,40 +36,61 @@ def new(asked: argparse.Namespace) -> int:
         )
         return DONE
     for one in found:
-        print(f"{one.kind}: {', '.join(one.files)}{'' if one.by_name else '  (guessed from the readings)'}")
-    print(f"bench file: {target}")
-    print(f"next: look at the lines marked '<--' in it, then: stdfit fit {asked.folder}")
+        say(f"{one.kind}: {', '.join(one.files)}{'' if one.by_name else '  (guessed from the readings)'}")
+    say(f"bench file: {target}")
+    say(f"next: look at the lines marked '<--' in it, then: stdfit fit {asked.folder}")
     return DONE
 
 
 def fit(asked: argparse.Namespace) -> int:
-    """Characterise a kit."""
+    """Characterise a kit, or several."""
+    if len(asked.bench) > 1:
+        from stdfit.cli.many_benches import fit_each
+
+        return fit_each(asked)
     from stdfit.data.bench import read_bench
     from stdfit.pipeline import fit_bench
     from stdfit.pipeline.path import has_few_references
+    from stdfit.writing.kit_reading import read_kit
     from stdfit.writing.plain_data import kit_data
     from stdfit.writing.summary import summary, verdict
 
-    bench = read_bench(asked.bench)
+    bench = read_bench(asked.bench[0])
     target = asked.output if asked.output is not None else default_target(bench.path)
     check_target(target)
-    with progress("draws") as told:
+    if asked.report is not None:
+        _check_report(asked.report, target)
+    with progress("draws" if asked.monte_carlo else "fitting") as told:
         kit = fit_bench(bench, within=asked.within, draws=asked.monte_carlo, tell=told)
     write_kit(kit, target)
+    if asked.report is not None:
+        write_page(read_kit(target), asked.report)
     if asked.json:
         warn(kit)
-        print_json({**kit_data(kit), "kit_file": str(target)})
+        report = {} if asked.report is None else {"report_file": str(asked.report)}
+        print_json({**kit_data(kit), "kit_file": str(target), **report})
         return DONE
     warn(kit)
-    print(summary(kit, warnings=False))
-    print(f"kit file: {target}")
-    print(verdict(kit))
+    say(summary(kit, warnings=False) + "\n")
+    say(f"kit file: {target}")
+    if asked.report is not None:
+        say(f"report: {asked.report}")
+    say(verdict(kit))
     if has_few_references(bench):
-        print(f"next: stdfit limit {target} --within 0.01 0.05   (how far at other tolerances)")
+        say(f"next: stdfit limit {target} --within 0.01 0.05   (how far at other tolerances)")
         return DONE
-    print(f"next: stdfit plan {bench.path}   (what would push it further)")
-    print(f"      stdfit limit {target} --within 0.01 0.05   (how far at other tolerances)")
+    say(f"next: stdfit plan {bench.path}   (what would push it further)")
+    say(f"      stdfit limit {target} --within 0.01 0.05   (how far at other tolerances)")
     return DONE
+
+
+def _check_report(path: Path, kit_file: Path) -> None:
+    """Refuse a page that cannot go where it is wanted."""
+    from stdfit.base.errors import RequestError
+
+    if path.resolve() == kit_file.resolve():
+        raise RequestError("kit file and report would be one file", "name another with --report", file=path)
+    check_page(path, "--report")
 
 
 def plan(asked: argparse.Namespace) -> int:
@@ -91,5 +114,5 @@ def plan(asked: argparse.Namespace) -> int:
     if asked.json:
         print_json(plan_data(found))
     else:
-        print(plan_text(found, measured=measured), end="")
+        print_text(plan_text(found, measured=measured))
     return DONE

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from stdfit.cli.exit_codes import ANSWER_IS_NO, DONE
-from stdfit.cli.screen import print_csv, print_json
+from stdfit.cli.screen import print_csv, print_json, print_text
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -26,5 +26,5 @@ def check(asked: argparse.Namespace) -> int:
     elif asked.csv:
         print_csv(COLUMNS, check_rows(found))
     else:
-        print(check_text(found), end="")
+        print_text(check_text(found))
     return ANSWER_IS_NO if found.verdict in (FAILS, SILENT) else DONE

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from stdfit.cli.exit_codes import DONE
-from stdfit.cli.screen import print_csv, print_json, warn
+from stdfit.cli.screen import print_csv, print_json, print_text, warn
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -36,5 +36,5 @@ def sheet(asked: argparse.Namespace) -> int:
     elif asked.csv:
         print_csv(COLUMNS, sheet_rows(found))
     else:
-        print(sheet_text(found), end="")
+        print_text(sheet_text(found))
     return DONE

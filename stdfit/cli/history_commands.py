@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from stdfit.cli.exit_codes import DONE
-from stdfit.cli.screen import print_csv, print_json, tell
+from stdfit.cli.screen import print_csv, print_json, print_text, tell
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -42,7 +42,7 @@ def history(asked: argparse.Namespace) -> int:
     elif asked.csv:
         print_csv(COLUMNS, history_rows(said))
     else:
-        print(history_text(said), end="")
+        print_text(history_text(said))
     return DONE
 
 
@@ -57,7 +57,7 @@ def repeat(asked: argparse.Namespace) -> int:
     if asked.json:
         print_json(repeat_data(described, found, warnings))
     else:
-        print(repeat_text(described, found), end="")
+        print_text(repeat_text(described, found))
     return DONE
 
 

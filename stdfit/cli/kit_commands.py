@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from stdfit.cli.exit_codes import DONE
-from stdfit.cli.screen import print_csv, print_json
+from stdfit.cli.screen import print_csv, print_json, print_text
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -21,7 +21,7 @@ def show(asked: argparse.Namespace) -> int:
     if asked.json:
         print_json(kit_data(kit))
     else:
-        print(summary(kit), end="")
+        print_text(summary(kit))
     return DONE
 
 
@@ -70,9 +70,9 @@ def limit(asked: argparse.Namespace) -> int:
         print_json({**limit_data(kit, found), **({"devices": answer_data(told)} if told else {})})
         return DONE
     if found:
-        print(limit_lines(kit, found), end="")
+        print_text(limit_lines(kit, found))
     if told:
-        print("\n".join([*([""] if found else []), *answer_lines(told)]))
+        print_text("\n".join([*([""] if found else []), *answer_lines(told)]))
     return DONE
 
 
@@ -104,5 +104,5 @@ def device(asked: argparse.Namespace) -> int:
     elif asked.csv:
         print_csv(*device_rows(errors, asked.magnitude))
     else:
-        print(device_text(kit, errors, asked.magnitude), end="")
+        print_text(device_text(kit, errors, asked.magnitude))
     return DONE

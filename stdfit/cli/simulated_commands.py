@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 from stdfit.cli.exit_codes import DONE
-from stdfit.cli.screen import print_json, progress
-from stdfit.cli.targets import write_kit
+from stdfit.cli.report_commands import check_page, write_page
+from stdfit.cli.screen import print_json, print_text, progress, say
+from stdfit.cli.targets import check_target, write_kit
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -17,22 +18,36 @@ def demo(asked: argparse.Namespace) -> int:
     from stdfit.pipeline import fit_bench
     from stdfit.trials.demo import compare, compare_curves, write_demo
     from stdfit.trials.demo_text import demo_data, demo_text
+    from stdfit.writing.kit_reading import read_kit
 
     asked.out.mkdir(parents=True, exist_ok=True)
+    page = asked.out / "report.html"
+    check_page(page, "--out")
+    target = asked.out / "kit.toml"
+    check_target(target)
     simulated, bench = write_demo(asked.out)
     kit = fit_bench(bench)
-    target = asked.out / "kit.toml"
     write_kit(kit, target)
+    write_page(read_kit(target), page)
     rows = compare(kit, simulated)
     curves = compare_curves(kit, simulated, [k * 1e9 for k in (0.5, 1, 2, 3, 4, 5, 6)])
     if asked.json:
-        print_json({**demo_data(rows, curves), "bench_file": str(bench), "kit_file": str(target)})
+        print_json(
+            {
+                **demo_data(rows, curves),
+                "bench_file": str(bench),
+                "kit_file": str(target),
+                "report_file": str(page),
+            }
+        )
         return DONE
-    print(demo_text(kit, rows, curves))
-    print(f"readings and bench file: {bench}")
-    print(f"kit file: {target}")
-    print(f"next: stdfit show {target}   (what to type in)")
-    print("      stdfit new DIR         (DIR holds your own readings)")
+    say(demo_text(kit, rows, curves))
+    say(f"readings and bench file: {bench}")
+    say(f"kit file: {target}")
+    say(f"report: {page}")
+    say(f"next: open {page}   (in a browser: the same, with pictures)")
+    say(f"      stdfit show {target}   (what to type in)")
+    say("      stdfit new DIR   (DIR holds your own readings)")
     return DONE
 
 
@@ -45,12 +60,12 @@ def trials(asked: argparse.Namespace) -> int:
     if asked.like is not None and asked.family:
         raise RequestError("a bench and families are asked for at once", "leave one of them out")
     like = None if asked.like is None else scenario_like(asked.like)
-    with progress("benches") as told:
+    with progress("benches", threads=False) as told:
         rows = run(
             asked.family or [], asked.benches, seed=asked.seed, within=asked.within, like=like, tell=told
         )
     if asked.json:
         print_json(study_data(rows))
     else:
-        print(study_table(rows))
+        print_text(study_table(rows))
     return DONE

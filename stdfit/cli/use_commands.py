@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from stdfit.cli.exit_codes import DONE
-from stdfit.cli.screen import print_csv, print_json, tell, warn
+from stdfit.cli.screen import print_csv, print_json, print_text, say, tell, warn
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -38,9 +38,9 @@ def export(asked: argparse.Namespace) -> int:
         print_json({"name": kit.name, "frequencies_hz": grid.tolist(), "files": told})
         return DONE
     for name in files:
-        print(f"{asked.folder / name}: {standards.get(name, 'all standards')}")
-    print(f"next: stdfit limit {asked.kit}   (how far they can be trusted)")
-    print(f"      stdfit compare {asked.kit} ideal   (what ideal standards would be wrong by)")
+        say(f"{asked.folder / name}: {standards.get(name, 'all standards')}")
+    say(f"next: stdfit limit {asked.kit}   (how far they can be trusted)")
+    say(f"      stdfit compare {asked.kit} ideal   (what ideal standards would be wrong by)")
     return DONE
 
 
@@ -98,5 +98,5 @@ def compare(asked: argparse.Namespace) -> int:
     elif asked.csv:
         print_csv(COLUMNS, compare_rows(found, None if asked.at is None else at_hz))
     else:
-        print(compare_text(found, at_hz), end="")
+        print_text(compare_text(found, at_hz))
     return DONE

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from stdfit.cli.exit_codes import ANSWER_IS_NO, DONE
-from stdfit.cli.screen import print_csv, print_json, tell
+from stdfit.cli.screen import print_csv, print_json, print_text, tell
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -28,5 +28,5 @@ def wear(asked: argparse.Namespace) -> int:
     elif asked.csv:
         print_csv(COLUMNS, wear_rows(found))
     else:
-        print(wear_text(found), end="")
+        print_text(wear_text(found))
     return ANSWER_IS_NO if found.verdict == CHANGED else DONE

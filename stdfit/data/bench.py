@@ -11,6 +11,7 @@ from stdfit.data.bench_devices import decode_devices
 from stdfit.data.bench_records import Bench, Given, PlannedSweep, StandardEntry, StatedResidual
 from stdfit.data.bench_standards import decode_standards
 from stdfit.data.bench_table import Table
+from stdfit.data.mistaken import refuse_mistaken
 from stdfit.data.whole_text import whole_text
 from stdfit.data.words import nearest, quoted
 
@@ -67,6 +68,7 @@ def parse_bench(text: str, path: Path, *, devices_alone: bool = False) -> Bench:
     BenchError
         The text is no TOML, or says something that cannot be; the message names line or key.
     """
+    refuse_mistaken(text, path, "bench file", BenchError)
     values = _parse_toml(text, path)
     _check_format(values, path)
     whole = Table(
@@ -158,6 +160,14 @@ def _parse_toml(text: str, path: Path) -> dict[str, object]:
         at_end = message.endswith("(at end of document)")
         what = re.sub(r" \(at [^()]*\)\Z", "", message).split(" (")[0].split(";")[0]
         line = int(place[1]) if place else len(text.splitlines()) if at_end else None
+        single = re.fullmatch(r"\s*\[\s*(standard|device|adapter)\s*\]\s*(?:#.*)?", _line_of(text, line))
+        if single is not None:
+            raise BenchError(
+                f"[{single[1]}] stands in single brackets, and there are several",
+                f"write [[{single[1]}]], in two pairs of brackets, at each of them",
+                file=path,
+                line=line,
+            ) from fault
         column = f", column {place[2]}" if place else ""
         raise BenchError(
             f"not valid TOML{column}: {quoted(what, 100)[1:-1]}",
@@ -165,6 +175,11 @@ def _parse_toml(text: str, path: Path) -> dict[str, object]:
             file=path,
             line=line,
         ) from fault
+
+
+def _line_of(text: str, line: int | None) -> str:
+    lines = text.splitlines()
+    return lines[line - 1] if line is not None and 0 < line <= len(lines) else ""
 
 
 def _check_format(values: dict[str, object], path: Path) -> None:

@@ -30,9 +30,6 @@ _VALUES = {"kind": ("given",), "from_kit": ("standard",), "value_file": ("value_
 NEEDED = {"open": "offset_delay_ps", "short": "offset_delay_ps", "load": "resistance_ohm"}
 """Without this the given parameters of a kind are no value at all."""
 
-SENSELESS = 1e9
-"""No parameter of a device, and no uncertainty of one, is so many of the trade's units."""
-
 
 def decode_devices(whole: Table) -> tuple[DeviceEntry, ...]:
     """Return the devices of a bench; none where it has no such tables.
@@ -74,11 +71,6 @@ def _decode(table: Table) -> DeviceEntry:
         raise table.fault(
             "given", f"says nothing of {NEEDED[kind]}", f"write given.{NEEDED[kind]} = {{ value = …, u = … }}"
         )
-    for name, stated in given.items():
-        if max(abs(stated.value), stated.u or 0.0) > SENSELESS:
-            raise table.fault(
-                f"given.{name}", f"a figure above {SENSELESS:g}, which no device has", "check figure and unit"
-            )
     return DeviceEntry(
         name=table.text("name"),
         files=matching_files([str(p) for p in patterns], table.file, f"{table.prefix}.readings"),

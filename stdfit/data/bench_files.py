@@ -2,12 +2,22 @@
 
 import os
 import re
+from collections.abc import Iterator, Sequence
+from fnmatch import fnmatchcase
 from pathlib import Path
 
 from stdfit.base.errors import BenchError
 from stdfit.data.words import nearest, quoted
 
 MOST_FILES = 1000
+MOST_LOOKED_AT = 100_000
+"""Entries of folders that one pattern may look at: '/**/x' would look at the whole disk."""
+
+_WILD = re.compile(r"[*?[]")
+
+
+class _TooManyError(Exception):
+    """A pattern looks at too many files."""
 
 
 def matching_files(patterns: list[str], file: Path, key: str) -> tuple[Path, ...]:
@@ -25,7 +35,7 @@ def matching_files(patterns: list[str], file: Path, key: str) -> tuple[Path, ...
     Raises
     ------
     BenchError
-        A pattern is not possible or matches no file, or there are more than 1000 files.
+        A pattern is not possible, matches no file or looks at too many, or there are more than 1000 files.
     """
     found: dict[str, Path] = {}
     for pattern in patterns:
@@ -57,17 +67,88 @@ def _match(pattern: str, file: Path, key: str) -> list[Path]:
         # A name with brackets in it is taken as it stands when there is such a file.
         if plain.exists() and not plain.is_dir():
             return [plain]
-        root = Path(plain.anchor) if Path(pattern).is_absolute() else file.parent
-        inner = str(plain.relative_to(root)) if Path(pattern).is_absolute() else pattern
-        matched = [path for path in root.glob(inner) if not path.is_dir()]
+        absolute = Path(pattern).is_absolute()
+        root = Path(plain.anchor) if absolute else file.parent
+        parts = plain.parts[1:] if absolute else Path(pattern).parts
+        # '**/**' is '**', but would be looked through many times.
+        parts = tuple(one for k, one in enumerate(parts) if one != "**" or parts[k - 1 : k] != ("**",))
+        if not parts:
+            raise ValueError("no name in it")
+        matched = [path for path in _walk(root, parts, _Budget()) if not _is_folder(path)]
         return sorted(matched, key=lambda path: (natural_key(path), str(path)))
-    except (ValueError, OSError, NotImplementedError, RecursionError, IndexError, re.error) as fault:
+    except _TooManyError as fault:
+        raise BenchError(
+            f"{quoted(pattern)} looks at more than {MOST_LOOKED_AT} files and folders",
+            "begin the pattern with the folder that holds the readings",
+            file=file,
+            key=key,
+        ) from fault
+    except (ValueError, OSError, RecursionError, re.error) as fault:
         raise BenchError(
             f"{quoted(pattern)} is not a possible file pattern",
             "use file names with * and ?, such as open-*.s1p",
             file=file,
             key=key,
         ) from fault
+
+
+class _Budget:
+    """Counts the entries of folders that are looked at."""
+
+    def __init__(self) -> None:
+        self.left = MOST_LOOKED_AT
+
+    def entries(self, folder: Path) -> list[os.DirEntry[str]]:
+        """Return what a folder holds, as far as it may be read."""
+        found = []
+        try:
+            with os.scandir(folder) as inside:
+                for entry in inside:
+                    self.left -= 1
+                    if self.left < 0:
+                        raise _TooManyError
+                    found.append(entry)
+        except OSError:
+            return found
+        return found
+
+
+def _walk(root: Path, parts: Sequence[str], budget: _Budget) -> Iterator[Path]:
+    """Give what the parts of a pattern stand for below a folder."""
+    if not parts:
+        yield root
+        return
+    part, rest = parts[0], parts[1:]
+    if part == "**":
+        yield from _walk(root, rest, budget)
+        for entry in budget.entries(root):
+            if not entry.is_symlink() and _is_folder(root / entry.name):
+                yield from _walk(root / entry.name, parts, budget)
+    elif _WILD.search(part):
+        wanted = os.path.normcase(part)
+        for entry in budget.entries(root):
+            if fnmatchcase(os.path.normcase(entry.name), wanted) and (
+                not rest or _is_folder(root / entry.name)
+            ):
+                yield from _walk(root / entry.name, rest, budget)
+    elif _is_there(root / part):
+        yield from _walk(root / part, rest, budget)
+
+
+def _is_folder(path: Path) -> bool:
+    """Tell whether a folder, or a link to one, is there; what cannot be looked at is none."""
+    try:
+        return path.is_dir()
+    except OSError:
+        return False
+
+
+def _is_there(path: Path) -> bool:
+    """Tell whether anything is there that can be looked at."""
+    try:
+        return path.exists()
+    except OSError:
+        return False
 
 
 def _hint(wanted: Path) -> str:

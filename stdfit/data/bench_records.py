@@ -6,6 +6,7 @@ from pathlib import Path
 from types import MappingProxyType
 
 from stdfit.base.arrays import FloatArray, frozen_float
+from stdfit.data.drawing_records import DrawnFrom
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -78,6 +79,10 @@ class StandardEntry:
         The adapter through which it was read.
     matings : int or None
         How often it had been connected in all when it was read.
+    from_drawing : DrawnFrom or None
+        The drawing that tells more of it.
+    drawn : tuple of str
+        Which values of `given` that drawing told, once it was looked at.
     """
 
     name: str
@@ -92,6 +97,8 @@ class StandardEntry:
     reading_set: str | None = None
     behind: str | None = None
     matings: int | None = None
+    from_drawing: DrawnFrom | None = None
+    drawn: tuple[str, ...] = ()
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "files", tuple(self.files))

@@ -7,6 +7,7 @@ from stdfit.base.errors import BenchError
 from stdfit.data.bench_files import matching_files
 from stdfit.data.bench_records import Given, StandardEntry
 from stdfit.data.bench_table import Table
+from stdfit.data.drawing_records import DrawnFrom
 from stdfit.data.words import quoted, suggestion
 
 _OFFSET = ("offset_delay_ps", "offset_loss_gohm_per_s", "offset_z0_ohm")
@@ -33,6 +34,8 @@ _KEYS = (
     "matings",
 )
 MOST_MATINGS = 10**9
+SENSELESS = 1e9
+"""No parameter of a part, and no uncertainty of one, is so many of the trade's units."""
 
 
 def decode_standards(whole: Table, state: str, *, planned: bool) -> tuple[StandardEntry, ...]:
@@ -89,7 +92,8 @@ def _decode(item: object, file: Path, place: int, state: str, planned: bool) -> 
         name=table.text("name"),
         kind=kind,
         files=matching_files([str(p) for p in patterns], file, f"{table.prefix}.readings"),
-        given=decode_given(table, kind),
+        given=decode_given(table, kind, drawings=True),
+        from_drawing=_from_drawing(table),
         same_offset_as=table.text("same_offset_as") if "same_offset_as" in table else None,
         port=port,
         polynomial=polynomial,
@@ -158,8 +162,35 @@ def decode_port(table: Table) -> int:
     return port
 
 
-def decode_given(table: Table, kind: str) -> dict[str, Given]:
-    """Return the evidence on a standard's parameters."""
+def _from_drawing(table: Table) -> DrawnFrom | None:
+    """Return where the drawing of a standard is, or None."""
+    given = table.values.get("given")
+    if not isinstance(given, dict) or "from_drawing" not in given:
+        return None
+    values = given["from_drawing"]
+    prefix = f"{table.prefix}.given"
+    if isinstance(values, str):
+        where, key, part = (
+            Table({"from_drawing": values}, table.file, prefix, ("from_drawing",)),
+            "from_drawing",
+            None,
+        )
+    else:
+        mend = 'write given.from_drawing = "part.drawing.toml", or { file = "…", part = "…" }'
+        where, key = Table(values, table.file, f"{prefix}.from_drawing", ("file", "part"), mend), "file"
+        part = where.text("part") if "part" in where else None
+    drawing = table.file.parent / where.text(key)
+    try:
+        exists = drawing.is_file()
+    except (OSError, ValueError):
+        exists = False
+    if not exists:
+        raise where.fault(key, "no such drawing", "check the path; it is relative to the bench file")
+    return DrawnFrom(drawing, part)
+
+
+def decode_given(table: Table, kind: str, *, drawings: bool = False) -> dict[str, Given]:
+    """Return the evidence on a standard's parameters; `drawings` lets a drawing stand among it."""
     if "given" not in table:
         return {}
     names = GIVEN_NAMES[kind]
@@ -167,21 +198,29 @@ def decode_given(table: Table, kind: str) -> dict[str, Given]:
         table.values["given"],
         table.file,
         f"{table.prefix}.given",
-        sorted({known for parameters in GIVEN_NAMES.values() for known in parameters}),
+        sorted({known for parameters in GIVEN_NAMES.values() for known in parameters})
+        + (["from_drawing"] if drawings else []),
         "write for example given.offset_delay_ps = { value = 18.0, u = 0.5 }",
     )
     given = {}
     for name, entry in evidence.values.items():
+        if name == "from_drawing":
+            continue
         if name not in names:
             article = "an" if kind == "open" else "a"
             raise evidence.fault(name, f"{article} {kind} has no such parameter", suggestion("", names))
         above = 0.0 if name in _POSITIVE else None
-        if not isinstance(entry, dict):
-            given[name] = Given(evidence.as_number(name, entry, above=above))
-            continue
-        fields = Table(entry, table.file, f"{evidence.prefix}.{name}", ("value", "u"))
-        value = fields.number("value", above=above)
-        given[name] = Given(value, fields.number("u", above=0.0) if "u" in fields else None)
+        if isinstance(entry, dict):
+            fields = Table(entry, table.file, f"{evidence.prefix}.{name}", ("value", "u"))
+            value = fields.number("value", above=above)
+            stated = Given(value, fields.number("u", above=0.0) if "u" in fields else None)
+        else:
+            stated = Given(evidence.as_number(name, entry, above=above))
+        if max(abs(stated.value), stated.u or 0.0) > SENSELESS:
+            raise evidence.fault(
+                name, f"a figure above {SENSELESS:g}, which no part has", "check figure and unit"
+            )
+        given[name] = stated
     return given
 
 

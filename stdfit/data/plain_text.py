@@ -4,7 +4,13 @@ import codecs
 
 from stdfit.base.errors import ReadingError
 
+MOST_LINES = 400_000
+"""A reading of 100 001 points has a quarter of them; this bounds the time that a file can take."""
+LONGEST_LINE = 1_000_000
+"""Characters of a line that are let through; some above twice as many never are."""
+
 _MEND_BINARY = "export the readings as a Touchstone or CSV text file"
+_MEND_LARGE = "give a file that holds the readings of one standard and little else"
 
 
 def plain_text(raw: bytes, name: str) -> bytes:
@@ -24,7 +30,7 @@ def plain_text(raw: bytes, name: str) -> bytes:
     Raises
     ------
     ReadingError
-        The file is empty or is not text.
+        The file is empty, is not text, or has far too many lines or a line that is far too long.
     """
     text = raw
     if raw.startswith(codecs.BOM_UTF8):
@@ -38,7 +44,20 @@ def plain_text(raw: bytes, name: str) -> bytes:
     text = text.rstrip(b"\x1a")
     if not text or text.isspace():
         raise ReadingError("the file is empty", "export the readings again", file=name)
+    _check_lines(text, name)
     return text
+
+
+def _check_lines(text: bytes, name: str) -> None:
+    """Refuse a text whose lines would keep a reader busy for minutes."""
+    if max(text.count(b"\n"), text.count(b"\r")) > MOST_LINES:
+        raise ReadingError(f"more than {MOST_LINES} lines", _MEND_LARGE, file=name)
+    # A line that fills a whole block is longer than a block; so looking at each block once is enough.
+    for start in range(0, len(text) - LONGEST_LINE, LONGEST_LINE):
+        end = start + LONGEST_LINE
+        if text.find(b"\n", start, end) < 0 and text.find(b"\r", start, end) < 0:
+            line = len(text[:start].splitlines()) + text[:start].endswith((b"\n", b"\r")) or 1
+            raise ReadingError(f"longer than {LONGEST_LINE} characters", _MEND_LARGE, file=name, line=line)
 
 
 def _from_utf16(raw: bytes, name: str) -> bytes:

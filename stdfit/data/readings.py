@@ -17,7 +17,7 @@ from stdfit.data.soundness import HIGHEST_MAGNITUDE
 from stdfit.data.touchstone import parse_touchstone
 from stdfit.data.words import nearest, quoted
 
-LARGEST_BYTES = 512 * 2**20
+LARGEST_BYTES = 64 * 2**20
 _TOUCHSTONE_SUFFIX = re.compile(r"\.(s[0-9]+p|ts)\Z", re.IGNORECASE)
 _TOUCHSTONE_START = re.compile(
     rb"\A(?:\s|![^\r\n]*(?:[\r\n]|\Z))*(\[|#[ \t]*([kmg]?hz|[syzgh]|ri|ma|db|r)\b)", re.IGNORECASE
@@ -124,7 +124,10 @@ def _read_bytes(path: Path) -> bytes:
         with os.fdopen(handle, "rb") as file:
             status = os.fstat(file.fileno())
             _check_ordinary(path, status)
-            return file.read(status.st_size + 1)
+            raw = file.read(min(status.st_size, LARGEST_BYTES) + 1)
+        if raw is None:  # it would have to wait
+            raise ReadingError("not an ordinary file", "copy the readings to an ordinary file", file=path)
+        return raw
     except FileNotFoundError as fault:
         raise _missing(path) from fault
     except (OSError, ValueError) as fault:
@@ -138,7 +141,11 @@ def _check_ordinary(path: Path, status: os.stat_result) -> None:
     if not stat.S_ISREG(status.st_mode):
         raise ReadingError("not an ordinary file", "copy the readings to an ordinary file", file=path)
     if status.st_size > LARGEST_BYTES:
-        raise ReadingError("larger than 512 MB", "give a file with the readings of one standard", file=path)
+        raise ReadingError(
+            f"larger than {LARGEST_BYTES // 2**20} MB",
+            "give a file with the readings of one standard",
+            file=path,
+        )
 
 
 def _unreadable(path: Path, fault: Exception) -> ReadingError:

@@ -1,5 +1,6 @@
 """Repeatability files: which readings were taken under which calibration and connection."""
 
+import os
 import tomllib
 from dataclasses import dataclass
 from pathlib import Path
@@ -8,6 +9,7 @@ from stdfit.base.errors import BenchError
 from stdfit.data.bench_files import matching_files
 from stdfit.data.bench_standards import GIVEN_NAMES, decode_port
 from stdfit.data.bench_table import Table
+from stdfit.data.mistaken import refuse_mistaken
 from stdfit.data.whole_text import whole_text
 from stdfit.data.words import quoted
 
@@ -84,6 +86,7 @@ def parse_repeat_file(text: str, path: Path) -> RepeatFile:
     BenchError
         The message names the key.
     """
+    refuse_mistaken(text, path, "repeatability file", BenchError)
     try:
         values = tomllib.loads(text)
     except RecursionError as fault:
@@ -139,7 +142,7 @@ def _entry(item: object, path: Path, place: int) -> RepeatEntry:
 def _check_together(entries: tuple[RepeatEntry, ...], path: Path) -> None:
     """Refuse a standard of two kinds, and a reading that belongs to two connections."""
     kinds: dict[str, str] = {}
-    seen: dict[tuple[Path, int], int] = {}
+    seen: set[tuple[str, int]] = set()
     for place, entry in enumerate(entries, start=1):
         key = f"repeatability[#{place}]"
         if kinds.setdefault(entry.standard, entry.kind) != entry.kind:
@@ -150,11 +153,12 @@ def _check_together(entries: tuple[RepeatEntry, ...], path: Path) -> None:
                 key=f"{key}.kind",
             )
         for file in (file for own in entry.connections for file in own):
-            if (file.resolve(), entry.port) in seen:
+            whole = (os.path.realpath(file), entry.port)
+            if whole in seen:
                 raise BenchError(
                     f"{quoted(file.name)} belongs to two connections",
                     "name each reading once; let patterns end so that 1 does not match 10",
                     file=path,
                     key=f"{key}.connections",
                 )
-            seen[file.resolve(), entry.port] = place
+            seen.add(whole)

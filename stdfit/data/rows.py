@@ -109,26 +109,41 @@ def _fast(block: Block) -> FloatArray | None:
         marks = [r"\s+"]
     else:
         marks = [" ", r"\s+"]
+    kept = _kept(block)
+    whole = len(kept) == block.columns
     for mark in marks:
         source = BytesIO(text)
         source.seek(start)
         try:
+            # All columns are read, also those that nobody wants: with `usecols` the parser would cut long rows off,
+            # and a decimal comma makes a row longer.
             frame = pd.read_csv(
                 source,
                 sep=mark,
                 header=None,
                 engine="c",
-                dtype=np.float64,
+                dtype=np.float64
+                if whole
+                else {k: np.float64 if k in kept else object for k in range(block.columns)},
                 na_filter=False,
                 quoting=csv.QUOTE_NONE,
-                usecols=None if block.keep is None else sorted(block.keep),
             )
         except (ValueError, OverflowError):  # ParserError and EmptyDataError are ValueErrors
             continue
-        if frame.shape[1] == len(_kept(block)):
-            values: FloatArray = frame.to_numpy()
-            return values if np.isfinite(values).all() else None
+        if frame.shape[1] != block.columns:
+            continue
+        values: FloatArray = frame.to_numpy() if whole else frame[kept].to_numpy(dtype=np.float64)
+        if np.isfinite(values).all() and not _short_rows(block, text, start, len(values)):
+            return values
+        return None
     return None
+
+
+def _short_rows(block: Block, text: bytes, start: int, rows: int) -> bool:
+    """Tell whether a row lacks fields: the parser fills them up, which shows only in the columns that are kept."""
+    if block.separator is None:
+        return False
+    return text.count(block.separator, start) != (block.columns - 1) * rows
 
 
 def _slow(block: Block) -> Rows:
@@ -160,12 +175,13 @@ def _fields(block: Block) -> Iterator[tuple[int, list[bytes]]]:
         start = match.end()
         if block.comment == b"!":
             text = text.partition(b"!")[0]
-        text = text.strip()
+        blank = text.strip()
         # A later option line has no meaning (Touchstone 1.1): the first one counts.
-        if text and not text.startswith(b"#"):
-            fields = text.split(block.separator)
+        if blank and not blank.startswith(b"#"):
+            fields = blank.split()
             if block.separator is not None:
-                fields = [field.strip().strip(b'"') for field in fields]
+                # Only spaces go from the ends of the line: tabs may stand there for empty fields.
+                fields = [field.strip().strip(b'"') for field in text.strip(b" ").split(block.separator)]
             yield line, fields
         line += 1
 

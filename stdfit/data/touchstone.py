@@ -12,7 +12,7 @@ from stdfit.data.immittance import gamma_from_admittance, gamma_from_impedance
 from stdfit.data.plain_text import plain_text
 from stdfit.data.rows import Block, line_of_row, parse_rows
 from stdfit.data.soundness import HIGHEST_MAGNITUDE, check_sweep
-from stdfit.data.touchstone_header import Header, parse_header
+from stdfit.data.touchstone_header import Header, another_option_line, parse_header
 
 _SUFFIX = re.compile(r"\.s([0-9]+)p\Z", re.IGNORECASE)
 _LINE_END = re.compile(rb"[\r\n]")
@@ -78,6 +78,8 @@ def parse_touchstone(
         notes.append(f"the name says {named_ports} port(s), the rows hold {ports}")
     if rows.noise_left_out:
         notes.append("noise parameters were left out")
+    if another_option_line(header, text):
+        notes.append("a later option line says otherwise; the first one counts, as the format wants it")
     if header.parameter != "S":
         notes.append(f"reflection computed from {header.parameter} parameters")
 

@@ -27,6 +27,8 @@ KEYWORDS = (
     "End",
 )
 _LINES = re.compile(rb"([^\r\n]*)(\r\n|\r|\n|\Z)")
+_LATER_OPTIONS = re.compile(rb"[\r\n][ \t]*#([^\r\n]*)")
+_OPTIONS = ("unit", "parameter", "number_format", "reference_ohm")
 _KEYWORD = re.compile(r"\[\s*([^\]]*?)\s*\](.*)\Z")
 _EXAMPLE = "give an option line such as '# Hz S RI R 50' above the numbers"
 
@@ -114,6 +116,24 @@ def parse_header(text: bytes, name: str) -> Header:
     if not options:
         raise ReadingError("no option line was found", _EXAMPLE, file=name)
     raise ReadingError("the file holds no numbers", "export the readings again", file=name)
+
+
+def another_option_line(header: Header, text: bytes) -> bool:
+    """Tell whether an option line among the numbers of version 1 says something else than the first one.
+
+    Two files that were joined look like this. The format lets the first line count, and nobody would notice.
+    """
+    if header.version != 1 or text.find(b"#", header.start) < 0:
+        return False
+    for match in _LATER_OPTIONS.finditer(text, header.start):
+        other = Header(header.name)
+        try:
+            _read_options(other, match[1].decode("ascii").partition("!")[0], 0)
+        except ReadingError:
+            return True
+        if any(getattr(other, name) != getattr(header, name) for name in _OPTIONS):
+            return True
+    return False
 
 
 def _read_options(header: Header, text: str, number: int) -> None:

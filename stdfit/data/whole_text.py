@@ -1,9 +1,16 @@
 """Text files that are read whole: bench, kit and other TOML files."""
 
-import stat
+import re
 from pathlib import Path
 
 from stdfit.base.errors import InputError
+from stdfit.data.ordinary import ordinary_bytes
+
+MOST_DOTS = 60
+"""Parts of a dotted key; the parser takes a time that grows with their square, and files need three."""
+
+_PART = r"""(?:[\w-]+|"[^"\n]*"|'[^'\n]*')"""
+_DOTTED = re.compile(rf"(?<![\w-])(?:{_PART}[ \t]*\.[ \t]*){{{MOST_DOTS}}}", re.ASCII)
 
 
 def whole_text(path: Path, what: str, largest: int, error: type[InputError], missing: str) -> str:
@@ -28,12 +35,12 @@ def whole_text(path: Path, what: str, largest: int, error: type[InputError], mis
     """
     article = "an" if what[0] in "aeiou" else "a"
     try:
-        status = path.stat()
-        if not stat.S_ISREG(status.st_mode):
+        raw = ordinary_bytes(path, largest + 1)
+        if raw is None:
             raise error("not an ordinary file", f"name {article} {what}", file=path)
-        if status.st_size > largest:
+        if len(raw) > largest:
             raise error(f"larger than {largest // 2**20} MB", f"name {article} {what}", file=path)
-        return path.read_bytes().decode("utf-8-sig")
+        text = raw.decode("utf-8-sig")
     except FileNotFoundError as fault:
         raise error(f"no such {what}", missing, file=path) from fault
     except UnicodeDecodeError as fault:
@@ -42,3 +49,13 @@ def whole_text(path: Path, what: str, largest: int, error: type[InputError], mis
     except (OSError, ValueError) as fault:
         why = getattr(fault, "strerror", None) or "not a possible file name"
         raise error(f"cannot be read: {why}", "check the path", file=repr(str(path))[1:-1]) from fault
+    dotted = _DOTTED.search(text)
+    if dotted is not None:
+        line = text.count("\n", 0, dotted.start()) + 1
+        raise error(
+            f"more than {MOST_DOTS} words in a row joined by points",
+            f"name {article} {what}",
+            file=path,
+            line=line,
+        )
+    return text

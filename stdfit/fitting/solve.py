@@ -116,6 +116,12 @@ def least_squares(
     )
 
 
+def load_solver() -> None:
+    """Import what a fit needs, which takes longer than most fits, before work is handed to other processes."""
+    import lmfit  # noqa: F401
+    import scipy.optimize  # noqa: F401
+
+
 def near_least(residual: Function, jacobian: Function, start: FloatArray, tolerance: float) -> FloatArray:
     """Return values near the smallest sum of squares, or where the search got stuck.
 

@@ -4,6 +4,7 @@ import hashlib
 from pathlib import Path
 
 from stdfit.base.errors import KitError, RequestError
+from stdfit.base.shown import shown
 from stdfit.validity.change.history_kits import Dated
 from stdfit.writing.kit_file import is_kit_file
 from stdfit.writing.kit_reading import read_kit
@@ -33,14 +34,16 @@ def find_kits(folder: Path) -> tuple[list[Dated], list[tuple[str, str]]]:
     found: list[Dated] = []
     left_out: list[tuple[str, str]] = []
     for path in [*own, *inner]:
-        name = path.relative_to(folder).as_posix()
+        name = shown(path.relative_to(folder).as_posix())
         if not is_kit_file(path):
             left_out.append((name, "no kit file"))
             continue
+        if len(found) == MOST:
+            raise RequestError(
+                f"more than {MOST} kit files", "name a folder with those of one set", file=folder
+            )
         try:
             found.append(Dated(name, hashlib.sha256(path.read_bytes()).hexdigest(), read_kit(path)))
         except KitError as fault:
             left_out.append((name, f"{fault.key}: {fault.what}" if fault.key else fault.what))
-    if len(found) > MOST:
-        raise RequestError(f"more than {MOST} kit files", "name a folder with those of one set", file=folder)
     return found, left_out

@@ -14,6 +14,7 @@ from stdfit.data.readings import read_reading
 from stdfit.data.soundness import HIGHEST_MAGNITUDE
 from stdfit.pipeline.adapters.brought import refuse_behind
 from stdfit.pipeline.adapters.known import thru_of
+from stdfit.pipeline.drawn import drawn_contradictions, with_drawings
 from stdfit.pipeline.finished import finished, program_version, with_limits
 from stdfit.pipeline.kept_readings import session_of
 from stdfit.pipeline.prepare import Prepared, prepare
@@ -24,7 +25,7 @@ from stdfit.pipeline.raw.unreferenced import characterise_unreferenced
 from stdfit.pipeline.settle import choose_all, settle
 from stdfit.uncertainty.monte_carlo import compare_with_linear
 from stdfit.validity.define import Settled, define, given_contradictions
-from stdfit.validity.kit import Kit, SourceFile
+from stdfit.validity.kit import ADAPTER, DRAWING, Kit, SourceFile
 from stdfit.validity.linear_check import check_lines
 
 __all__ = [
@@ -67,7 +68,7 @@ def fit_bench(
     draws : int
         Draws of a Monte Carlo check of the linear bounds; 0 for none.
     tell : callable, optional
-        Is told how many of the draws are done: (done, total).
+        Is told how many are done: (done, total), of the draws, or of the ranges that are fitted without references.
 
     Raises
     ------
@@ -86,9 +87,14 @@ def fit_bench(
 
 
 def source_files(bench: Bench) -> tuple[SourceFile, ...]:
-    """Return the files of readings and of adapters that a bench names, with their digests."""
+    """Return the files of readings, drawings and adapters that a bench names, with their digests."""
     named = [(entry.name, file) for entry in bench.standards for file in entry.files]
-    named += [(f"adapter {one.name}", one.file) for one in bench.adapters if one.file is not None]
+    named += [
+        (f"{DRAWING}{entry.name}", entry.from_drawing.file)
+        for entry in bench.standards
+        if entry.from_drawing
+    ]
+    named += [(f"{ADAPTER}{one.name}", one.file) for one in bench.adapters if one.file is not None]
     return tuple(
         SourceFile(whose, _relative(file, bench.path.parent), hashlib.sha256(file.read_bytes()).hexdigest())
         for whose, file in named
@@ -149,14 +155,16 @@ def characterise(
     ------
     InputError, FitError
     """
+    bench = with_drawings(bench, sweeps)
     if has_few_references(bench):
         refuse_behind(bench)
         if draws:
             raise too_few_references(bench)
-        return characterise_unreferenced(bench, sweeps, files=files, created=created)
+        return characterise_unreferenced(bench, sweeps, files=files, created=created, tell=tell)
     prepared = prepare_bench(bench, sweeps)
     settled = settle(prepared, choose_all(prepared))
     kit = kit_of(prepared, settled, files=files, created=created)
+    kit = replace(kit, warnings=(*kit.warnings, *drawn_contradictions(prepared, settled)))
     if draws:
         rng = np.random.default_rng(CHECK_SEED)
         compared = compare_with_linear(settled.problem, settled.values, prepared.sources, draws, rng, tell)
@@ -176,6 +184,7 @@ def prepare_bench(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> Prepar
     ------
     InputError
     """
+    bench = with_drawings(bench, sweeps)
     if bench.state == "corrected":
         return prepare(bench, sweeps)
     if has_few_references(bench):

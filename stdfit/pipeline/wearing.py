@@ -5,6 +5,7 @@ from pathlib import Path
 
 from stdfit.base.errors import RequestError
 from stdfit.data.bench import BENCH_NAME, read_bench
+from stdfit.data.ordinary import beginning
 from stdfit.pipeline.path import fit_bench
 from stdfit.validity.change.refusals import refuse_words
 from stdfit.validity.change.wear import Wear, wear
@@ -52,13 +53,7 @@ def _is_bench(path: Path) -> bool:
     """Tell whether a path is a folder, or a file that says of itself that it is a bench file."""
     if path.is_dir():
         return True
-    try:
-        if not path.is_file():
-            return path.name == BENCH_NAME
-        with path.open("rb") as stream:
-            return BENCH_MARK in stream.read(4096)
-    except OSError:
-        return False
+    return BENCH_MARK in beginning(path, 4096) or (path.name == BENCH_NAME and not path.exists())
 
 
 def _digest(path: Path) -> str:

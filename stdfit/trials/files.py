@@ -8,7 +8,9 @@ import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.errors import RequestError
+from stdfit.data.ordinary import beginning
 from stdfit.trials.bench import SimulatedBench
+from stdfit.writing.safely import write_whole
 
 MARK = "simulated, invented data"
 
@@ -82,16 +84,19 @@ def write_bench(simulated: SimulatedBench, folder: Path | str, name: str = "Simu
     bench = folder / "bench.toml"
     texts[bench] = bench_text(simulated, name)
     for path in texts:
-        if path.exists() and MARK not in path.read_text(encoding="utf-8", errors="replace"):
+        if (path.exists() or path.is_symlink()) and not _is_simulated(path):
             raise RequestError(
                 "would overwrite a file that is not simulated", "choose another folder", file=path
             )
     folder.mkdir(parents=True, exist_ok=True)
     for path, text in texts.items():
-        unfinished = path.with_name(path.name + ".part")
-        unfinished.write_text(text, encoding="utf-8", newline="\n")
-        unfinished.replace(path)
+        write_whole(path, text)
     return bench
+
+
+def _is_simulated(path: Path) -> bool:
+    """Tell whether a file says of itself in its first line that it is simulated."""
+    return MARK.encode() in beginning(path, 4096).split(b"\n")[0]
 
 
 def reading_names(simulated: SimulatedBench, standard: str) -> list[str]:

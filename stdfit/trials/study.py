@@ -13,6 +13,8 @@ from stdfit.base.errors import RequestError, StdfitError
 from stdfit.data.words import suggestion
 from stdfit.trials.bench import draw_bench
 from stdfit.trials.devices import devices_inside
+from stdfit.trials.drawn_parts import draw_drawn_bench
+from stdfit.trials.drawn_study import prepared_drawn
 from stdfit.trials.families import Family, demo_scenario, families
 from stdfit.trials.five_parts import Workshop, draw_five_parts, score_five_parts
 from stdfit.trials.raw_session import draw_raw_session
@@ -30,6 +32,9 @@ AGAINST_A_KIT: dict[str, tuple[str, tuple[str, ...]]] = {
     "raw, two sets": ("drift", ("before", "after")),
 }
 """Families of raw readings against the standards of a kit: whose standards they are, and the sets of references."""
+
+DRAWN = "drawn parts"
+"""The family of parts that are made to a drawing, which the fit takes as evidence."""
 
 DEMO = "demo"
 LIKE = "like the bench"
@@ -92,7 +97,7 @@ class Row:
 
 def family_names() -> list[str]:
     """Return the names of all families."""
-    return [*family_table(), *WITHOUT_REFERENCE, *AGAINST_A_KIT]
+    return [*family_table(), *WITHOUT_REFERENCE, *AGAINST_A_KIT, DRAWN]
 
 
 def family_table() -> dict[str, Family]:
@@ -112,12 +117,24 @@ def trial(family: str, seed: int, number: int, within: float, like: Scenario | N
         return _without_reference(WITHOUT_REFERENCE[family], within, rng)
     if like is None and family in AGAINST_A_KIT:
         return _against_a_kit(*AGAINST_A_KIT[family], within, rng)
+    if like is None and family == DRAWN:
+        return _to_a_drawing(within, rng)
     simulated = draw_bench(like if like is not None else family_table()[family](rng), rng)
     try:
         kit, scores = score(simulated, within, stated=family not in NOT_STATED)
     except StdfitError:
         return None
     return Trial(tuple(scores), devices_inside(kit, simulated, rng))
+
+
+def _to_a_drawing(within: float, rng: np.random.Generator) -> Trial | None:
+    """Draw parts that are made to a drawing, and score the fit that takes it as evidence."""
+    made = draw_drawn_bench(rng)
+    try:
+        kit, scores = scored(prepared_drawn(made, within), made.simulated, within)
+    except StdfitError:
+        return None
+    return Trial(tuple(scores), devices_inside(kit, made.simulated, rng))
 
 
 def _against_a_kit(family: str, sets: Sequence[str], within: float, rng: np.random.Generator) -> Trial | None:

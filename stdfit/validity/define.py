@@ -6,6 +6,8 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from stdfit.base.arrays import FloatArray
+from stdfit.circuits.standard import PARAMETERS
+from stdfit.circuits.units import said_unit
 from stdfit.fitting.problem import Problem, Quantity
 from stdfit.fitting.solve import Solution
 from stdfit.uncertainty.budget import Share, expanded
@@ -133,9 +135,10 @@ def contradiction(quantity: Quantity, value: float, standard: str) -> str:
     if off <= DISAGREES:
         return ""
     parameter = quantity.parameter
-    who = "you gave" if quantity.role == "given" else "assumed was"
+    who = "given was" if quantity.role == "given" else "assumed was"
+    stated = f"{quantity.value:g} ± {quantity.evidence_u:.2g} {said_unit(parameter.unit)}"
     return (
-        f"{parameter.label}: {who} {quantity.value:g} ± {quantity.evidence_u:.2g} {parameter.unit}, and the readings "
+        f"{parameter.label}: {who} {stated}, and the readings "
         f"pull it to {value:.4g}, {off:.0f} standard uncertainties away: check the value, its unit (one way?), the file"
     )
 
@@ -223,7 +226,8 @@ def _notes(
                 f"{combination.label}, hardly the parts; a ruler or a drawing tells them apart"
             )
     notes += contradictions
-    assumed = [parameter.name for parameter in parameters if parameter.role == "assumed"]
+    roles = {parameter.name: parameter.role for parameter in parameters}
+    assumed = [one.label for one in PARAMETERS[kind] if roles[one.name] == "assumed"]
     if assumed:
         notes.append(f"rests on weak assumed evidence (common practice): {', '.join(assumed)}")
     return tuple(notes)

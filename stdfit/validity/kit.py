@@ -63,7 +63,7 @@ class Combination:
     correlation: float
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, slots=True, eq=False, repr=False)
 class Definition:
     """One standard of a kit.
 
@@ -109,6 +109,9 @@ class Definition:
         object.__setattr__(self, "misfit_hz", frozen_float(self.misfit_hz))
         object.__setattr__(self, "misfit", frozen_float(self.misfit))
 
+    def __repr__(self) -> str:
+        return f"<Definition '{self.name}': {self.kind}, order {self.shape}, {_said(self.limit)}>"
+
     @property
     def values(self) -> FloatArray:
         """Parameter values in trade units, shape (p,)."""
@@ -124,13 +127,30 @@ class Rung:
     standards_hz: tuple[float, ...]
 
 
+ADAPTER, DRAWING = "adapter ", "drawing of "
+"""How the names of files begin that hold no readings."""
+
+
 @dataclass(frozen=True, slots=True)
 class SourceFile:
-    """A file of readings that went into a kit."""
+    """A file that went into a kit.
+
+    Attributes
+    ----------
+    standard : str
+        The standard that its readings are of; "adapter NAME" or "drawing of NAME" for what is no file of readings.
+    file : str
+    sha256 : str
+    """
 
     standard: str
     file: str
     sha256: str
+
+    @property
+    def holds_readings(self) -> bool:
+        """Whether it is a file of readings."""
+        return not self.standard.startswith((ADAPTER, DRAWING))
 
 
 @dataclass(frozen=True, slots=True)
@@ -153,7 +173,7 @@ class Ancestor:
     of: str = ""
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, slots=True, eq=False, repr=False)
 class Kit:
     """Everything that is known of a set of standards.
 
@@ -212,6 +232,10 @@ class Kit:
     calibration: str = ""
     session: Session | None = None
 
+    def __repr__(self) -> str:
+        names = ", ".join(one.name for one in self.definitions)
+        return f"<Kit '{self.name}': {names}; {_said(self.limit)}>"
+
     def definition(self, name: str) -> Definition:
         """Return the definition of that name.
 
@@ -225,6 +249,11 @@ class Kit:
                 return definition
         names = ", ".join(definition.name for definition in self.definitions)
         raise RequestError(f"the kit holds no standard named '{name}'", f"it holds: {names}")
+
+
+def _said(limit: Limit) -> str:
+    """Say a limit in a few words."""
+    return f"within {limit.within:g} good to {limit.limit_hz / 1e9:.3g} GHz"
 
 
 def model(kit: Kit, definition: Definition, frequency_hz: FloatArray) -> tuple[ComplexArray, ComplexArray]:
@@ -251,21 +280,26 @@ def model(kit: Kit, definition: Definition, frequency_hz: FloatArray) -> tuple[C
     return gamma, design
 
 
-def curve(kit: Kit, definition: Definition, frequency_hz: FloatArray) -> tuple[ComplexArray, FloatArray]:
+def curve(
+    kit: Kit, definition: Definition | str, frequency_hz: FloatArray
+) -> tuple[ComplexArray, FloatArray]:
     """Return Γ and its bound: the 95 % radius of all sources, plus the misfit.
 
     Parameters
     ----------
     kit : Kit
-    definition : Definition
+    definition : Definition or str
+        A standard of the kit, or its name.
     frequency_hz : array of shape (n,)
         Above 0 and not above the last reading: beyond it nothing is known.
 
     Raises
     ------
     RequestError
-        A frequency lies outside.
+        A frequency lies outside, or the kit holds no such standard.
     """
+    if isinstance(definition, str):
+        definition = kit.definition(definition)
     frequency_hz = np.asarray(frequency_hz, dtype=float)
     outside = ~((frequency_hz > 0.0) & (frequency_hz <= definition.read_top_hz))
     if outside.any():

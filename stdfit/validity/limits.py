@@ -5,6 +5,7 @@ from collections.abc import Callable, Sequence
 import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
+from stdfit.circuits.standard import PARAMETERS
 from stdfit.uncertainty.budget import Share, radius
 from stdfit.validity.kit import Definition, Kit, Rung, misfit_at, model
 from stdfit.validity.limit import Limit, first_gap
@@ -15,6 +16,9 @@ TOLERANCES = (0.005, 0.01, 0.02, 0.03, 0.05, 0.1)
 GRID_POINTS = 400
 """Points at which a bound is compared with a tolerance, besides those of the misfit."""
 
+
+GIVEN = "given values"
+"""The source that stands for what the user gave."""
 
 TOLD_PART = 0.01
 """An extra error is told of from this part of the tolerance on."""
@@ -97,7 +101,7 @@ def _limit(
     elif misfit[place] >= spread[place]:
         reason = "the readings leave the model here (misfit)"
     else:
-        reason = largest_source(design[place], kit.shares)
+        reason = cause(kit, design[place])
     return Limit(within, limit_hz, reason + more)
 
 
@@ -132,3 +136,32 @@ def largest_source(design: ComplexArray, shares: Sequence[Share]) -> str:
     _, most = max(kinds[kind])
     said = f"{kind}, {100 * total:.0f} % of the variance"
     return f"{said}, most of it {most}" if most and len(kinds[kind]) > 1 else said
+
+
+def cause(kit: Kit, design: ComplexArray) -> str:
+    """Say which kind of source has the largest part of the variance of Γ at one frequency; of given values, which.
+
+    Parameters
+    ----------
+    kit : Kit
+        With shares.
+    design : complex array of shape (p,)
+    """
+    said = largest_source(design, kit.shares)
+    given = [share for share in kit.shares if share.name == GIVEN]
+    values = [
+        (f"{parameter.label} of {definition.name}", kit.order.index(own.of))
+        for definition in kit.definitions
+        for own, parameter in zip(definition.parameters, PARAMETERS[definition.kind], strict=True)
+        if own.role == "given" and own.of in kit.order
+    ]
+    if not said.startswith(GIVEN) or not given or not values:
+        return said
+    if len(values) == 1:
+        return said.replace(GIVEN, f"{GIVEN} ({values[0][0]})", 1)
+    covariance = given[0].covariances[0]
+    # A value kept by its evidence has the evidence's error: the one that the error of Γ goes along with is the cause.
+    along = np.array([design.real, design.imag]) @ covariance
+    size = np.sqrt(np.maximum(np.diag(covariance), 1e-300))
+    most = max(values, key=lambda value: float(np.hypot(*along[:, value[1]]) / size[value[1]]))
+    return f"{said}, most of it {most[0]}"

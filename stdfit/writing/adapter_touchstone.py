@@ -4,6 +4,7 @@ from pathlib import Path
 
 import numpy as np
 
+from stdfit.data.ordinary import beginning
 from stdfit.validity.adapter import Adapter
 from stdfit.validity.thru import LINE_TERMS
 from stdfit.writing.export import rounded_up
@@ -54,14 +55,8 @@ def adapter_touchstone(adapter: Adapter) -> str:
 
 def is_adapter_touchstone(path: Path) -> bool:
     """Return whether a file begins like one of this module."""
-    try:
-        if not path.is_file():  # to open a pipe would wait for ever
-            return False
-        with path.open("rb") as stream:
-            line = stream.readline(1 + len(FIRST_LINE) + 1)
-    except OSError:
-        return False
-    return line.decode("utf-8", "replace").rstrip("\r\n") == FIRST_LINE
+    line = beginning(path, len(FIRST_LINE) + 2).decode("utf-8", "replace").split("\n")[0]
+    return line.rstrip("\r") == FIRST_LINE
 
 
 def _plain(value: float) -> str:

@@ -1,6 +1,7 @@
 """What a kit does to devices, in words, columns and plain data."""
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -166,25 +167,44 @@ def answer_data(found: Sequence[Answer]) -> list[dict[str, Any]]:
     ]
 
 
-def as_a_kit(kit: Kit) -> list[str]:
-    """Return what a kit does to devices in a few lines; none where it does not hold three standards."""
+@dataclass(frozen=True, slots=True, eq=False)
+class WholeKit:
+    """What a kit does to devices: its residual terms at a few frequencies, and the answers to usual questions."""
+
+    errors: DeviceMap
+    answers: tuple[Answer, ...]
+
+
+def whole_kit(kit: Kit) -> WholeKit | None:
+    """Return what a kit does to devices, or None where it does not hold three standards with a common band."""
     try:
         three = three_of(kit)
     except RequestError:
-        return []
+        return None
     low, top = max(one.read_low_hz for one in three), min(common_top(three), kit.top_hz)
     if top < low:
-        return []
+        return None
     errors = device_map(kit, three, round_frequencies(low, top, 3))
     asked = [return_loss_within(20.0, 1.0), impedance_within(kit.reference_ohm, 2.0, kit.reference_ohm)]
-    found = answers(kit, [*asked, phase_within(2.0)])
+    return WholeKit(errors, tuple(answers(kit, [*asked, phase_within(2.0)])))
+
+
+def as_a_kit(kit: Kit) -> list[str]:
+    """Return what a kit does to devices in a few lines; none where it does not hold three standards."""
+    whole = whole_kit(kit)
+    if whole is None:
+        return []
     lines = [f"As a kit ({COMMENT})"]
-    lines += aligned(term_rows(device_rows(errors, ())[1]))
-    for one in found:
-        end = f"to {frequency(one.limit_hz)}" if one.limit_hz > 0.0 else "at no frequency"
-        holds = f", held back by {one.holds_back}" if one.holds_back else ""
-        lines.append(f"  {one.question.label}: {end}{holds}")
-    return [*lines, f"  {ideal_line(errors)}"]
+    lines += aligned(term_rows(device_rows(whole.errors, ())[1]))
+    lines += [f"  {one.question.label}: {answer_end(one)}" for one in whole.answers]
+    return [*lines, f"  {ideal_line(whole.errors)}"]
+
+
+def answer_end(one: Answer) -> str:
+    """Say up to where a question is answered, and what holds it back."""
+    end = f"to {frequency(one.limit_hz)}" if one.limit_hz > 0.0 else "at no frequency"
+    holds = f", held back by {one.holds_back}" if one.holds_back else ""
+    return f"{end}{holds}"
 
 
 def ideal_line(errors: DeviceMap) -> str:

@@ -4,20 +4,15 @@ from collections.abc import Iterable
 from pathlib import Path
 
 from stdfit.base.errors import RequestError
+from stdfit.data.ordinary import beginning
 from stdfit.writing.export import FIRST_LINE, JOINT_COLUMNS, STANDARD_COLUMNS
 
 
 def is_export(path: Path) -> bool:
     """Return whether a file begins like one of this module."""
     firsts = {FIRST_LINE, ",".join(STANDARD_COLUMNS), ",".join(JOINT_COLUMNS)}
-    try:
-        if not path.is_file():  # to open a pipe would wait for ever
-            return False
-        with path.open("rb") as stream:
-            line = stream.readline(1 + max(map(len, firsts)) + 1)
-    except OSError:
-        return False
-    return line.decode("utf-8", "replace").rstrip("\r\n") in firsts
+    line = beginning(path, 1 + max(map(len, firsts)) + 1).decode("utf-8", "replace").split("\n")[0]
+    return line.rstrip("\r") in firsts
 
 
 def check_folder(folder: Path, names: Iterable[str]) -> None:

@@ -6,6 +6,7 @@ from typing import Any
 
 import tomlkit
 
+from stdfit.data.ordinary import beginning
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Combination, Definition, Fitted, Kit
 from stdfit.writing.adapter_file import line_table
@@ -155,10 +156,4 @@ def rows_of(triangle: Sequence[float], count: int) -> list[list[float]]:
 
 def is_kit_file(path: Path) -> bool:
     """Return whether a file says of itself, near its top, that it is a kit file."""
-    try:
-        if not path.is_file():  # to open a pipe would wait for ever
-            return False
-        with path.open("rb") as stream:
-            return b'format = "stdfit-kit/' in stream.read(4096)
-    except OSError:
-        return False
+    return b'format = "stdfit-kit/' in beginning(path, 4096)

@@ -8,6 +8,7 @@ import msgspec
 import numpy as np
 
 from stdfit.base.errors import KitError
+from stdfit.data.mistaken import refuse_mistaken
 from stdfit.data.whole_text import whole_text
 from stdfit.data.words import quoted
 from stdfit.uncertainty.budget import Share
@@ -20,7 +21,7 @@ from stdfit.writing.kit_file import FORMAT, rows_of, triangle_size
 from stdfit.writing.session_file import MeanTable, SessionTable, session_from
 from stdfit.writing.sheet_reading import looks_like_a_sheet, parse_sheet
 
-LARGEST_BYTES = 32 * 2**20
+LARGEST_BYTES = 16 * 2**20
 
 Size = Annotated[float, msgspec.Meta(ge=0.0)]
 Count = Annotated[int, msgspec.Meta(ge=1)]
@@ -191,6 +192,7 @@ def parse_kit(text: str, path: Path | str) -> Kit:
     KitError
         With the key at which it fails.
     """
+    refuse_mistaken(text, path, "kit file", KitError)
     try:
         values = tomllib.loads(text)
     except RecursionError as fault:

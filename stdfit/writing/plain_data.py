@@ -8,6 +8,7 @@ import numpy as np
 from stdfit.base.arrays import FloatArray
 from stdfit.validity.kit import Kit, curve
 from stdfit.validity.limit import Limit
+from stdfit.validity.next_steps import next_steps
 from stdfit.writing.adapter_words import line_data
 
 
@@ -68,6 +69,9 @@ def kit_data(kit: Kit) -> dict[str, Any]:
                 },
             }
             for rung in kit.ladder
+        ],
+        "next_steps": [
+            {"kind": one.kind, "action": one.action, "limit_hz": one.limit_hz} for one in next_steps(kit)
         ],
         "warnings": list(kit.warnings),
         "checks": list(kit.checks),

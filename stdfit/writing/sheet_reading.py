@@ -1,5 +1,6 @@
 """The JSON of an entry sheet read back: decoded strictly, into the kit as it is typed."""
 
+import json
 import re
 from dataclasses import replace
 from pathlib import Path
@@ -149,6 +150,7 @@ def parse_sheet(text: str, path: Path | str) -> Kit:
             file=path,
             key="format",
         )
+    _refuse_keys_twice(text, path)
     _refuse_strange_keys(values, path)
     try:
         whole = msgspec.convert(values, _Whole)
@@ -161,6 +163,24 @@ def parse_sheet(text: str, path: Path | str) -> Kit:
     except KitError as fault:
         raise KitError(fault.what, fault.mend, file=path, key=_own_key(fault.key)) from fault
     return replace(kit, ladder=ladder(kit))
+
+
+def _refuse_keys_twice(text: str, path: Path | str) -> None:
+    """Refuse a key that stands twice in one object: the decoder would take the last one and say nothing."""
+
+    def once(pairs: list[tuple[str, Any]]) -> None:
+        seen: set[str] = set()
+        for key, _ in pairs:
+            if key in seen:
+                raise KitError(
+                    "the key stands twice", "leave one of the two", file=path, key=quoted(key)[1:-1]
+                )
+            seen.add(key)
+
+    try:
+        json.loads(text, object_pairs_hook=once)
+    except (ValueError, RecursionError) as fault:  # numbers without an end, lists in lists without one
+        raise KitError(f"not JSON: {quoted(str(fault), 100)[1:-1]}", MEND, file=path) from fault
 
 
 def _refuse_strange_keys(values: dict[str, Any], path: Path | str) -> None:

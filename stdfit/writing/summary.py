@@ -2,12 +2,17 @@
 
 from collections.abc import Sequence
 
+from stdfit.circuits.units import said_unit
 from stdfit.validity.kit import Definition, Kit
 from stdfit.validity.limit import Limit
+from stdfit.validity.next_steps import next_steps
 from stdfit.writing.adapter_words import thru_lines
 from stdfit.writing.aligned import aligned
 from stdfit.writing.device_text import as_a_kit
 from stdfit.writing.numbers import decimals, frequency, label_of, plus_minus, rounded
+
+STEPS = 2
+"""So many steps that would push the limit further are told in a few lines."""
 
 TOLD_FROM = 0.1
 """Where the readings begin is told when it is above this part of the limit."""
@@ -33,14 +38,14 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
     ]
     lines += aligned(
         [
-            ["standard", "good to", "ends because", "fitted to", "order"],
+            ["standard", "good to", "fitted to", "order", "ends because"],
             *(
                 [
                     one.name,
                     frequency(one.limit.limit_hz),
-                    one.limit.reason,
                     frequency(one.fit_top_hz),
                     one.shape,
+                    one.limit.reason,
                 ]
                 for one in kit.definitions
             ),
@@ -56,10 +61,8 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
     whole = as_a_kit(kit)
     if whole:
         lines += ["", *whole]
-    notes: dict[str, list[str]] = {}
-    for one in kit.definitions:
-        for note in one.notes:
-            notes.setdefault(note, []).append(one.name)
+    lines += step_lines(kit)
+    notes = notes_of(kit)
     if notes:
         lines += ["", "Notes", *(f"  {', '.join(names)}: {note}" for note, names in notes.items())]
     if kit.thru is not None:
@@ -73,8 +76,8 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
     return "\n".join(lines) + "\n"
 
 
-def _definition(kit: Kit, definition: Definition) -> list[str]:
-    """Return the parameters of one standard."""
+def parameter_rows(kit: Kit, definition: Definition) -> list[list[str]]:
+    """Return label, value with its 95 % uncertainty, unit and role of what a standard uses, sums at the end."""
     rows = []
     for parameter, digits in zip(definition.parameters, decimals(kit, definition), strict=True):
         if parameter.role == "unused":
@@ -83,9 +86,9 @@ def _definition(kit: Kit, definition: Definition) -> list[str]:
         half = max(parameter.high - parameter.value, parameter.value - parameter.low)
         role = "" if parameter.role == "free" else parameter.role
         if parameter.role == "held":
-            rows.append([label, rounded(parameter.value, digits), parameter.unit, role])
+            rows.append([label, rounded(parameter.value, digits), said_unit(parameter.unit), role])
         else:
-            rows.append([label, plus_minus(parameter.value, half, digits), parameter.unit, role])
+            rows.append([label, plus_minus(parameter.value, half, digits), said_unit(parameter.unit), role])
     for one in definition.combinations:
         rows.append(
             [
@@ -95,6 +98,21 @@ def _definition(kit: Kit, definition: Definition) -> list[str]:
                 "the sum that the readings fix",
             ]
         )
+    return rows
+
+
+def notes_of(kit: Kit) -> dict[str, list[str]]:
+    """Return each note once, with the names of the standards that it is of."""
+    notes: dict[str, list[str]] = {}
+    for one in kit.definitions:
+        for note in one.notes:
+            notes.setdefault(note, []).append(one.name)
+    return notes
+
+
+def _definition(kit: Kit, definition: Definition) -> list[str]:
+    """Return the parameters of one standard."""
+    rows = parameter_rows(kit, definition)
     others = [
         f"{order} {frequency(limit_hz)}" for order, limit_hz in definition.tried if order != definition.shape
     ]
@@ -112,6 +130,14 @@ def ancestor_lines(kit: Kit) -> list[str]:
         depth[one.sha256] = depth[one.of] + 1
         lines.append(f"{'  ' * depth[one.of]}{one.name}, {one.created} (SHA-256 {one.sha256[:8]}…)")
     return lines
+
+
+def step_lines(kit: Kit) -> list[str]:
+    """Return what would push the limit furthest, none where nothing is known to."""
+    rows = [[frequency(step.limit_hz), step.action] for step in next_steps(kit)[:STEPS]]
+    if not rows:
+        return []
+    return ["", "What would push it further (estimated without a new fit)", *aligned(rows)]
 
 
 def ladder_lines(kit: Kit) -> list[str]:

@@ -49,7 +49,7 @@ def test_a_kit_beside_itself(kit_file, command, tmp_path):
     done = command(tmp_path, "compare", kit_file, kit_file)
     assert (done.returncode, done.stderr) == (0, "")
     assert done.stdout.splitlines()[-1] == "the kits do not differ"
-    assert "files of readings are in both kits: errors in common cancel" in done.stdout
+    assert "source files are in both kits: errors in common cancel" in done.stdout
 
 
 def test_a_kit_beside_ideal_standards(kit_file, capsys):

@@ -12,10 +12,14 @@ def test_it_ends_with_the_paths_and_what_to_do_next(demo, command):
     folder, done = demo
     assert done.returncode == 0
     lines = done.stdout.splitlines()
-    assert lines[-4] == "readings and bench file: bench/bench.toml"
-    assert lines[-3] == "kit file: bench/kit.toml"
-    assert lines[-2].startswith("next: stdfit show bench/kit.toml")
-    next_one = shlex.split(lines[-2].removeprefix("next: stdfit ").split("  ")[0])
+    assert lines[-6:-3] == [
+        "readings and bench file: bench/bench.toml",
+        "kit file: bench/kit.toml",
+        "report: bench/report.html",
+    ]
+    assert lines[-3].startswith("next: open bench/report.html ")
+    assert lines[-2].lstrip().startswith("stdfit show bench/kit.toml")
+    next_one = shlex.split(lines[-2].lstrip().removeprefix("stdfit ").split("  ")[0])
     assert command(folder, *next_one).returncode == 0
 
 

@@ -78,9 +78,9 @@ def test_the_same_kit_is_refused(command, place):
     ("old", "new", "options", "words"),
     [
         ("nowhere.toml", "autumn", [], "no such kit file"),
-        ("spring/bench.toml", "autumn", [], "not a kit file"),
+        ("spring/bench.toml", "autumn", [], "a bench file, where a kit file is wanted"),
         ("spring/kit.toml", "nowhere.toml", [], "no such kit file"),
-        ("spring/kit.toml", "spring/open-1.s1p", [], "not TOML"),
+        ("spring/kit.toml", "spring/open-1.s1p", [], "a file of readings, where a kit file is wanted"),
         ("spring/kit.toml", ".", [], "holds no bench.toml"),
         ("spring/kit.toml", "autumn", ["--json", "--csv"], "--csv and --json"),
     ],

@@ -138,6 +138,6 @@ def test_what_is_no_list_of_tables(bench, tmp_path, device):
 
 @pytest.mark.parametrize("figure", ["{ value = 50.0, u = 1e200 }", "1e300"])
 def test_figures_that_no_device_has(bench, figure):
-    with pytest.raises(BenchError, match="which no device has") as refused:
+    with pytest.raises(BenchError, match="which no part has") as refused:
         bench('kind = "load"', f"given.resistance_ohm = {figure}")
     assert refused.value.key == "device[x].given.resistance_ohm"

@@ -75,6 +75,7 @@ GRIDS = {
 NOTES = {
     "one-port-in-s2p.s2p": "the name says 2 port(s), the rows hold 1",
     "two-port-in-s1p.s1p": "the name says 1 port(s), the rows hold 2",
+    "second-option-line.s1p": "a later option line says otherwise; the first one counts, as the format wants it",
     "two-port-noise.s2p": "noise parameters were left out",
     "seventy-five-ohm.s1p": "changed from 75 Ω to 50 Ω",
     "version-2-reference.s1p": "changed from 75 Ω to 50 Ω",

@@ -68,7 +68,7 @@ def test_links(tmp_path):
 def test_a_giant(tmp_path):
     with (tmp_path / "giant.s1p").open("wb") as file:
         file.truncate(600 * 2**20)  # sparse: takes no room
-    assert refuse(tmp_path / "giant.s1p").what == "larger than 512 MB"
+    assert refuse(tmp_path / "giant.s1p").what == "larger than 64 MB"
 
 
 @pytest.mark.skipif(

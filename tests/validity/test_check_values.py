@@ -38,7 +38,7 @@ def test_what_is_not_given_widens_the_bound_and_is_told():
     assert found.assumed == (
         "offset loss 1 ± 3 GΩ/s",
         "offset Z0 50 ± 1 Ω",
-        "C0 40 ± 40 1e-15 F",
+        "C0 40 ± 40 fF",
     )
     # 40 fF are 2 ps of delay at 50 Ω: at 1 GHz about 0.025, and the other two come on top.
     assert 0.7 * LINE * 0.0251 < found.bound[0] < 1.3 * LINE * 0.0251

@@ -250,7 +250,7 @@ def test_files_in_common_are_told(usual_kit):
         replace(usual_kit, files=(file, SourceFile("load", "x", sha))) for sha in ("1" * 64, "2" * 64)
     )
     (note,) = compare(one, two).notes
-    assert note.startswith("a file of readings is in both kits")
+    assert note.startswith("a source file is in both kits")
 
 
 def test_kits_without_sources_are_compared_by_their_misfits(usual_kit, grid):

@@ -89,7 +89,7 @@ def test_a_given_value_comes_out_hardly_worse_than_it_went_in(kit):
 
 def test_what_was_assumed_is_told(kit):
     (note,) = [note for note in kit.definition("open").notes if "assumed evidence" in note]
-    assert "c0" in note
+    assert "C0" in note
     assert "offset_loss" not in note
 
 
@@ -127,9 +127,9 @@ def test_a_given_value_that_the_readings_contradict_is_told_loudly(workshop):
     wrong, right = (
         workshop(given={"short": {"offset_delay_ps": (true + off, 0.5)}}).kit() for off in (7.0, 0.3)
     )
-    (said,) = [line for line in wrong.warnings if "you gave" in line]
+    (said,) = [line for line in wrong.warnings if "given was" in line]
     assert said.startswith(
-        f"short: offset delay: you gave {true + 7.0:g} ± 0.5 ps, and the readings pull it to "
+        f"short: offset delay: given was {true + 7.0:g} ± 0.5 ps, and the readings pull it to "
     )
     assert "check the value, its unit" in said
-    assert not any("you gave" in line for line in right.warnings)
+    assert not any("given was" in line for line in right.warnings)

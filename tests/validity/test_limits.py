@@ -7,8 +7,8 @@ import pytest
 
 from stdfit.base.errors import RequestError
 from stdfit.uncertainty.budget import Share
-from stdfit.validity.kit import curve, total_covariance
-from stdfit.validity.limits import TOLERANCES, ladder, largest_source, limits, shares_at
+from stdfit.validity.kit import curve, model, total_covariance
+from stdfit.validity.limits import TOLERANCES, cause, ladder, largest_source, limits, shares_at
 from stdfit.writing.kit_file import kit_text
 from stdfit.writing.kit_reading import parse_kit
 
@@ -145,3 +145,17 @@ def test_parts_of_the_variance(modest_kit):
     assert largest_source(design, [one, half, rest]) == "pair, 54 % of the variance, most of it a"
     assert total_covariance([one, other]).tolist() == [[3.0, 0.0], [0.0, 1.0]]
     assert shares_at(np.zeros(2), [one, other]).tolist() == [0.0, 0.0]
+
+
+def test_given_values_are_told_by_name(workshop):
+    """By residuals of 20 dB the readings tell a resistance to 5 Ω; 0.5 Ω are given, and a delay that is sure."""
+    given = {"load": {"resistance_ohm": (50.3, 0.5)}}
+    shop = workshop(given=given, residual_db=20.0)
+    for extra, said in (
+        ({}, "given values (resistance of load), "),
+        ({"short": {"offset_delay_ps": (25.0, 0.01)}}, "given values, "),
+    ):
+        kit = replace(shop, given={**given, **extra}).kit()
+        _, design = model(kit, kit.definition("load"), np.array([1e8]))
+        assert cause(kit, design[0]).startswith(said)
+        assert cause(kit, design[0]).endswith("most of it resistance of load") == bool(extra)

@@ -80,7 +80,7 @@ def test_an_unknown_key_is_named_with_the_nearest_known_one(new, old, key, words
 
 VALUES = {
     "other format": ("stdfit-kit/1", "stdfit-kit/2", "format", "not a kit file of this version"),
-    "bench file": ("stdfit-kit/1", "stdfit-bench/1", "format", "not a kit file of this version"),
+    "bench file": ("stdfit-kit/1", "stdfit-bench/1", None, "a bench file, where a kit file is wanted"),
     "no format": ('format = "stdfit-kit/1"\n', "", "format", "not a kit file"),
     "text for a number": (
         "within = 0.02\nl",
@@ -344,4 +344,4 @@ def test_a_huge_file_is_not_read(tmp_path, capsys):
     path = tmp_path / "kit.toml"
     with path.open("wb") as file:
         file.truncate(LARGEST_BYTES + 1)
-    assert command_refuses(path, capsys) == "larger than 32 MB"
+    assert command_refuses(path, capsys) == "larger than 16 MB"

@@ -139,3 +139,29 @@ def test_links_in_a_ring(tmp_path):
     with pytest.raises(RequestError, match="cannot be written"):
         write_whole(tmp_path / "a", "new")
     assert names_in(tmp_path) == ["a", "b"]
+
+
+def test_a_name_that_is_nearly_too_long(tmp_path):
+    name = "k" * 250 + ".toml"
+    write_whole(tmp_path / name, "new")
+    assert names_in(tmp_path) == [name]
+
+
+def test_what_a_killed_run_left_is_cleared_away_when_it_is_old(tmp_path):
+    """Young ones may belong to a run that is writing just now; others belong to somebody else."""
+    path = tmp_path / "kit.toml"
+    old = [".kit.toml.abcd1234.part", ".kit.toml._______9.part"]
+    kept = [
+        ".kit.toml.abcd1235.part",
+        ".kit.toml.part",
+        "kit.toml.abcd1234.part",
+        ".other.toml.abcd1234.part",
+    ]
+    for name in old + kept:
+        (tmp_path / name).write_text("half", encoding="utf-8")
+        if name != kept[0]:
+            os.utime(tmp_path / name, (0, 0))
+    (tmp_path / ".kit.toml.folder12.part").mkdir()
+    os.utime(tmp_path / ".kit.toml.folder12.part", (0, 0))
+    write_whole(path, "new")
+    assert names_in(tmp_path) == sorted([*kept, ".kit.toml.folder12.part", "kit.toml"])

@@ -27,7 +27,7 @@ def test_what_is_written_comes_back(kit):
     assert again.calibration == "lab kit, first of May"
     for one, two in zip(kit.session.means, again.session.means, strict=True):
         assert (one.standard, one.connections, one.noise_sd) == (two.standard, two.connections, two.noise_sd)
-        for name in ("frequency_hz", "gamma", "calibration_sd", "session_sd"):
+        for name in ("frequency_hz", "gamma", "calibration_sd", "session_sd", "connection_hz", "deviations"):
             assert np.array_equal(getattr(one, name), getattr(two, name))
     assert np.array_equal(kit.session.scatter_sd, again.session.scatter_sd)
 
@@ -37,6 +37,44 @@ def test_without_readings_and_calibration_no_word_of_them_is_written(kit):
     assert "[session" not in text
     assert "\ncalibration" not in text
     assert parse_kit(text, "kit.toml").session is None
+
+
+def test_each_connection_is_kept_on_a_coarse_grid(workshop):
+    made = workshop(frequency_hz=np.linspace(50e6, 6e9, 1001))
+    kit, sweeps = made.kit(), made.readings()
+    text = kit_text(kit)
+    again = parse_kit(text, "kit.toml")
+    assert kit_text(again) == text
+    for one in again.session.means:
+        assert 40 <= one.connection_hz.size <= 60
+        assert set(one.connection_hz) <= set(one.frequency_hz)
+        stack = np.array([sweep.gamma for sweep in sweeps[one.standard]])
+        places = np.searchsorted(sweeps[one.standard][0].frequency_hz, one.connection_hz)
+        away = (stack - stack.mean(axis=0))[:, places]
+        assert np.abs(one.deviations - away).max() < 1e-7
+
+
+def test_one_connection_deviates_from_nothing_and_older_files_still_read(kit, workshop):
+    single = workshop(connections=1).kit()
+    assert all(one.connection_hz is None and one.deviations is None for one in single.session.means)
+    assert "deviations" not in kit_text(single)
+    older = re.sub(r"connection_hz = .*\n|deviations_.. = \[\n(    .*\n)*\]\n", "", kit_text(kit))
+    again = parse_kit(older, "kit.toml")
+    assert all(one.connection_hz is None and one.deviations is None for one in again.session.means)
+    assert kit_text(again) == older
+
+
+def test_a_minus_before_a_zero_comes_back_as_it_was_written(kit):
+    first, *others = kit.session.means
+    signs = np.where(np.arange(first.deviations.shape[1]) % 2, -0.0, 0.0)
+    zeros = np.empty(first.deviations.shape, dtype=complex)
+    zeros.real, zeros.imag = signs, -signs
+    gamma = first.gamma.copy()
+    gamma.real[:2] = -0.0
+    turned = replace(first, deviations=zeros, gamma=gamma)
+    text = kit_text(replace(kit, session=replace(kit.session, means=(turned, *others))))
+    assert "-0.0, " in text
+    assert kit_text(parse_kit(text, "kit.toml")) == text
 
 
 def test_the_mean_reading_is_the_model_and_what_the_fit_left(kit):
@@ -86,6 +124,34 @@ FAULTS = {
     ),
     "day too large": (r"session_sd = \[[^,]*", "session_sd = [1e200", "session.mean[0].session_sd"),
     "at 0 Hz": (r"(noise_sd[^\n]*\nfrequency_hz = \[)[^,]*", r"\g<1>0.0", "session.mean[0].frequency_hz"),
+    "places nan": (r"connection_hz = \[[^,]*", "connection_hz = [nan", "session.mean[0].connection_hz[0]"),
+    "places at 0 Hz": (r"connection_hz = \[[^,]*", "connection_hz = [0.0", "session.mean[0].connection_hz"),
+    "places falling": (r"connection_hz = \[[^,]*", "connection_hz = [9e9", "session.mean[0].connection_hz"),
+    "no places": (r"connection_hz = .*\n", "", "session.mean[0].connection_hz"),
+    "fewer places": (r"connection_hz = \[[^,]*, ", "connection_hz = [", "session.mean[0].deviations_re"),
+    "shorter row": (r"(deviations_im = \[\n    \[)[^,]*, ", r"\g<1>", "session.mean[0].deviations_re"),
+    "a row less": (r"(deviations_re = \[\n)    .*\n", r"\g<1>", "session.mean[0].deviations_re"),
+    "no imaginary parts": (
+        r"deviations_im = \[\n(    .*\n)*\]\n",
+        "",
+        "session.mean[0].deviations_re",
+    ),
+    "another count": (
+        r"(session.mean\]\]\nstandard = .*\nconnections = )\d+",
+        r"\g<1>9",
+        "session.mean[0].deviations_re",
+    ),
+    "deviation inf": (r"(deviations_re = \[\n    \[)[^,]*", r"\g<1>inf", "session.mean[0].deviations_re"),
+    "deviation too large": (
+        r"(deviations_im = \[\n    \[)[^,]*",
+        r"\g<1>4.0",
+        "session.mean[0].deviations_re",
+    ),
+    "deviation no number": (
+        r"(deviations_re = \[\n    \[)[^,]*",
+        r'\g<1>"a"',
+        "session.mean[0].deviations_re[0][0]",
+    ),
     "unknown key": (r"noise_sd = ", "noise = 1\nnoise_sd = ", "session.mean[0].noise"),
     "control character": ("first of May", "first\\\\tof May", "kit.calibration"),
 }

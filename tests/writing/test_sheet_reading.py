@@ -235,6 +235,23 @@ def test_any_value_at_any_place(data):
     assert 0 < used < 200
 
 
+@pytest.mark.parametrize("place", ['"within": ', '"largest": ', '"term": '])
+def test_a_key_that_stands_twice_is_refused(data, place):
+    """A decoder would take the last of the two, and a sheet that was mended by hand would not mean what it shows."""
+    text = json.dumps(data)
+    twice = text.replace(place, f"{place}0.5, {place}", 1)
+    with pytest.raises(KitError, match="the key stands twice") as caught:
+        parse_sheet(twice, "sheet.json")
+    assert caught.value.key == place.strip('": ')
+
+
+@pytest.mark.parametrize("value", ["[" * 990 + "]" * 990, "9" * 5000, "{" * 100_000])
+def test_depth_and_digits_without_an_end(data, value):
+    text = json.dumps(data).replace('"within": ', f'"within": {value}, "x": ', 1)
+    with pytest.raises(KitError):
+        parse_sheet(text, "sheet.json")
+
+
 def test_every_key_is_described(data):
     page = FILES.read_text(encoding="utf-8").partition("## Entry sheet as JSON")[2].partition("\n## ")[0]
 

@@ -4,7 +4,7 @@ What takes the place of known standards is evidence: lengths from a ruler, a res
 standards than unknown error terms.
 """
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import replace
 from pathlib import Path
 
@@ -40,6 +40,7 @@ def characterise_unreferenced(
     *,
     files: tuple[SourceFile, ...] = (),
     created: str | None = None,
+    tell: Callable[[int, int], None] | None = None,
 ) -> Kit:
     """Turn raw readings with fewer than three known standards into a kit of the others.
 
@@ -47,12 +48,14 @@ def characterise_unreferenced(
     ----------
     bench, sweeps, files, created
         As for `characterise`.
+    tell : callable, optional
+        Is told how many of the ranges are fitted: (done, total).
 
     Raises
     ------
     InputError, FitError
     """
-    kit, _ = eliminated(bench, sweeps, files=files, created=created)
+    kit, _ = eliminated(bench, sweeps, files=files, created=created, tell=tell)
     return kit
 
 
@@ -63,6 +66,7 @@ def eliminated(
     files: tuple[SourceFile, ...] = (),
     created: str | None = None,
     origins: Mapping[Path, Origin] | None = None,
+    tell: Callable[[int, int], None] | None = None,
 ) -> tuple[Kit, Eliminated]:
     """Return the kit and the fit that it comes from, over the range in which its limit is highest.
 
@@ -72,6 +76,8 @@ def eliminated(
         As for `characterise`.
     origins : mapping, optional
         Kits that were read already, by the path under which the bench names them.
+    tell : callable, optional
+        As for `characterise_unreferenced`.
 
     Raises
     ------
@@ -84,7 +90,9 @@ def eliminated(
         gathered, found = kept, eliminate(kept)
     f = gathered.frequency_hz
     each = [(_kit(gathered, found, files, created), found)]
-    for part in SHORTER:
+    for done, part in enumerate(SHORTER, start=1):
+        if tell:
+            tell(done, 1 + len(SHORTER))
         top = float(f[0] + part * (f[-1] - f[0]))
         if np.count_nonzero(f <= top) >= FEWEST_POINTS:
             found = eliminate(gathered, top, found)

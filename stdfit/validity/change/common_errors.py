@@ -2,7 +2,7 @@
 
 from collections.abc import Hashable
 
-from stdfit.validity.kit import Definition, Kit
+from stdfit.validity.kit import ADAPTER, Definition, Kit
 
 MODELS = ("misfit", "model errors")
 """Kinds of sources that are a standard's own: its model is wrong by the same every time."""
@@ -34,7 +34,7 @@ def root_of(
         parents = tuple(sorted(one.sha256 for one in kit.ancestors if not one.of))
         return (source, parents) if parents else None
     if kind == "adapter":
-        files = tuple(sorted(one.sha256 for one in kit.files if one.standard.startswith("adapter ")))
+        files = tuple(sorted(one.sha256 for one in kit.files if one.standard.startswith(ADAPTER)))
         return (source, files) if files and "connection" not in source else None
     if kind == "analyser residuals":
         if same_calibration:

@@ -7,6 +7,7 @@ import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray, frozen_float
 from stdfit.circuits.standard import PARAMETERS, reflection
+from stdfit.circuits.units import said_unit
 from stdfit.uncertainty.budget import radius
 from stdfit.validity.kit import Definition, Fitted, Kit, model
 
@@ -120,7 +121,7 @@ def _parameters(kit: Kit, definition: Definition) -> Iterator[Followed]:
         if not _trades_off(alone * np.abs(design @ direction), spread):
             interval = (parameter.value, parameter.low, parameter.high)
             yield Followed(
-                *(parameter.name, _label(definition.kind, parameter), parameter.unit, *interval),
+                *(parameter.name, _label(definition.kind, parameter), said_unit(parameter.unit), *interval),
                 *sources,
                 steers=(parameter.name, 1.0),
             )

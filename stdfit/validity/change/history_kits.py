@@ -75,7 +75,7 @@ def _why_not(one: Dated, kept: Sequence[Dated]) -> str:
     families = [family_of(kit.connector).name for kit in (one.kit, newest)]
     if all(families) and families[0] != families[1]:
         return f"connector {families[0]} instead of {families[1]}"
-    readings = {file.sha256 for file in one.kit.files if not file.standard.startswith("adapter ")}
+    readings = {file.sha256 for file in one.kit.files if file.holds_readings}
     for other in kept:
         if other.sha256 == one.sha256:
             return f"the same as {other.file}"

@@ -72,7 +72,7 @@ def refuse_words(old: str, new: str, old_ohm: float, new_ohm: float) -> None:
 
 
 def _readings(kit: Kit) -> list[SourceFile]:
-    return [one for one in kit.files if not one.standard.startswith("adapter ")]
+    return [one for one in kit.files if one.holds_readings]
 
 
 def refuse_other_plane(projected: Sequence[Projected]) -> None:

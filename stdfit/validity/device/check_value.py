@@ -8,6 +8,7 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray, FloatArray, frozen_complex, frozen_float
 from stdfit.base.records import Sweep
 from stdfit.circuits.standard import PARAMETERS, Parameter, reflection
+from stdfit.circuits.units import said_unit
 from stdfit.data.bench_records import Given, StatedBound
 from stdfit.fitting.observed import phase_slope
 from stdfit.fitting.roles import ASSUMED
@@ -74,7 +75,7 @@ def given_value(
         else:
             value, u = _usual(kind, parameter, reference_ohm)
             if u > 0.0:
-                assumed.append(f"{parameter.label} {value:g} ± {u:g} {parameter.unit}")
+                assumed.append(f"{parameter.label} {value:g} ± {u:g} {said_unit(parameter.unit)}")
         values.append(value)
         sizes.append(u)
     with np.errstate(all="ignore"):  # a bench may hold any figures

@@ -111,7 +111,7 @@ def shared(one: Kit, two: Kit) -> tuple[str, ...]:
     """Say which errors the kits may have in common: these cancel in a difference, and the bounds are wide for it."""
     same = {file.sha256 for file in one.files} & {file.sha256 for file in two.files}
     if same:
-        count = f"{len(same)} files of readings are" if len(same) > 1 else "a file of readings is"
+        count = f"{len(same)} source files are" if len(same) > 1 else "a source file is"
         return (
             f"{count} in both kits: errors in common cancel in the difference, and the comparison is wide",
         )

@@ -19,7 +19,7 @@ from stdfit.validity.device.bound import (
 )
 from stdfit.validity.kit import Kit
 from stdfit.validity.limit import first_gap
-from stdfit.validity.limits import largest_source
+from stdfit.validity.limits import cause
 
 GRID_POINTS = 150
 """Frequencies at which a bound is compared with what is allowed, besides those of the misfits."""
@@ -213,7 +213,7 @@ def _culprit(kit: Kit, there: DeviceMap, question: Question) -> tuple[str, str]:
     misfit = float(np.abs(own) * there.misfits[0, worst])
     if 2.0 * misfit >= float(device_bound(_kept(there, [k == worst for k in range(3)]), device)[0, 0]):
         return name, "the readings leave the model here (misfit)"
-    return name, largest_source(own * there.designs[0, worst], kit.shares)
+    return name, cause(kit, own * there.designs[0, worst])
 
 
 def _kept(errors: DeviceMap, keep: Sequence[bool]) -> DeviceMap:

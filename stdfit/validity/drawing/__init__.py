@@ -1,0 +1,1 @@
+"""From the dimensions of a part to evidence on its parameters."""

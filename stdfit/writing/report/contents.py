@@ -1,0 +1,164 @@
+"""From a kit to everything that stands on its page."""
+
+from collections.abc import Sequence
+
+from stdfit.validity.kit import Kit
+from stdfit.validity.next_steps import next_steps
+from stdfit.writing.adapter_words import line_rows
+from stdfit.writing.device_text import COMMENT
+from stdfit.writing.numbers import frequency
+from stdfit.writing.report.reasons import standard_of, why
+from stdfit.writing.report.records import Answer, Figure, Page, Reach, Table
+from stdfit.writing.report.standards import standard_parts, typing_of
+from stdfit.writing.report.sure import bound_tables, device_tables, good_to
+from stdfit.writing.report.words import counted, sentence, unit
+from stdfit.writing.summary import TOLD_FROM, verdict
+
+NO_READINGS = "This kit file keeps no readings, so that the pictures show definitions and bounds alone."
+
+STEPS_NOTE = (
+    "Estimates without a new fit: one kind of error is halved and all else stays as it is. “stdfit plan” looks at the "
+    "bench file and does the fits."
+)
+
+TOP_WARNINGS = 4
+"""So many warnings stand near the top, the others further down."""
+
+
+def page_of(kit: Kit, figures: Sequence[tuple[str | None, Figure]]) -> Page:
+    """Return what stands on the page of a kit.
+
+    Parameters
+    ----------
+    kit : Kit
+    figures : sequence of (standard, Figure)
+        Pictures with the standard that they are of, None for those of the kit.
+    """
+    of_standards: dict[str, list[Figure]] = {}
+    for name, one in figures:
+        if name is not None:
+            of_standards.setdefault(name, []).append(one)
+    devices, ideal = device_tables(kit)
+    answer = _answer(kit)
+    short = f"good to {answer.figure}" if answer.figure else "cannot be trusted"
+    return Page(
+        title=f"{kit.name}: {short} within {answer.within}",
+        name=kit.name,
+        about=", ".join(
+            [
+                kit.connector or "connector not named",
+                f"{kit.reference_ohm:g} Ω",
+                *([f"read {kit.measured}"] if kit.measured else []),
+                f"fitted {kit.created}",
+            ]
+        ),
+        answer=answer,
+        warnings=tuple(sentence(one) for one in kit.warnings[:TOP_WARNINGS]),
+        more_warnings=tuple(sentence(one) for one in kit.warnings[TOP_WARNINGS:]),
+        warning_count=counted(len(kit.warnings), "warning"),
+        typing=tuple(typing_of(kit, one) for one in kit.definitions),
+        bounds=bound_tables(kit),
+        device_note=sentence(COMMENT),
+        devices=devices,
+        ideal=sentence(ideal) if ideal else "",
+        steps=_steps(kit),
+        figures=tuple(one for name, one in figures if name is None),
+        readings_note="" if kit.session is not None else NO_READINGS,
+        standards=standard_parts(kit, of_standards),
+        record=_record(kit),
+        checks=tuple(sentence(one) for one in kit.checks),
+        facts=_facts(kit),
+    )
+
+
+def _answer(kit: Kit) -> Answer:
+    reason, gloss = why(kit)
+    low = max(one.read_low_hz for one in kit.definitions)
+    limit_hz = kit.limit.limit_hz
+    return Answer(
+        figure=frequency(limit_hz) if limit_hz > 0.0 else "",
+        from_where=f"from {frequency(low)}" if low > TOLD_FROM * limit_hz > 0.0 else "",
+        within=f"{kit.within:g}",
+        reason=reason,
+        gloss=gloss,
+        standards=_reaches(kit),
+        verdict=verdict(kit),
+    )
+
+
+def _reaches(kit: Kit) -> tuple[Reach, ...]:
+    """Return how far each standard is good, on one scale of frequency for all."""
+    whole = max(one.read_top_hz for one in kit.definitions)
+    ending = standard_of(kit)
+    return tuple(
+        Reach(
+            one.name,
+            good_to(one.limit.limit_hz),
+            one.limit.reason,
+            100.0 * one.read_low_hz / whole,
+            100.0 * one.read_top_hz / whole,
+            100.0 * min(max(one.limit.limit_hz, one.read_low_hz), one.read_top_hz) / whole,
+            one.name == ending,
+        )
+        for one in kit.definitions
+    )
+
+
+def _steps(kit: Kit) -> Table | None:
+    """Return what would push the limit, best first."""
+    steps = next_steps(kit)
+    if not steps:
+        return None
+    now = kit.limit.limit_hz
+    caption = (
+        f"What would push the limit of {frequency(now)} further" if now > 0.0 else "What would make it useful"
+    )
+    rows = tuple((sentence(one.action), good_to(one.limit_hz)) for one in steps)
+    return Table(caption, ("what to do", "good to"), rows, STEPS_NOTE)
+
+
+def _record(kit: Kit) -> tuple[Table, ...]:
+    """Return thru, references and source files."""
+    tables = []
+    if kit.thru is not None:
+        rows = [(label, value, unit(own)) for label, value, own in line_rows(kit.thru.line)]
+        rows.append(("SHA-256 of its file", kit.thru.sha256, ""))
+        tables.append(Table(f"Thru: {kit.thru.name} (± 95 %)", ("term", "value", "unit"), tuple(rows)))
+    if kit.ancestors:
+        names = {one.sha256: one.name for one in kit.ancestors}
+        tables.append(
+            Table(
+                "Its references, and theirs",
+                ("kit", "made", "reference of", "SHA-256 of its file"),
+                tuple(
+                    (one.name, one.created, names.get(one.of, "this kit"), one.sha256)
+                    for one in kit.ancestors
+                ),
+            )
+        )
+    if kit.files:
+        tables.append(
+            Table(
+                "Files of readings",
+                ("file", "standard", "SHA-256"),
+                tuple((one.file, one.standard, one.sha256) for one in kit.files),
+            )
+        )
+    return tuple(tables)
+
+
+def _facts(kit: Kit) -> tuple[tuple[str, str], ...]:
+    facts = [
+        ("connector", kit.connector or "not named"),
+        ("reference impedance", f"{kit.reference_ohm:g} Ω"),
+        ("tolerance on the error of Γ", f"{kit.within:g}"),
+        ("standards", counted(len(kit.definitions), "standard")),
+    ]
+    if 0.0 < kit.top_hz < float("inf"):
+        facts.append(("top of the connector family", frequency(kit.top_hz)))
+    if kit.measured:
+        facts.append(("read on", kit.measured))
+    if kit.calibration:
+        facts.append(("correction of the analyser", kit.calibration))
+    facts += [("fitted on", kit.created), ("program", f"stdfit {kit.version}")]
+    return tuple(facts)

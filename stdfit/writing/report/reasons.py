@@ -1,0 +1,46 @@
+"""Why a limit is where it is, in a sentence for somebody who has not read the method."""
+
+from stdfit.validity.kit import Kit
+
+GLOSSES = (
+    ("analyser residuals", "Analyser residuals are what the analyser's own calibration leaves uncorrected."),
+    (
+        "reference connections",
+        "Reference connections are how well the known standards repeated when they were read.",
+    ),
+    ("reference kit", "Its references carry their own uncertainty into this kit."),
+    ("reference misfit", "Its references do not follow their own definitions exactly."),
+    ("connections", "Connections are what changes when the same part is connected again."),
+    ("noise", "Noise is what differs from one point of a reading to the next."),
+    (
+        "given values",
+        "Given values are the lengths, resistances and so on that were stated with the readings.",
+    ),
+    ("assumed values", "Assumed values stand in where neither readings nor stated values tell enough."),
+    ("drift", "Drift is what changed in the analyser between the sets of readings."),
+    ("the readings leave the model", "The part does something there that its definition cannot describe."),
+    ("the readings end", "Nothing was read beyond; a longer sweep would show more."),
+    ("the next mode", "Beyond, the field in the connector is no longer that of a simple line."),
+    ("the stated bound", "This kit states its bounds without their causes."),
+    ("what is typed", "What is typed is simpler than the full definition."),
+)
+"""What the words of a reason mean, by their beginning."""
+
+
+def standard_of(kit: Kit) -> str:
+    """Return the standard with which the kit ends, as its reason names it; empty where it names none."""
+    names = [one.name for one in kit.definitions if kit.limit.reason.startswith(f"{one.name}: ")]
+    return max(names, key=len, default="")
+
+
+def why(kit: Kit) -> tuple[str, str]:
+    """Return why the kit ends where it does, as a sentence, and what its words mean."""
+    name = standard_of(kit)
+    reason = kit.limit.reason.removeprefix(f"{name}: ")
+    gloss = next((text for start, text in GLOSSES if reason.startswith(start)), "")
+    begin = "It ends" if kit.limit.limit_hz > 0.0 else "It fails at its first readings"
+    begin = f"{begin} with “{name}”: " if name else f"{begin}: "
+    if " of the variance" not in reason:
+        return f"{begin}{reason}.", gloss
+    source, _, share = reason.partition(", ")
+    return f"{begin}the largest part of its uncertainty there is {source} ({share}).", gloss
