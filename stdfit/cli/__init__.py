@@ -23,6 +23,10 @@ __all__ = ["ANSWER_IS_NO", "DONE", "OWN_FAULT", "STOPPED_BY_USER", "WRONG_INPUT"
 
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command; return its exit code."""
+    for stream in (sys.stdout, sys.stderr):
+        # A terminal that knows few letters shows escapes for the others.
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="backslashreplace")
     arguments_of_all = parser()
     asked = arguments_of_all.parse_args(arguments)
     try:
@@ -55,4 +59,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
 def _drop_output() -> None:
     """Give up what is still buffered for stdout: it has nowhere to go, and must not fail again at the end."""
-    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    nowhere = os.open(os.devnull, os.O_WRONLY)
+    try:
+        os.dup2(nowhere, sys.stdout.fileno())
+    except (OSError, ValueError):  # it is no file: somebody catches it, or has closed it
+        pass
+    finally:
+        os.close(nowhere)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from stdfit.cli.exit_codes import DONE
 from stdfit.cli.screen import print_json, say, tell
+from stdfit.cli.targets import refuse_inputs
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -25,6 +26,7 @@ def adapter(asked: argparse.Namespace) -> int:
     target = asked.output if asked.output is not None else _default_target(bench.path)
     beside = touchstone_beside(target)
     _check_targets(target, beside)
+    refuse_inputs(bench, target, beside)
     found = determine_adapter(bench)
     write_whole(target, adapter_text(found))
     write_whole(beside, adapter_touchstone(found))
@@ -43,7 +45,7 @@ def adapter(asked: argparse.Namespace) -> int:
 def touchstone_beside(target: Path) -> Path:
     """Return where the Touchstone file of an adapter file goes: barrel.s2p beside barrel.adapter.toml."""
     stem = target.name.removesuffix(".toml").removesuffix(".adapter")
-    return target.with_name(f"{stem or 'adapter'}.s2p")
+    return target.parent / f"{stem or 'adapter'}.s2p"
 
 
 def _default_target(bench: Path) -> Path:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 
+from stdfit.base.shown import shown
 from stdfit.cli.exit_codes import WRONG_INPUT
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
@@ -18,7 +19,7 @@ class Parser(argparse.ArgumentParser):
 
     def error(self, message: str) -> NoReturn:
         """Say what is wrong and stop."""
-        self.exit(WRONG_INPUT, f"stdfit: {message}\nsee '{self.prog} --help'\n")
+        self.exit(WRONG_INPUT, f"stdfit: {shown(message)}\nsee '{self.prog} --help'\n")
 
 
 def parser() -> Parser:
@@ -359,6 +360,8 @@ def _magnitude(text: str) -> float:
 def _path(text: str) -> Path:
     from pathlib import Path
 
+    if "\0" in text:
+        raise argparse.ArgumentTypeError(f"{text!r} is not a possible name")
     return Path(text)
 
 
@@ -384,10 +387,9 @@ def _number(text: str) -> float:
 
 
 def _seed(text: str) -> int:
-    value = int(text)
-    if not 0 <= value < 2**63:
-        raise argparse.ArgumentTypeError(f"'{text}' is no whole number from 0 on")
-    return value
+    if not (text.isascii() and text.isdecimal() and len(text) < 19):
+        raise argparse.ArgumentTypeError(f"{text!r} is no whole number from 0 on")
+    return int(text)
 
 
 def _draws(text: str) -> int:

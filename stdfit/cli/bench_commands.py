@@ -5,7 +5,7 @@ from __future__ import annotations
 from stdfit.cli.exit_codes import DONE
 from stdfit.cli.report_commands import check_page, write_page
 from stdfit.cli.screen import print_json, print_text, progress, say, tell, warn
-from stdfit.cli.targets import check_target, default_target, write_kit
+from stdfit.cli.targets import check_target, default_target, refuse_inputs, write_kit
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -58,6 +58,7 @@ def fit(asked: argparse.Namespace) -> int:
     bench = read_bench(asked.bench[0])
     target = asked.output if asked.output is not None else default_target(bench.path)
     check_target(target)
+    refuse_inputs(bench, target)
     if asked.report is not None:
         _check_report(asked.report, target)
     with progress("draws" if asked.monte_carlo else "fitting") as told:

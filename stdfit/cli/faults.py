@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from stdfit.base.shown import shown
 from stdfit.cli.exit_codes import ANSWER_IS_NO, OWN_FAULT, WRONG_INPUT
 
 
@@ -12,7 +13,7 @@ def told(fault: Exception) -> tuple[int, str]:
     if isinstance(fault, StdfitError):
         return ANSWER_IS_NO if isinstance(fault, FitError) else WRONG_INPUT, str(fault)
     if isinstance(fault, OSError):
-        where = f"{fault.filename}: " if fault.filename else ""
+        where = f"{shown(fault.filename)}: " if fault.filename else ""
         mend = "check the path, its permissions and the space on the disk"
         return WRONG_INPUT, f"{where}{fault.strerror or fault}\n{mend}"
     return OWN_FAULT, f"a fault of the program; the traceback is in {_save_traceback(fault)}"

@@ -6,10 +6,11 @@ import os
 import signal
 import sys
 
+from stdfit.base.shown import shown
 from stdfit.cli.exit_codes import DONE, OWN_FAULT
 from stdfit.cli.faults import told
 from stdfit.cli.screen import print_json, progress, say, tell
-from stdfit.cli.targets import check_target, default_target, write_kit
+from stdfit.cli.targets import check_target, default_target, refuse_inputs, write_kit
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
@@ -50,7 +51,8 @@ def fit_each(asked: argparse.Namespace) -> int:
             tell(f"{one['bench']}: warning: {warning}")
     for one in failed:
         # Errors are said whatever else is left out; most name their file themselves.
-        named = "" if one["error"].startswith(one["bench"]) else f"{one['bench']}: "
+        bench = shown(one["bench"])
+        named = "" if one["error"].startswith(bench) else f"{bench}: "
         print(f"stdfit: {named}{one['error']}", file=sys.stderr)
     if not asked.json:
         _say(good, len(outcomes))
@@ -105,6 +107,7 @@ def fit_one(task: Task) -> Outcome:
         bench = read_bench(path)
         target = default_target(bench.path)
         check_target(target)
+        refuse_inputs(bench, target)
         kit = fit_bench(bench, within=within, draws=draws)
         write_kit(kit, target)
     except Exception as fault:

@@ -8,6 +8,7 @@ from __future__ import annotations
 import sys
 from contextlib import contextmanager
 
+from stdfit.base.shown import printable
 from stdfit.cli.fold import fold
 
 # typing and pathlib alone take as long to import as the rest of `--help`.
@@ -64,7 +65,10 @@ def print_json(data: object) -> None:
     import json
 
     _end_bar()
-    print(json.dumps(data, indent=2, ensure_ascii=False, allow_nan=False))
+    plain = not (sys.stdout.encoding or "").lower().startswith("utf")
+    text = json.dumps(data, indent=2, ensure_ascii=plain, allow_nan=False)
+    # Names of files may hold anything; what acts on a terminal is written as JSON's own escapes.
+    print(printable(text, lambda letter: json.dumps(letter)[1:-1]))
 
 
 def print_csv(names: Sequence[str], rows: Iterable[Sequence[object]]) -> None:
@@ -74,13 +78,15 @@ def print_csv(names: Sequence[str], rows: Iterable[Sequence[object]]) -> None:
     _end_bar()
     writer = csv.writer(sys.stdout, lineterminator="\n")
     writer.writerow(names)
-    writer.writerows([value if isinstance(value, str) else repr(value) for value in row] for row in rows)
+    writer.writerows(
+        [printable(value) if isinstance(value, str) else repr(value) for value in row] for row in rows
+    )
 
 
 def print_text(text: str) -> None:
     """Print a result in words, folded to the width of a terminal; in a pipe as it is."""
     _end_bar()
-    print(_fitting(text.removesuffix("\n"), sys.stdout))
+    print(_fitting(printable(text.removesuffix("\n")), sys.stdout))
 
 
 def say(text: str) -> None:
@@ -93,7 +99,7 @@ def tell(text: str) -> None:
     """Print a message on standard error; nothing where the command has to be quiet."""
     if not _NOW.quiet:
         _end_bar()
-        print(_fitting(f"stdfit: {text}", sys.stderr), file=sys.stderr)
+        print(_fitting(f"stdfit: {printable(text)}", sys.stderr), file=sys.stderr)
 
 
 def warn(kit: Kit) -> None:

@@ -7,6 +7,7 @@ TYPE_CHECKING = False
 if TYPE_CHECKING:
     from pathlib import Path
 
+    from stdfit.data.bench_records import Bench
     from stdfit.validity.kit import Kit
 
 
@@ -21,6 +22,25 @@ def check_target(path: Path) -> None:
         raise RequestError("no such folder", "make it, or name another place with -o", file=path.parent)
     if path.exists() and not is_kit_file(path):
         raise RequestError("exists and is no kit file", "name another file with -o", file=path)
+
+
+def refuse_inputs(bench: Bench, *targets: Path) -> None:
+    """Refuse to write over a file that the bench reads: its reference kit has the usual name of a kit file, too."""
+    from os.path import realpath
+
+    from stdfit.base.errors import RequestError
+
+    read = [bench.path, *(one.file for one in bench.adapters)]
+    for standard in bench.standards:
+        read += [*standard.files, standard.from_kit]
+    for device in bench.devices:
+        read += [*device.files, device.from_kit, device.value_file]
+    own = {realpath(file) for file in read if file is not None}
+    for target in targets:
+        if realpath(target) in own:
+            raise RequestError(
+                "is read by the bench, and would be overwritten", "name another file with -o", file=target
+            )
 
 
 def write_kit(kit: Kit, path: Path) -> None:

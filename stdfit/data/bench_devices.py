@@ -30,6 +30,14 @@ _VALUES = {"kind": ("given",), "from_kit": ("standard",), "value_file": ("value_
 NEEDED = {"open": "offset_delay_ps", "short": "offset_delay_ps", "load": "resistance_ohm"}
 """Without this the given parameters of a kind are no value at all."""
 
+LARGEST_BOUND = 2.0
+"""Reflections of passive parts do not differ by more."""
+
+_TOO_LARGE = (
+    f"above {LARGEST_BOUND:g}, by which no two reflections differ",
+    "check the figure: it is a bound on |ΔΓ|",
+)
+
 
 def decode_devices(whole: Table) -> tuple[DeviceEntry, ...]:
     """Return the devices of a bench; none where it has no such tables.
@@ -120,7 +128,10 @@ def _bound(table: Table) -> StatedBound:
     """Return the 95 % bound of a stated value: one number, or a table over frequency."""
     values = table.values["value_u95"]
     if not isinstance(values, dict):
-        return StatedBound(frozen_float([1.0]), frozen_float([table.number("value_u95", above=0.0)]))
+        one = table.number("value_u95", above=0.0)
+        if one > LARGEST_BOUND:
+            raise table.fault("value_u95", *_TOO_LARGE)
+        return StatedBound(frozen_float([1.0]), frozen_float([one]))
     inner = Table(values, table.file, f"{table.prefix}.value_u95", ("frequency_hz", "bound"))
     frequency, bound = inner.numbers("frequency_hz", above=0.0), inner.numbers("bound", above=0.0)
     if any(low >= high for low, high in pairwise(frequency)):
@@ -131,4 +142,6 @@ def _bound(table: Table) -> StatedBound:
         raise inner.fault(
             "bound", f"{len(bound)} values for {len(frequency)} frequencies", "give one value a frequency"
         )
+    if max(bound) > LARGEST_BOUND:
+        raise inner.fault("bound", *_TOO_LARGE)
     return StatedBound(frozen_float(frequency), frozen_float(bound))

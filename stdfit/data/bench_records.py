@@ -2,6 +2,7 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from math import inf
 from pathlib import Path
 from types import MappingProxyType
 
@@ -83,6 +84,10 @@ class StandardEntry:
         The drawing that tells more of it.
     drawn : tuple of str
         Which values of `given` that drawing told, once it was looked at.
+    drawn_notes : tuple of str
+        What is to be said of that drawing.
+    next_mode_hz : float
+        Where the next mode begins in what is drawn; infinite where nothing is.
     """
 
     name: str
@@ -99,6 +104,8 @@ class StandardEntry:
     matings: int | None = None
     from_drawing: DrawnFrom | None = None
     drawn: tuple[str, ...] = ()
+    drawn_notes: tuple[str, ...] = ()
+    next_mode_hz: float = inf
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "files", tuple(self.files))

@@ -9,6 +9,8 @@ from stdfit.base.errors import BenchError
 from stdfit.data.words import quoted, suggestion
 
 LONGEST_NAME = 200
+LARGEST, SMALLEST = 1e15, 1e-30
+"""Sizes of numbers in the trade's units; beyond them nothing is measured, and arithmetic has no room left."""
 _KINDS = {
     bool: "true or false",
     int: "a whole number",
@@ -89,7 +91,7 @@ class Table:
         return self.as_number(key, self.values.get(key, default), above=above)
 
     def as_number(self, key: str, value: object, *, above: float | None = None) -> float:
-        """Return `value` when it is a finite number, larger than `above` when that is given."""
+        """Return `value` when it is a finite number of a sensible size, larger than `above` when that is given."""
         if isinstance(value, bool) or not isinstance(value, (int, float)):
             mend = "take it out of the quotes" if isinstance(value, str) else "write a number"
             raise self.fault(key, f"{_what(value)} where a number belongs", mend)
@@ -99,6 +101,9 @@ class Table:
             number = float("inf")
         if not isfinite(number):
             raise self.fault(key, "not a finite number", "write a number")
+        if abs(number) > LARGEST or 0.0 < abs(number) < SMALLEST:
+            how = "large" if abs(number) > LARGEST else "small"
+            raise self.fault(key, f"{number:g} is too {how} to be meant", "check figure and unit")
         if above is not None and number <= above:
             raise self.fault(key, f"{number:g} is not above {above:g}", f"write a number above {above:g}")
         return number

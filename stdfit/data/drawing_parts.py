@@ -20,11 +20,15 @@ _END_KEYS = {
 _MM = 1e-3
 LONGEST_MM = 1000.0
 SHORTEST_MM = 1e-3
+LEAST_BORE_MM = 0.2
+"""No coaxial part is narrower; a figure in m or in inches may be."""
 RATIOS = (1.2, 10.0)
 """Ratios of outer to inner diameter within which fields are computed."""
 MOST_SECTIONS = 20
 MOST_CHIPS = 20
 HIGHEST_PERMITTIVITY = 20.0
+SAME_PERMITTIVITY = 0.01
+"""Relative difference up to which two fillings count as one: half of it is the error of a pin's delay."""
 CONDUCTIVITIES = (1e4, 1e9)
 
 
@@ -61,6 +65,7 @@ def decode_part(item: object, file: Path, place: int) -> PartEntry:
         roughness_m=roughness * 1e-6,
     )
     _refuse_nothing(table, part)
+    _refuse_pin(table, part)
     return part
 
 
@@ -74,6 +79,24 @@ def _refuse_nothing(table: Table, part: PartEntry) -> None:
             f"the diameters of the line before a {part.end.form} end are missing",
             "give inner_mm and outer_mm of the last section",
         )
+
+
+def _refuse_pin(table: Table, part: PartEntry) -> None:
+    """Refuse a pin whose end lies in another line than that of the last section, of which it is computed."""
+    if part.end is None or part.end.pin_m is None or part.end.pin_m.value == 0.0:
+        return
+    pin, last, beyond = part.end.pin_m.value, part.sections[-1], part.end.beyond
+    what = mend = ""
+    if len(part.sections) > 1 and last.length_m is not None and -pin >= last.length_m.value:
+        what = f"set back by {-pin / _MM:g} mm, the pin ends before the last section begins"
+        mend = "draw sections only as far as the pin reaches: what follows is the pipe"
+    elif beyond is not None and abs(last.permittivity.value / beyond.value - 1.0) > SAME_PERMITTIVITY:
+        what = "the pin ends away from where the dielectric changes"
+        mend = "end the last section at the pin's face, and give in beyond what lies before that face"
+        if pin > 0.0:
+            mend = "draw what stands out as a section filled as the pipe is"
+    if what:
+        raise table.fault("end.pin_mm", what, mend)
 
 
 def _conductor(table: Table) -> tuple[float | None, str]:
@@ -117,6 +140,9 @@ def _section(item: object, part: Table, place: int) -> SectionEntry:
     inner = outer = None
     if "inner_mm" in table:
         inner, outer = _length(table, "inner_mm"), _length(table, "outer_mm")
+        if outer.value < LEAST_BORE_MM * _MM:
+            what = f"{outer.value / _MM:g} mm is too narrow to be meant"
+            raise table.fault("outer_mm", what, f"give the diameter in mm, {LEAST_BORE_MM:g} or more")
         ratio = outer.value / inner.value
         if not RATIOS[0] <= ratio <= RATIOS[1]:
             raise table.fault(
@@ -183,6 +209,9 @@ def _permittivity(table: Table, key: str) -> Measure:
             f"a relative permittivity of {measure.value:g} is not usual",
             f"give 1 … {HIGHEST_PERMITTIVITY:g}, or a name",
         )
+    # As for diameters; delay and impedance go with its root.
+    if measure.u > 0.2 * measure.value:
+        raise table.fault(key, "the permittivity is not known to 20 %", "look it up, or name a material")
     return measure
 
 
@@ -194,6 +223,8 @@ def _length(table: Table, key: str, *, signed: bool = False, zero: bool = False)
     if size > LONGEST_MM or not possible:
         what = f"{measure.value / _MM:g} mm cannot be"
         raise table.fault(key, what, f"give mm, {SHORTEST_MM:g} … {LONGEST_MM:g}")
+    if measure.u > LONGEST_MM * _MM:
+        raise table.fault(key, f"u = {measure.u / _MM:g} mm is too large to be meant", "check the unit")
     return measure
 
 

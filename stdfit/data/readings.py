@@ -13,6 +13,7 @@ from stdfit.base.arrays import ComplexArray
 from stdfit.base.errors import ReadingError
 from stdfit.base.records import Sweep
 from stdfit.data.columns import parse_columns
+from stdfit.data.exported import refuse_exported
 from stdfit.data.soundness import HIGHEST_MAGNITUDE
 from stdfit.data.touchstone import parse_touchstone
 from stdfit.data.words import nearest, quoted
@@ -31,6 +32,7 @@ def read_reading(
     port: int = 1,
     reference_ohm: float = 50.0,
     highest_magnitude: float = HIGHEST_MAGNITUDE,
+    exported: bool = False,
 ) -> Sweep:
     """Return the readings of a Touchstone or CSV file, with respect to `reference_ohm`.
 
@@ -44,17 +46,21 @@ def read_reading(
         Reference impedance that is wanted, in ohms.
     highest_magnitude : float
         Largest |Γ| that is let through; raw readings may ask for more than the default.
+    exported : bool
+        Let definitions through that an export wrote; they are no readings.
 
     Raises
     ------
     ReadingError
-        The file cannot be read, or is not sound.
+        The file cannot be read, is not sound, or is an exported definition.
     RequestError
         `port` is neither 1 nor 2.
     """
     path = Path(path)
     raw = _read_bytes(path)
     name = str(path)
+    if not exported:
+        refuse_exported(raw, path)
     if _is_touchstone(raw, name):
         sweep = parse_touchstone(raw, name, port, highest_magnitude=highest_magnitude)
     elif port != 1:

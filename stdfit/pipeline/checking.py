@@ -174,7 +174,7 @@ def _value(kit: Kit, kit_file: Path, entry: DeviceEntry, grid: FloatArray, notes
     if entry.kind is not None:
         return given_value(entry.kind, entry.given, grid, kit.reference_ohm)
     if entry.value_file is not None and entry.value_u95 is not None:
-        sweep = read_reading(entry.value_file, reference_ohm=kit.reference_ohm)
+        sweep = read_reading(entry.value_file, reference_ohm=kit.reference_ohm, exported=True)
         return value_from_file(sweep, entry.value_u95, grid)
     if entry.from_kit is None or entry.standard is None:
         return None

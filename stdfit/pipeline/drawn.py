@@ -102,7 +102,18 @@ def with_drawn(entry: StandardEntry, drawn: DrawnPart) -> StandardEntry:
         for name, given in told.items()
         if name not in entry.given and not (entry.same_offset_as is not None and name in OFFSET)
     }
-    return replace(entry, given={**entry.given, **kept}, drawn=tuple(kept))
+    return replace(
+        entry,
+        given={**entry.given, **kept},
+        drawn=tuple(kept),
+        drawn_notes=drawn.notes,
+        next_mode_hz=drawn.next_mode_hz,
+    )
+
+
+def drawing_notes(bench: Bench) -> tuple[str, ...]:
+    """Return what drawings say that a fit cannot take up."""
+    return tuple(f"{entry.name}, as drawn: {note}" for entry in bench.standards for note in entry.drawn_notes)
 
 
 def compare_with_drawings(prepared: Prepared, settled: Settled) -> list[Compared]:
@@ -120,7 +131,7 @@ def compare_with_drawings(prepared: Prepared, settled: Settled) -> list[Compared
     asked = {
         entry.name: COMPARED[entry.kind]
         for entry in prepared.bench.standards
-        if COMPARED[entry.kind] in entry.drawn and entry.given[COMPARED[entry.kind]].u is not None
+        if COMPARED[entry.kind] in entry.drawn
     }
     if not asked:
         return []

@@ -14,7 +14,7 @@ from stdfit.data.readings import read_reading
 from stdfit.data.soundness import HIGHEST_MAGNITUDE
 from stdfit.pipeline.adapters.brought import refuse_behind
 from stdfit.pipeline.adapters.known import thru_of
-from stdfit.pipeline.drawn import drawn_contradictions, with_drawings
+from stdfit.pipeline.drawn import drawing_notes, drawn_contradictions, with_drawings
 from stdfit.pipeline.finished import finished, program_version, with_limits
 from stdfit.pipeline.kept_readings import session_of
 from stdfit.pipeline.prepare import Prepared, prepare
@@ -90,9 +90,7 @@ def source_files(bench: Bench) -> tuple[SourceFile, ...]:
     """Return the files of readings, drawings and adapters that a bench names, with their digests."""
     named = [(entry.name, file) for entry in bench.standards for file in entry.files]
     named += [
-        (f"{DRAWING}{entry.name}", entry.from_drawing.file)
-        for entry in bench.standards
-        if entry.from_drawing
+        (f"{DRAWING}{entry.name}", entry.from_drawing.file) for entry in bench.standards if entry.from_drawing
     ]
     named += [(f"{ADAPTER}{one.name}", one.file) for one in bench.adapters if one.file is not None]
     return tuple(
@@ -160,11 +158,14 @@ def characterise(
         refuse_behind(bench)
         if draws:
             raise too_few_references(bench)
-        return characterise_unreferenced(bench, sweeps, files=files, created=created, tell=tell)
+        kit = characterise_unreferenced(bench, sweeps, files=files, created=created, tell=tell)
+        return replace(kit, warnings=(*kit.warnings, *drawing_notes(bench)))
     prepared = prepare_bench(bench, sweeps)
     settled = settle(prepared, choose_all(prepared))
     kit = kit_of(prepared, settled, files=files, created=created)
-    kit = replace(kit, warnings=(*kit.warnings, *drawn_contradictions(prepared, settled)))
+    kit = replace(
+        kit, warnings=(*kit.warnings, *drawing_notes(bench), *drawn_contradictions(prepared, settled))
+    )
     if draws:
         rng = np.random.default_rng(CHECK_SEED)
         compared = compare_with_linear(settled.problem, settled.values, prepared.sources, draws, rng, tell)

@@ -8,7 +8,7 @@ import numpy as np
 from stdfit.base.arrays import FloatArray, frozen_float
 from stdfit.base.errors import ReadingError, RequestError
 from stdfit.base.records import Sweep
-from stdfit.circuits.connectors import Family, family_of
+from stdfit.circuits.connectors import Family
 from stdfit.data.bench import Bench, StatedResidual
 from stdfit.data.verify import verify_standards
 from stdfit.fitting.observed import Observed, noise_of, without_delay
@@ -18,6 +18,7 @@ from stdfit.pipeline.adapters.acting import adapter_sources_on, residual_sources
 from stdfit.pipeline.adapters.brought import brought, to_verify
 from stdfit.pipeline.adapters.known import adapter_ancestors, adapter_cautions
 from stdfit.pipeline.adapters.planes import NO_ADAPTERS, Planes, planes_of
+from stdfit.pipeline.ceiling import family_on
 from stdfit.uncertainty.connections import Repeatability, assumed_repeatability, pooled_repeatability
 from stdfit.uncertainty.outlying import without_outlying
 from stdfit.uncertainty.sources import Source, connection_sources
@@ -113,7 +114,7 @@ def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]], *, imagined: bo
     if not imagined:
         sweeps = brought(bench, sweeps, planes)
         warnings += verify_standards(to_verify(bench, sweeps, planes))
-    family = family_of(bench.connector)
+    family = family_on(bench)
     observed, left_out = _observe(bench, sweeps, family)
     wishes = tuple(
         Wish({name: (given.value, given.u) for name, given in entry.given.items()}, entry.same_offset_as)

@@ -150,6 +150,40 @@ def plane(design: ComplexArray, covariance: FloatArray) -> FloatArray:
     )
 
 
+def kind_of(source: str) -> str:
+    """Return the kind of a source: what its name says before the bracket.
+
+    Examples
+    --------
+    >>> kind_of("analyser residuals (source match)"), kind_of("noise")
+    ('analyser residuals', 'noise')
+    """
+    return source.partition(" (")[0]
+
+
+def parts_of_variance(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
+    """Return each source's part of the variance of Γ, v_k/Σv, at the length with the largest total at that frequency.
+
+    Parameters
+    ----------
+    design : complex array of shape (n, p)
+        Derivatives of Γ by the quantities that the covariances are of.
+    shares : sequence of m Share
+        One or more.
+
+    Returns
+    -------
+    array of shape (m, n)
+        Parts that add up to 1; zero where nothing is uncertain.
+    """
+    variances = [plane(design, share.covariances)[..., :2].sum(axis=-1) for share in shares]
+    lengths, points = max(own.shape[0] for own in variances), design.shape[0]
+    stack = np.maximum([np.broadcast_to(own, (lengths, points)) for own in variances], 0.0)
+    worst = stack[:, stack.sum(axis=0).argmax(axis=0), np.arange(points)]
+    total = worst.sum(axis=0)
+    return np.asarray(np.divide(worst, total, out=np.zeros_like(worst), where=total > 0.0))
+
+
 def expanded(direction: FloatArray, shares: Sequence[Share]) -> tuple[FloatArray, FloatArray]:
     """Return standard uncertainty and 95 % uncertainty of linear combinations, the largest over the lengths.
 

@@ -6,7 +6,7 @@ import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.circuits.standard import PARAMETERS
-from stdfit.uncertainty.budget import Share, radius
+from stdfit.uncertainty.budget import Share, parts_of_variance, radius
 from stdfit.validity.kit import Definition, Kit, Rung, misfit_at, model
 from stdfit.validity.limit import Limit, first_gap
 
@@ -89,7 +89,7 @@ def _limit(
     limit_hz, place = first_gap(grid, spread + misfit + extra, within)
     if place is None:
         if kit.top_hz < definition.read_top_hz:
-            return Limit(within, limit_hz, "the next mode of the connector begins, or its family ends, here")
+            return Limit(within, limit_hz, "the next mode begins, or the connector family ends, here")
         return Limit(within, limit_hz, "the readings end here")
     if extra[place] > max(misfit[place], spread[place]):
         return Limit(within, limit_hz, "what is typed differs from the full definition here")
@@ -106,19 +106,14 @@ def _limit(
 
 
 def shares_at(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
-    """Return each source's part of the variance of Γ at one frequency, at the length with the largest total.
+    """Return each source's part of the variance of Γ at one frequency.
 
     Parameters
     ----------
     design : complex array of shape (p,)
     shares : sequence of Share
     """
-    pairs = np.stack([design.real, design.imag])
-    variances = [np.einsum("kp,apq,kq->a", pairs, share.covariances, pairs) for share in shares]
-    lengths = max(variance.size for variance in variances)
-    stack = np.array([np.broadcast_to(variance, lengths) for variance in variances])
-    worst = stack[:, int(np.argmax(stack.sum(axis=0)))]
-    return np.asarray(worst / worst.sum() if worst.sum() > 0.0 else worst)
+    return parts_of_variance(design[None], shares)[:, 0]
 
 
 def largest_source(design: ComplexArray, shares: Sequence[Share]) -> str:

@@ -6,10 +6,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from stdfit.circuits.standard import PARAMETERS
+from stdfit.uncertainty.budget import kind_of
+from stdfit.validity.evidence.sharing import MISFIT
 from stdfit.validity.kit import Definition, Kit, misfit_at, model
 from stdfit.validity.limits import limits, shares_at
 
-MISFIT = "misfit"
 END_OF_READINGS = "end of readings"
 NEXT_MODE = "next mode"
 
@@ -27,6 +28,29 @@ TOGETHER = 3
 
 LONGER = 1.5
 """How much longer the sweep is in the step that asks for one."""
+
+ACTIONS: Mapping[str, str] = {
+    MISFIT: "build {names} so that the model is followed twice as closely: fewer steps, shorter leads or adapters, no "
+    "resonance",
+    "analyser residuals": "correct the analyser with a kit whose residuals are half as large (6 dB), or have those "
+    "that are stated confirmed at half their size",
+    "connections": "make four times as many connections of {names}",
+    "noise": "average each reading four times as long",
+    "reference kit": "take references that are known twice as well",
+    "reference misfit": "take references that follow their models twice as closely",
+    "reference connections": "make four times as many connections of each reference",
+    "reference noise": "average each reading of the references four times as long",
+    "drift": "take half the time from the first set of references to the last",
+    "adapter": "determine the adapter twice as well, or take a shorter one or none",
+    "model errors": "take parts that follow their models twice as closely (fewer steps, shorter leads), or more parts",
+}
+"""What halves a kind of source, or the misfit, at the standards that are named."""
+
+EVIDENCE: Mapping[str, tuple[str, str]] = {
+    "given values": ("given", "measure again, twice as well, what was given"),
+    "assumed values": ("assumed", "find out what is only assumed, to half of its uncertainty"),
+}
+"""The role of the values in question, and what to do about them."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,8 +78,8 @@ def next_steps(kit: Kit) -> tuple[Step, ...]:
 
     Each kind of source that matters where the kit ends is halved: its covariances are taken at ¼, the misfit at ½.
     The fit, its range and its orders stay as they are, and new readings may show what the old ones could not: this is
-    an estimate, for which `stdfit plan` does the fit again. Where no kind moves the limit alone, as two standards end
-    alike for different reasons, those that must be halved together are told as one step.
+    an estimate, mostly low, for which `stdfit plan` does the fit again. Where no kind moves the limit alone, as two
+    standards end alike for different reasons, those that must be halved together are told as one step.
 
     Parameters
     ----------
@@ -69,18 +93,22 @@ def next_steps(kit: Kit) -> tuple[Step, ...]:
     """
     if not kit.shares:
         return ()
-    limit_hz = kit.limit.limit_hz
-    ending = min(kit.definitions, key=lambda one: one.limit.limit_hz)
-    if kit.top_hz < ending.read_low_hz or limit_hz >= _end_of(kit, ending):
+    ending = _ending(kit)
+    if kit.top_hz < ending.read_low_hz or ending.limit.limit_hz >= _end_of(kit, ending):
         return (_at_the_end(kit),)
     steps = []
-    for kind in _kinds_at(kit, ending, limit_hz):
+    for kind in _kinds_at(kit, ending, ending.limit.limit_hz):
         reached = min(_limits(kit, [kind]))
         if _gains(kit, reached):
             steps.append(Step(kind, _action(kind, _behind(kit, reached)), reached))
     if not steps:
         return _together(kit)
     return tuple(sorted(steps, key=lambda one: -one.limit_hz)[:MOST])
+
+
+def _ending(kit: Kit) -> Definition:
+    """Return the standard with which the kit ends; in a file changed by hand the kit's own limit may be another."""
+    return min(kit.definitions, key=lambda one: one.limit.limit_hz)
 
 
 def _end_of(kit: Kit, definition: Definition) -> float:
@@ -90,7 +118,8 @@ def _end_of(kit: Kit, definition: Definition) -> float:
 
 def _gains(kit: Kit, reached: float) -> bool:
     """Return whether a limit is enough above the present one."""
-    return reached > kit.limit.limit_hz and reached >= (1.0 + SMALLEST_GAIN) * kit.limit.limit_hz
+    now = _ending(kit).limit.limit_hz
+    return reached > now and reached >= (1.0 + SMALLEST_GAIN) * now
 
 
 def _limits(kit: Kit, kinds: Sequence[str]) -> list[float]:
@@ -101,11 +130,6 @@ def _limits(kit: Kit, kinds: Sequence[str]) -> list[float]:
     ((_, each),) = limits(changed, [kit.within])
     reached = dict(zip((one.name for one in moving), each, strict=True))
     return [reached.get(one.name, one.limit).limit_hz for one in kit.definitions]
-
-
-def kind_of(source: str) -> str:
-    """Return the kind of a source: sources whose names begin alike, up to a bracket, are of one kind."""
-    return source.partition(" (")[0]
 
 
 def _kinds_at(kit: Kit, definition: Definition, at_hz: float) -> list[str]:
@@ -161,7 +185,7 @@ def _together(kit: Kit) -> tuple[Step, ...]:
 
 def _at_the_end(kit: Kit) -> Step:
     """Return the step of a kit whose bound keeps within the tolerance as far as anything is known."""
-    limit_hz = kit.limit.limit_hz
+    limit_hz = _ending(kit).limit.limit_hz
     if limit_hz >= kit.top_hz or limit_hz <= 0.0:
         return Step(
             NEXT_MODE,
@@ -174,8 +198,8 @@ def _at_the_end(kit: Kit) -> Step:
     ending = _quoted([one for one in kit.definitions if one.read_top_hz <= limit_hz])
     return Step(
         END_OF_READINGS,
-        f"the limit is where the readings of {ending} end: read on up to {reach / 1e9:.3g} GHz; the estimate is the "
-        "most that this can give, where the models go on to hold",
+        f"the limit is where the readings of {ending} end: read on up to {reach / 1e9:.3g} GHz; the estimate takes "
+        "the models to go on as they are, and to be no surer for what is read there",
         max(whole.limit_hz, limit_hz),
     )
 
@@ -183,34 +207,13 @@ def _at_the_end(kit: Kit) -> Step:
 def _action(kind: str, behind: Sequence[Definition]) -> str:
     """Say what halves a kind of source at the standards that hold the kit back."""
     names = _quoted(behind)
-    if kind in _EVIDENCE:
-        role, todo = _EVIDENCE[kind]
+    if kind in EVIDENCE:
+        role, todo = EVIDENCE[kind]
         values = _values_of(behind, role)
         return f"{todo}: {values}" if values else todo
-    if kind in _ACTIONS:
-        return _ACTIONS[kind].format(names=names)
+    if kind in ACTIONS:
+        return ACTIONS[kind].format(names=names)
     return f"halve what '{kind}' puts into the bound of {names}"
-
-
-_ACTIONS: Mapping[str, str] = {
-    MISFIT: "build {names} so that the model is followed twice as closely: fewer steps, shorter leads or adapters, no "
-    "resonance",
-    "analyser residuals": "correct the analyser with a kit whose residuals are half as large (6 dB), or have those "
-    "that are stated confirmed at half their size",
-    "connections": "make four times as many connections of {names}",
-    "noise": "average each reading four times as long",
-    "reference kit": "take references that are known twice as well",
-    "reference misfit": "take references that follow their models twice as closely",
-    "reference connections": "make four times as many connections of each reference",
-    "reference noise": "average each reading of the references four times as long",
-    "drift": "read the references again after half the time, or take four times as many sets of them",
-    "adapter": "determine the adapter twice as well, or take a shorter one or none",
-    "model errors": "take parts that follow their models twice as closely (fewer steps, shorter leads), or more parts",
-}
-_EVIDENCE: Mapping[str, tuple[str, str]] = {
-    "given values": ("given", "measure again, twice as well, what was given"),
-    "assumed values": ("assumed", "find out what is only assumed, to half of its uncertainty"),
-}
 
 
 def _values_of(behind: Sequence[Definition], role: str) -> str:

@@ -12,6 +12,7 @@ import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.errors import RequestError
+from stdfit.data.exported import FIRST_LINE
 from stdfit.validity.device.joint import joint_covariance, own_covariance
 from stdfit.validity.entry.error import rounded_up as round_up
 from stdfit.validity.kit import Definition, Kit, curve, misfit_at
@@ -19,8 +20,6 @@ from stdfit.writing.plain_names import as_ascii, file_names
 
 POINTS = 201
 """Points of the grid where none are asked for."""
-
-FIRST_LINE = "! Written by stdfit export: one standard of a calibration kit"
 
 STANDARDS = "standards.csv"
 STANDARD_COLUMNS = (

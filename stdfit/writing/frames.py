@@ -4,11 +4,11 @@ import numpy as np
 import pandas as pd
 
 from stdfit.uncertainty.budget import radius
+from stdfit.validity.evidence.sharing import MISFIT
 from stdfit.validity.kit import Definition, Kit, curve, misfit_at, model
 from stdfit.validity.limits import shares_at
 from stdfit.writing.numbers import label_of
 
-MISFIT = "misfit"
 BOUND = "bound"
 
 

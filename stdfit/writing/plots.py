@@ -4,8 +4,10 @@ Each function draws on the axes that it is given and returns them; nothing is sh
 ticks and frames are turned off: the drawings bring grid and numbers along. They are best on axes about 4 by 2 inches.
 """
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 
+from matplotlib import rc_context
 from matplotlib.artist import Artist
 from matplotlib.axes import Axes
 
@@ -40,7 +42,8 @@ def plot_bound(axes: Axes, kit: Kit, standard: str) -> Axes:
     # Colours are those of the kit's other pictures.
     each = [standard_evidence(kit, definition) for definition in kit.definitions]
     (one,) = [found for definition, found in zip(kit.definitions, each, strict=True) if definition is wanted]
-    return _with_key(axes, *draw_bound(_bare(axes), one, colours_of(each)))
+    with _plain_text():
+        return _with_key(axes, *draw_bound(_bare(axes), one, colours_of(each)))
 
 
 def plot_deviation(pair: Sequence[Axes], kit: Kit, standard: str) -> Sequence[Axes]:
@@ -60,11 +63,9 @@ def plot_deviation(pair: Sequence[Axes], kit: Kit, standard: str) -> Sequence[Ax
     """
     one = _evidence(kit, standard)
     above, below = (_bare(axes) for axes in _so_many(pair, 2))
-    _with_key(below, *(draw_absorbing if one.kind == "load" else draw_reflecting)(above, below, one))
-    for line in (*above.lines, *below.lines):
-        # Points are strokes of no length, which pixels lose where lines are simplified or set on whole pixels.
-        line.get_path().should_simplify = False
-        line.set_snap(False)
+    draw = draw_absorbing if one.kind == "load" else draw_reflecting
+    with _plain_text():
+        _with_key(below, *draw(above, below, one))
     return pair
 
 
@@ -86,7 +87,8 @@ def plot_element(panels: Sequence[Axes] | Axes, kit: Kit, standard: str) -> Sequ
     one = _evidence(kit, standard)
     given = [panels] if isinstance(panels, Axes) else panels
     each = [_bare(axes) for axes in _so_many(given, len(one.element.symbols))]
-    _with_key(each[-1], *draw_element(each, one))
+    with _plain_text():
+        _with_key(each[-1], *draw_element(each, one))
     return panels
 
 
@@ -104,7 +106,8 @@ def plot_devices(axes: Axes, kit: Kit) -> Axes:
         The kit holds no three standards with a common band.
     """
     one = _whole(kit)
-    draw_devices(_bare(axes), one)
+    with _plain_text():
+        draw_devices(_bare(axes), one)
     return axes
 
 
@@ -123,7 +126,8 @@ def plot_smith(axes: Axes, kit: Kit) -> Axes:
         The kit holds no three standards with a common band.
     """
     one = _whole(kit)
-    return _with_key(axes, *draw_smith(_bare(axes), one))
+    with _plain_text():
+        return _with_key(axes, *draw_smith(_bare(axes), one))
 
 
 def _evidence(kit: Kit, standard: str) -> StandardEvidence:
@@ -144,6 +148,13 @@ def _so_many(given: Sequence[Axes], count: int) -> list[Axes]:
     if len(given) != count:
         raise RequestError(f"{len(given)} axes for {count} panels", f"make {count} with subplots({count})")
     return list(given)
+
+
+@contextmanager
+def _plain_text() -> Iterator[None]:
+    """Make texts that are no formulas, whatever the user's settings are: names may hold dollar signs or backslashes."""
+    with rc_context({"text.parse_math": False, "text.usetex": False}):
+        yield
 
 
 def _bare(axes: Axes) -> Axes:

@@ -92,6 +92,7 @@ def test_sound_input_without_a_fit_ends_with_1(monkeypatch, capsys, tmp_path):
 
     monkeypatch.setattr("stdfit.pipeline.fit_bench", fails)
     monkeypatch.setattr("stdfit.data.bench.read_bench", lambda path: None)
+    monkeypatch.setattr("stdfit.cli.bench_commands.refuse_inputs", lambda *_: None)
     assert main(["fit", str(tmp_path), "-o", str(tmp_path / "kit.toml")]) == 1
     assert capsys.readouterr() == ("", "stdfit: the fit did not settle\nlook at the readings\n")
 

@@ -86,6 +86,17 @@ def test_values_of_options(arguments, name, capsys, tmp_path, monkeypatch):
     wrong([one.replace("NAME", name) for one in arguments], capsys)
 
 
+@pytest.mark.parametrize("target", [".", "", "..", "/", "./", "\0", "x" * 300, "a/" * 3000])
+@pytest.mark.parametrize("command", ["fit", "adapter", "report", "history"])
+def test_places_where_no_file_can_go(command, target, readings, capsys, tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    assert main(["new", "in"]) == 0
+    capsys.readouterr()
+    where = {"report": str(SMALL), "history": "."}.get(command, "in")
+    wrong([command, where, "--plot" if command == "history" else "-o", target], capsys)
+    assert [path.name for path in tmp_path.iterdir()] == ["in"]
+
+
 @pytest.fixture
 def readings(tmp_path):
     folder = tmp_path / "in"

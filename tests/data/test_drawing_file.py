@@ -77,6 +77,14 @@ REFUSED = [
     (changed("open", "section", 0, "length_mm", "6"), "part[lid].section[1].length_mm", "where a number"),
     (changed("open", "section", 0, "length_mm", -1.0), "part[lid].section[1].length_mm", "-1 mm cannot be"),
     (changed("open", "section", 0, "length_mm", 6000), "part[lid].section[1].length_mm", "cannot be"),
+    (
+        changed("open", "section", 0, "length_mm", {"value": 6.0, "u": 1e8}),
+        "part[lid].section[1].length_mm",
+        "too large to be meant",
+    ),
+    # In metres, and a bore of 3.5 mm in inches.
+    (changed("open", "section", 0, "outer_mm", 0.0035), "part[lid].section[1].outer_mm", "too narrow"),
+    (changed("open", "section", 0, "outer_mm", 0.1378), "part[lid].section[1].outer_mm", "too narrow"),
     (changed("open", "section", 0, "inner_mm", None), "part[lid].section[1].inner_mm", "missing"),
     (changed("open", "section", 0, "outer_mm", 1.6), "part[lid].section[1].outer_mm", "is 1.05 times"),
     (changed("open", "section", 0, "outer_mm", 35.0), "part[lid].section[1].outer_mm", "times inner_mm"),
@@ -99,6 +107,11 @@ REFUSED = [
         changed("open", "section", 0, "dielectric", "tfe"),
         "part[lid].section[1].dielectric",
         "not in the table",
+    ),
+    (
+        changed("open", "section", 0, "dielectric", {"value": 2.0, "tolerance": 1.0}),
+        "part[lid].section[1].dielectric",
+        "not known to 20 %",
     ),
     (changed("open", "section", 0, "dielectric", 0.9), "part[lid].section[1].dielectric", "not usual"),
     (changed("open", "section", 0, {}), "part[lid].section[1].length_mm", "says nothing"),
@@ -150,6 +163,43 @@ def test_a_flush_short_has_no_length():
     part = changed("short", "section", 0, "length_mm", {"value": 0.0, "tolerance": 0.02})
     (section,) = parsed(part).parts[0].sections
     assert (section.length_m.value, section.length_m.u > 0.0) == (0.0, True)
+
+
+def with_pin(pin_mm, *dielectrics, **end):
+    """Return an open of a section 6 mm long for each dielectric, its pin not flush."""
+    part = changed("open", "end", {"form": "shielded", "pin_mm": pin_mm, **end})
+    part["section"] = [{**SECTION, "dielectric": one} for one in dielectrics]
+    return part
+
+
+@pytest.mark.parametrize(
+    ("part", "what", "mend"),
+    [
+        (with_pin(-6.5, "air", "air"), "before the last section begins", "only as far as the pin reaches"),
+        (with_pin(0.5, "ptfe"), "where the dielectric changes", "what stands out as a section"),
+        (with_pin(-0.5, "ptfe"), "where the dielectric changes", "at the pin's face"),
+        (with_pin(0.5, "air", beyond="ptfe"), "where the dielectric changes", "what stands out as a section"),
+    ],
+)
+def test_a_pin_that_ends_in_another_line_is_refused(part, what, mend):
+    """Its length would be counted with the filling, or with the diameters, of a line where it is not."""
+    with pytest.raises(BenchError) as refused:
+        parsed(part)
+    assert refused.value.key == "part[lid].end.pin_mm"
+    assert what in refused.value.what and mend in refused.value.mend
+
+
+@pytest.mark.parametrize(
+    "part",
+    [
+        with_pin({"value": 0.0, "tolerance": 0.05}, "ptfe"),
+        with_pin(-0.5, "vacuum"),
+        with_pin(0.5, "ptfe", beyond="ptfe"),
+        with_pin(-5.5, "ptfe", "air"),
+    ],
+)
+def test_a_pin_that_ends_in_the_line_of_the_last_section_is_taken(part):
+    assert parsed(part).parts[0].end.form == "shielded"
 
 
 def test_two_parts_of_one_name_are_refused():

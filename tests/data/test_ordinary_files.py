@@ -8,6 +8,7 @@ import pytest
 
 from stdfit.base.errors import BenchError, ReadingError
 from stdfit.data import bench_files
+from stdfit.data.bench import parse_bench
 from stdfit.data.bench_files import matching_files
 from stdfit.data.ordinary import beginning, ordinary_bytes
 from stdfit.data.plain_text import LONGEST_LINE, MOST_LINES
@@ -149,3 +150,14 @@ def test_a_reading_that_is_a_ring_of_links_in_a_repeatability_file(tmp_path):
     described = read_repeat_file(tmp_path)
     with pytest.raises(ReadingError, match="a link that leads back to itself"):
         read_reading(described.entries[0].connections[0][0])
+
+
+@pytest.mark.parametrize(
+    "number, how", [("1e308", "large"), ("-1e16", "large"), ("1e-320", "small"), ("-1e-31", "small")]
+)
+def test_numbers_that_leave_arithmetic_no_room(number, how):
+    text = (VALID / "bench" / "corrected.toml").read_text(encoding="utf-8")
+    path = VALID / "bench" / "x.toml"
+    assert parse_bench(text, path).within == 0.02
+    with pytest.raises(BenchError, match=f"is too {how} to be meant"):
+        parse_bench(text.replace("within = 0.02", f"within = {number}"), path)

@@ -98,6 +98,20 @@ def test_a_flush_open_has_the_usual_capacitance():
         drawn("open", section(9.0, 1.27, 4.10), end=EndEntry("flush", flange_m=Measure(3e-3)))
 
 
+def test_a_pin_out_of_a_flat_face_stands_in_air():
+    """1 mm of air is 3.3367 ps, and of PTFE 4.776 ps."""
+    line = section(9.0, 1.27, 4.10, Measure(2.05))
+    flush, out, back = (
+        drawn("open", line, end=EndEntry("flush", pin_m=Measure(1e-3 * mm))) for mm in (0.0, 1.0, -1.0)
+    )
+    delay = values(flush)["offset_delay_ps"]
+    assert values(out)["offset_delay_ps"] - delay == pytest.approx(3.3367, abs=1e-3)
+    assert values(back)["offset_delay_ps"] - delay == pytest.approx(-4.776, abs=1e-3)
+    unsure = drawn("open", line, end=EndEntry("flush", pin_m=Measure(0.0, 1e-3))).get("c0")
+    assert unsure.parts["pin not flush"] == pytest.approx(out.get("c0").parts["pin not flush"])
+    assert "pin not flush" not in flush.get("c0").parts
+
+
 def test_chips_in_parallel():
     end = EndEntry("chip", size="0603", count=2, resistance_ohm=Measure(100.0, 0.6))
     found = drawn("load", end=end)

@@ -10,13 +10,13 @@ from hypothesis import strategies as st
 
 from stdfit.circuits.residual_map import separation
 from stdfit.circuits.standard import IDEAL
-from stdfit.uncertainty.budget import Share
+from stdfit.uncertainty.budget import Share, kind_of
 from stdfit.validity.device.bound import device_bound, device_map, three_of
 from stdfit.validity.evidence.element import element_of
-from stdfit.validity.evidence.sharing import MISFIT, STATED, kind_of, shared_out
+from stdfit.validity.evidence.sharing import MISFIT, STATED, shared_out
 from stdfit.validity.evidence.standard import standard_evidence
 from stdfit.validity.evidence.whole import MAGNITUDES, kit_evidence
-from stdfit.validity.kit import curve, total_covariance
+from stdfit.validity.kit import curve, model, total_covariance
 from stdfit.validity.limits import shares_at
 
 
@@ -40,8 +40,6 @@ def test_the_parts_add_up_to_the_bound_everywhere(modest_kit, evidence):
 
 def test_the_parts_go_as_the_variances_that_reasons_are_told_by(modest_kit, evidence):
     """At one frequency they are those of `shares_at`, which the reason of a limit names."""
-    from stdfit.validity.kit import model
-
     one, place = evidence[0], 120
     _, design = model(modest_kit, modest_kit.definitions[0], one.frequency_hz[place : place + 1])
     parts = shares_at(design[0], modest_kit.shares)
@@ -128,7 +126,6 @@ def test_readings_stand_beside_the_model(modest_kit, evidence):
         kept = one.readings
         gamma, _ = curve(modest_kit, modest_kit.definition(one.name), kept.frequency_hz)
         assert np.array_equal(kept.residual, kept.gamma - gamma)
-        assert kept.count == 3
         connections = kept.connections
         assert connections.deviations.shape == (3, connections.frequency_hz.size)
         assert np.abs(connections.deviations.sum(axis=0)).max() < 1e-6

@@ -101,6 +101,12 @@ def test_the_end_of_the_readings_is_said(by_hand):
     assert "read on up to 9 GHz" in step.action and "'open', 'short' and 'load'" in step.action
 
 
+def test_a_limit_that_was_lowered_by_hand_does_not_count(by_hand):
+    """All standards end with their readings, and the kit below them: the steps are those of the standards."""
+    kit = with_limits(by_hand({"noise": {"open.offset_delay_ps": PS_FOR_2_GHZ / 4.0}}))
+    assert next_steps(replace(kit, limit=replace(kit.limit, limit_hz=1e9))) == next_steps(kit)
+
+
 def test_the_top_of_the_connector_is_said(by_hand):
     source = {"noise": {"open.offset_delay_ps": PS_FOR_2_GHZ / 4.0}}
     for top_hz, limit_hz in ((4e9, 4e9), (10e6, 0.0)):

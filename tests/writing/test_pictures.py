@@ -151,6 +151,7 @@ def test_words_tell_figures(kit, pictures):
     bound = next(one for one in pictures if one.name == "standard-1-bound")
     assert f"up to {kit.definitions[0].limit.limit_hz / 1e9:.2f} GHz" in bound.caption
     assert "analyser residuals make" in bound.caption
+    assert "analyser residuals make the largest part of it there" in bound.alt
     evidence = standard_evidence(kit, kit.definitions[0])
     assert largest_part(evidence)[0] == "analyser residuals"
     assert f"{evidence.bound[0]:.2g} at 50 MHz" in bound.alt
@@ -212,7 +213,10 @@ def test_a_limit_of_nothing_is_told(kit):
         definitions=tuple(replace(one, limit=Limit(0.02, 0.0, "none")) for one in kit.definitions),
     )
     pictures = kit_pictures(none)
-    assert "nowhere" in next(one for one in pictures if one.name == "standard-1-bound").caption
+    bound = next(one for one in pictures if one.name == "standard-1-bound")
+    for told in (bound.caption, bound.alt):
+        assert "is above the tolerance of 0.02 from the first reading on; " in told
+        assert "keeps within" not in told
     assert "nowhere" in next(one for one in pictures if one.name == "kit-chart").caption
 
 

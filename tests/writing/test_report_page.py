@@ -10,15 +10,17 @@ import numpy as np
 import pytest
 
 from stdfit.validity.entry.sheet import Wanted, entry_sheet, typed_kit
+from stdfit.validity.evidence.sharing import MISFIT
 from stdfit.validity.limit import Limit
 from stdfit.validity.limits import limits
-from stdfit.validity.next_steps import next_steps
+from stdfit.validity.next_steps import ACTIONS, EVIDENCE, next_steps
 from stdfit.writing.kit_file import kit_text
 from stdfit.writing.kit_reading import parse_kit, read_kit
 from stdfit.writing.numbers import frequency
 from stdfit.writing.pictures import DARK, PALETTE, kit_pictures
 from stdfit.writing.report.html import report_html
 from stdfit.writing.report.own import is_report
+from stdfit.writing.report.reasons import GLOSSES, why
 from stdfit.writing.summary import summary, verdict
 
 LOFT = Path(__file__).parents[2] / "kits" / "boathouse-loft-sma" / "kit.toml"
@@ -124,6 +126,24 @@ def test_the_answer_is_that_of_show(loft, page):
         assert f"{one.name} {frequency(one.limit.limit_hz)} {one.limit.reason}" in page.text
 
 
+def test_why_holds_with_a_comma_in_a_name(loft):
+    given = "open: given values (resistance of load, spare), 91 % of the variance"
+    told, gloss = why(replace(loft, limit=Limit(0.02, 1e9, given)))
+    assert told == (
+        "It ends with “open”: the largest part of its uncertainty there is given values (resistance of load, spare) "
+        "(91 % of the variance)."
+    )
+    assert gloss.startswith("Given values are")
+
+
+@pytest.mark.parametrize("kind", sorted({*ACTIONS, *EVIDENCE} - {MISFIT}))
+def test_every_kind_of_source_is_explained(loft, kind):
+    """Those that steps are known for; each has words of its own."""
+    _, gloss = why(replace(loft, limit=Limit(0.02, 1e9, f"open: {kind}, 91 % of the variance")))
+    assert gloss
+    assert [text for _, text in GLOSSES].count(gloss) == 1
+
+
 def test_values_are_those_of_show(loft, page):
     """Single values and sums with ± 95 %, and what is typed is the value before the ±."""
     text = summary(loft)
@@ -188,6 +208,13 @@ def test_steps_are_those_of_the_estimate(loft, page):
     rows = table_of(page, "What would push the limit")[1:]
     assert [row[1] for row in rows] == [frequency(one.limit_hz) for one in next_steps(loft)]
     assert len(rows) >= 1
+
+
+def test_where_no_step_helps_the_page_says_so(loft, plain, monkeypatch):
+    monkeypatch.setattr("stdfit.writing.report.contents.next_steps", lambda kit: ())
+    read = Reader(report_html(loft))
+    assert not any(caption.startswith("What would") for caption in read.tables)
+    assert "No kind of error moves this limit when it alone is halved" in read.text
 
 
 def test_files_stand_with_their_sums(loft, page):
@@ -269,7 +296,6 @@ def test_no_text_of_a_kit_becomes_markup(loft, page):
 
 
 def test_a_kit_that_is_good_for_nothing(loft, plain):
-    definitions = tuple(replace(one, limit=Limit(1e-5, 0.0, "noise")) for one in loft.definitions)
     ((whole, each),) = limits(loft, [1e-5])
     assert whole.limit_hz == 0.0
     definitions = tuple(replace(one, limit=own) for one, own in zip(loft.definitions, each, strict=True))

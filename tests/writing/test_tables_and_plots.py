@@ -5,6 +5,7 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
+from matplotlib import rc_context
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 
@@ -111,6 +112,31 @@ def test_elements_take_a_panel_for_each_part(modest):
         plot_element(figure.subplots(), modest, "load")
     with pytest.raises(RequestError, match="1 axes for 2 panels"):
         plot_deviation([figure.subplots()], modest, "open")
+
+
+@pytest.mark.parametrize("usetex", [False, True])
+def test_names_and_kinds_are_no_formulas(modest, usetex):
+    """A name with a dollar sign is drawn as it is, and formulas in the user's own texts stay formulas."""
+    names = [f"$\\frac{{$ {k}_" for k in range(3)]
+    kit = replace(
+        modest,
+        definitions=tuple(
+            replace(one, name=name) for one, name in zip(modest.definitions, names, strict=True)
+        ),
+        shares=tuple(replace(one, name=f"$\\frac{{$ {k}") for k, one in enumerate(modest.shares)),
+    )
+    figure = Figure(figsize=(5, 20))
+    bound, above, below, element, devices, smith = figure.subplots(6)
+    own = bound.set_title("$x^2$")
+    with rc_context({"text.usetex": usetex}):
+        plot_bound(bound, kit, names[0])
+        plot_deviation([above, below], kit, names[1])
+        plot_element(element, kit, names[0])
+        plot_devices(devices, kit)
+        plot_smith(smith, kit)
+    assert pixels_of(figure).std() > 1.0
+    assert names[0] in [text.get_text() for text in smith.get_legend().get_texts()]
+    assert own.get_parse_math()
 
 
 def test_what_cannot_be_plotted_is_said(modest):

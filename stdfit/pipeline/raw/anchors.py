@@ -9,7 +9,7 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray, FloatArray, frozen_float
 from stdfit.base.errors import BenchError, ReadingError
 from stdfit.base.records import Sweep
-from stdfit.circuits.connectors import Family, family_of
+from stdfit.circuits.connectors import Family
 from stdfit.circuits.error_box import corrected
 from stdfit.data.bench import Bench
 from stdfit.data.verify import verify_standards
@@ -18,6 +18,7 @@ from stdfit.fitting.problem import Problem
 from stdfit.fitting.roles import Wish, build_problem, starting_values
 from stdfit.fitting.screen import screen_points
 from stdfit.fitting.unknown_box import apart, fitted_box
+from stdfit.pipeline.ceiling import family_on
 from stdfit.pipeline.prepare import single_points
 from stdfit.pipeline.raw.known_standards import known_cautions
 from stdfit.pipeline.raw.references import Reference, looked_up
@@ -121,7 +122,7 @@ def gather(
         tuple(tuple(sweep.name for sweep in sweeps[one.name]) for one in bench.standards),
         tuple(_wish(bench, k, known) for k in range(len(bench.standards))),
         known,
-        family_of(bench.connector),
+        family_on(bench),
         tuple(warnings),
     )
 

@@ -10,7 +10,6 @@ import numpy.typing as npt
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.errors import ReadingError, RequestError
 from stdfit.base.records import Sweep
-from stdfit.circuits.connectors import family_of
 from stdfit.data.bench import Bench
 from stdfit.data.verify import verify_standards
 from stdfit.fitting.observed import Observed
@@ -20,6 +19,7 @@ from stdfit.pipeline.adapters.acting import adapter_sources_on
 from stdfit.pipeline.adapters.brought import in_own_planes
 from stdfit.pipeline.adapters.known import adapter_ancestors, adapter_cautions, shared_cautions
 from stdfit.pipeline.adapters.planes import planes_of
+from stdfit.pipeline.ceiling import family_on
 from stdfit.pipeline.prepare import CORRECTED_HERE, Prepared, repeatability, scatter_cautions, single_points
 from stdfit.pipeline.raw.agreement import disagreements
 from stdfit.pipeline.raw.correction import Readings, by_set, observe, solve_sets, unsureness
@@ -67,7 +67,7 @@ def prepare_referenced(
     references, planes = references_of(bench, origins), planes_of(bench)
     verify_standards({one.name: (one.kind, sweeps[one.name]) for one in bench.standards}, state="raw")
     inside, warnings = _common_band(bench, references, sweeps)
-    family, zr = family_of(bench.connector), bench.reference_ohm
+    family, zr = family_on(bench), bench.reference_ohm
     f = sweeps[bench.standards[0].name][0].frequency_hz[inside]
     raw = {
         entry.name: np.array([sweep.gamma[inside] for sweep in sweeps[entry.name]])

@@ -2,7 +2,7 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from math import exp, sqrt
+from math import exp, hypot, sqrt
 
 import numpy as np
 
@@ -110,7 +110,9 @@ def _open(part: PartEntry, end: EndEntry, to_hz: float) -> EndValues:
         # What runs along a flange comes back from its rim, as G/ω at most (a judgement, no source).
         absolute["rim of the flange"] = 1e15 * float((conductance / (2.0 * np.pi * f)).max())
         if end.pin_m is not None:
-            relative["pin not flush"] = min(abs(end.pin_m.value) / (0.5 * (outer - inner)), 1.0)
+            relative["pin not flush"] = min(
+                hypot(end.pin_m.value, end.pin_m.u) / (0.5 * (outer - inner)), 1.0
+            )
         drop = 2.0 * 50.0 * float(conductance.max())
         if drop > 0.001:
             notes.append(

@@ -9,6 +9,7 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray
 from stdfit.base.errors import BenchError
 from stdfit.circuits.coaxial.dimensions import delay_s, line_impedance_ohm, offset_loss_ohm_per_s
+from stdfit.circuits.coaxial.sides import AIR_ER
 from stdfit.data.drawing_records import PartEntry, SectionEntry
 from stdfit.validity.drawing.evidence import DrawnValue
 from stdfit.validity.drawing.fields import static_step
@@ -120,12 +121,14 @@ def _impedance(section: SectionEntry) -> float:
 def _delays(part: PartEntry) -> list[float]:
     """Return the delay of each section, the pin's end in the last one's."""
     delays = []
-    for place, section in enumerate(part.sections):
+    for section in part.sections:
         assert section.length_m is not None  # the caller looked
-        length = section.length_m.value
-        if place == len(part.sections) - 1 and part.end is not None and part.end.pin_m is not None:
-            length += part.end.pin_m.value
-        delays.append(delay_s(length, section.permittivity.value))
+        delays.append(delay_s(section.length_m.value, section.permittivity.value))
+    if part.end is not None and part.end.pin_m is not None:
+        pin = part.end.pin_m.value
+        # What stands out of a face is in air; in a pipe the reader of drawings has seen to it that it is all one.
+        out = part.end.form == "flush" and pin > 0.0
+        delays[-1] += delay_s(pin, AIR_ER if out else part.sections[-1].permittivity.value)
     return delays
 
 

@@ -50,8 +50,6 @@ class KeptReadings:
     frequency_hz : array of shape (m,)
     gamma, residual : complex arrays of shape (m,)
         The mean reading, and what is left of it without the model.
-    count : int
-        Connections that went into the mean.
     connections : Connections or None
         None where there was one, or where they were not kept.
     """
@@ -59,7 +57,6 @@ class KeptReadings:
     frequency_hz: FloatArray
     gamma: ComplexArray
     residual: ComplexArray
-    count: int
     connections: Connections | None
 
     def __post_init__(self) -> None:
@@ -93,7 +90,6 @@ def kept_readings(kit: Kit, definition: Definition) -> KeptReadings | None:
         frequency_hz,
         gamma,
         gamma - fitted,
-        kept.connections,
         _connections(kit, kit.session, definition, kept),
     )
 

@@ -5,24 +5,13 @@ from collections.abc import Sequence
 import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
-from stdfit.uncertainty.budget import Share, plane
+from stdfit.uncertainty.budget import Share, kind_of, parts_of_variance
 
 MISFIT = "misfit"
 """The part of the bound that is no source of uncertainty: the model's own error."""
 
 STATED = "stated bound"
 """What stands for all parts where a kit states bounds and no sources, as an entry sheet that was read back does."""
-
-
-def kind_of(name: str) -> str:
-    """Return the kind of a source: its name before the bracket.
-
-    Examples
-    --------
-    >>> kind_of("analyser residuals (source match)"), kind_of("noise")
-    ('analyser residuals', 'noise')
-    """
-    return name.partition(" (")[0]
 
 
 def shared_out(
@@ -50,15 +39,9 @@ def shared_out(
     if not shares:
         return (STATED,), misfit[None].copy()
     kinds = tuple(dict.fromkeys(kind_of(share.name) for share in shares))
-    variances = [plane(design, share.covariances)[..., :2].sum(axis=-1) for share in shares]
-    lengths = max(one.shape[0] for one in variances)
-    stack = np.maximum([np.broadcast_to(one, (lengths, u95.size)) for one in variances], 0.0)
-    worst = stack.sum(axis=0).argmax(axis=0)
-    chosen = stack[:, worst, np.arange(u95.size)]
-    total = chosen.sum(axis=0)
-    part = np.divide(chosen, total, out=np.zeros_like(chosen), where=total > 0.0) * u95
+    each = parts_of_variance(design, shares) * u95
     gathered = [
-        sum(own for share, own in zip(shares, part, strict=True) if kind_of(share.name) == kind)
+        sum(part for share, part in zip(shares, each, strict=True) if kind_of(share.name) == kind)
         for kind in kinds
     ]
     return (*kinds, MISFIT), np.array([*gathered, misfit])

@@ -30,22 +30,22 @@ def bound_words(one: StandardEvidence) -> Words:
     first, last = one.frequency_hz[0], one.frequency_hz[-1]
     low, top = figure(float(one.bound[0])), figure(float(one.bound[-1]))
     kind, part = largest_part(one)
-    until = "nowhere" if one.limit_hz <= 0.0 else f"up to {frequency(one.limit_hz)}"
-    if one.limit_hz >= EDGE * last:
-        until += ", where the readings end"
+    reach = "is above" if one.limit_hz <= 0.0 else "keeps within"
+    until = "from the first reading on" if one.limit_hz <= 0.0 else f"up to {frequency(one.limit_hz)}"
+    kept = f"{reach} the tolerance of {one.within:g} {until}"
+    ends = ", where the readings end" if one.limit_hz >= EDGE * last else ""
     much = "nearly all" if part > NEARLY_ALL else f"{100.0 * part:.0f} %"
     most = "" if kind == STATED else f"; there {kind} {_make(kind)} {much} of it"
     end = highest(one)
     cut = f" The axis ends at {figure(end)}." if end < float(one.bound.max()) else ""
     caption = (
         "How far the reflection that you type in may be from the true one, and what makes it. "
-        f"It keeps within the tolerance of {one.within:g} {until}{most}.{cut}"
+        f"The bound {kept}{ends}{most}.{cut}"
     )
-    reach = "nowhere within it" if one.limit_hz <= 0.0 else f"kept up to {frequency(one.limit_hz)}"
     alt = (
         f"Bound on the error of {one.name} over frequency: {low} at {frequency(first)}, {_at_limit(one)}"
-        f"{top} at {frequency(last)}; the tolerance of {one.within:g} is {reach}"
-        + ("." if kind == STATED else f"; {kind} {_make(kind)} most of the bound there.")
+        f"{top} at {frequency(last)}; it {kept}"
+        + ("." if kind == STATED else f"; {kind} {_make(kind)} the largest part of it there.")
     )
     return f"{one.name}: bound and what makes it", caption, alt
 
@@ -103,12 +103,13 @@ def connection_words(one: StandardEvidence, connections: Connections) -> Words:
     usual = figure(float(connections.expected[near]))
     key = f"connection {which} lies farthest from the mean, by {figure(away)} at {frequency(where)}"
     caption = (
-        f"Each of {count} connections against their mean: {key}. The dotted line is where 95 % should stay, {usual} "
-        "there: lumped parts of a connection, as all standards of the bench show them, and noise."
+        f"Each of the {count} connections that went into the mean, in their order, against it: {key}. 95 % should stay "
+        f"below the dotted line, {usual} there: lumped parts of a connection, as all standards of the bench show them, "
+        "and noise."
     )
     alt = (
         f"Distance of {count} connections of {one.name} from their mean over frequency: {key}; "
-        f"{usual} are to be expected."
+        f"95 % should stay below {usual} there."
     )
     return f"{one.name}: connections one by one", caption, alt
 
@@ -132,7 +133,7 @@ def element_words(one: StandardEvidence) -> Words:
         rest = figure(float(element.u95_of_rest[-1].mean()))
         caption += (
             " Most of the band is the trade-off with the delay, and does not show in Γ: "
-            f"with the delay known it would be ± {rest} {element.units[-1]} on average."
+            f"with the delay known {element.symbols[-1]} would be ± {rest} {element.units[-1]} on average."
         )
     return (
         f"{one.name}: the element behind its line",

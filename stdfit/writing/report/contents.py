@@ -17,8 +17,18 @@ from stdfit.writing.summary import TOLD_FROM, verdict
 NO_READINGS = "This kit file keeps no readings, so that the pictures show definitions and bounds alone."
 
 STEPS_NOTE = (
-    "Estimates without a new fit: one kind of error is halved and all else stays as it is. “stdfit plan” looks at the "
-    "bench file and does the fits."
+    "Rough estimates without a new fit: one kind of error is halved and all else stays as it is. Most are low, since a "
+    "new fit finds less misfit and reaches further. “stdfit plan” looks at the bench file and does the fits."
+)
+
+NO_STEPS = (
+    "No kind of error moves this limit when it alone is halved, nor do three of them together. “stdfit plan” looks at "
+    "the bench file and does the fits."
+)
+
+NO_SOURCES = (
+    "Nothing can be estimated from this kit file alone: it states bounds without their causes. “stdfit plan” looks at "
+    "the bench file."
 )
 
 TOP_WARNINGS = 4
@@ -39,6 +49,7 @@ def page_of(kit: Kit, figures: Sequence[tuple[str | None, Figure]]) -> Page:
         if name is not None:
             of_standards.setdefault(name, []).append(one)
     devices, ideal = device_tables(kit)
+    steps = _steps(kit)
     answer = _answer(kit)
     short = f"good to {answer.figure}" if answer.figure else "cannot be trusted"
     return Page(
@@ -61,7 +72,8 @@ def page_of(kit: Kit, figures: Sequence[tuple[str | None, Figure]]) -> Page:
         device_note=sentence(COMMENT),
         devices=devices,
         ideal=sentence(ideal) if ideal else "",
-        steps=_steps(kit),
+        steps=steps,
+        no_steps="" if steps else NO_STEPS if kit.shares else NO_SOURCES,
         figures=tuple(one for name, one in figures if name is None),
         readings_note="" if kit.session is not None else NO_READINGS,
         standards=standard_parts(kit, of_standards),

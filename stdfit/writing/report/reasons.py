@@ -1,5 +1,7 @@
 """Why a limit is where it is, in a sentence for somebody who has not read the method."""
 
+import re
+
 from stdfit.validity.kit import Kit
 
 GLOSSES = (
@@ -10,6 +12,10 @@ GLOSSES = (
     ),
     ("reference kit", "Its references carry their own uncertainty into this kit."),
     ("reference misfit", "Its references do not follow their own definitions exactly."),
+    (
+        "reference noise",
+        "Reference noise is what differs from one point to the next in readings of the known standards.",
+    ),
     ("connections", "Connections are what changes when the same part is connected again."),
     ("noise", "Noise is what differs from one point of a reading to the next."),
     (
@@ -17,6 +23,14 @@ GLOSSES = (
         "Given values are the lengths, resistances and so on that were stated with the readings.",
     ),
     ("assumed values", "Assumed values stand in where neither readings nor stated values tell enough."),
+    (
+        "adapter",
+        "An adapter between the plane of the readings and the standard brings its own uncertainty along.",
+    ),
+    (
+        "model errors",
+        "Model errors are what the parts differ from their models by, as far as their readings show it.",
+    ),
     ("drift", "Drift is what changed in the analyser between the sets of readings."),
     ("the readings leave the model", "The part does something there that its definition cannot describe."),
     ("the readings end", "Nothing was read beyond; a longer sweep would show more."),
@@ -40,7 +54,9 @@ def why(kit: Kit) -> tuple[str, str]:
     gloss = next((text for start, text in GLOSSES if reason.startswith(start)), "")
     begin = "It ends" if kit.limit.limit_hz > 0.0 else "It fails at its first readings"
     begin = f"{begin} with “{name}”: " if name else f"{begin}: "
-    if " of the variance" not in reason:
+    # The name of a standard in the source may hold a comma of its own.
+    found = re.match(r"(.*?), (\d+ % of the variance.*)", reason)
+    if found is None:
         return f"{begin}{reason}.", gloss
-    source, _, share = reason.partition(", ")
+    source, share = found.groups()
     return f"{begin}the largest part of its uncertainty there is {source} ({share}).", gloss

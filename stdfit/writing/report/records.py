@@ -149,6 +149,8 @@ class Page:
         What ideal standards would cost; empty likewise.
     steps : Table or None
         What would push the limit.
+    no_steps : str
+        Why nothing is said of that; empty where something is.
     figures : tuple of Figure
         Of the kit as a whole.
     readings_note : str
@@ -173,6 +175,7 @@ class Page:
     devices: tuple[Table, ...]
     ideal: str
     steps: Table | None
+    no_steps: str
     figures: tuple[Figure, ...]
     readings_note: str
     standards: tuple[StandardPart, ...]

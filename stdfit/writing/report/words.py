@@ -17,7 +17,7 @@ def unit(text: str) -> str:
     return _POWER_OF_TEN.sub(lambda found: "10" + found[1].translate(_POWERS), text)
 
 
-def counted(number: int, one: str, many: str = "") -> str:
+def counted(number: int, one: str) -> str:
     """Return a number with its noun.
 
     Examples
@@ -25,7 +25,7 @@ def counted(number: int, one: str, many: str = "") -> str:
     >>> counted(1, "connection"), counted(3, "connection")
     ('1 connection', '3 connections')
     """
-    return f"{number} {one if number == 1 else many or one + 's'}"
+    return f"{number} {one if number == 1 else one + 's'}"
 
 
 def sentence(text: str) -> str:
