@@ -53,12 +53,13 @@ def circular(freedom: FloatArray | float) -> FloatArray:
     """Return the 95 % radius of a circular complex value whose variance per component has ν degrees of freedom.
 
     √(2·F0.95(2, ν)) = √(ν·(0.05^(−2/ν) − 1)), from the closed form of the F distribution with 2 and ν
-    degrees of freedom; 2.448 for infinite ν.
+    degrees of freedom; 2.448 for infinite ν, and infinite for so few that the radius has no number.
     """
     nu = np.asarray(freedom, dtype=float)
     radius = np.full(nu.shape, CIRCULAR)
     few = np.isfinite(nu) & (nu < 1e6)
-    radius[few] = np.sqrt(nu[few] * np.expm1(-2.0 / nu[few] * np.log(0.05)))
+    with np.errstate(over="ignore", divide="ignore"):
+        radius[few] = np.sqrt(nu[few] * np.expm1(-2.0 / nu[few] * np.log(0.05)))
     return radius
 
 

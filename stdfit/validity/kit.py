@@ -9,6 +9,7 @@ from stdfit.base.arrays import ComplexArray, FloatArray, frozen_float
 from stdfit.base.errors import RequestError
 from stdfit.circuits.standard import reflection
 from stdfit.uncertainty.budget import Share, radius
+from stdfit.validity.analyser import Analyser
 from stdfit.validity.limit import Limit
 from stdfit.validity.session import Session
 from stdfit.validity.thru import Thru
@@ -209,6 +210,8 @@ class Kit:
         The user's words for the correction of the analyser: the same words, the same errors. Empty for none.
     session : Session or None
         The mean readings, for comparison with those of another day; None where they were not kept.
+    analyser : Analyser or None
+        What the analyser's own correction left; None where readings were raw, or where it was not kept.
     """
 
     name: str
@@ -231,6 +234,7 @@ class Kit:
     measured: str = ""
     calibration: str = ""
     session: Session | None = None
+    analyser: Analyser | None = None
 
     def __repr__(self) -> str:
         names = ", ".join(one.name for one in self.definitions)
@@ -256,17 +260,21 @@ def _said(limit: Limit) -> str:
     return f"within {limit.within:g} good to {limit.limit_hz / 1e9:.3g} GHz"
 
 
+LEAST_HZ = 1e-6
+"""Below, the impedance of a lossy line grows beyond what the numbers can take: Γ would lose its digits in silence."""
+
+
 def model(kit: Kit, definition: Definition, frequency_hz: FloatArray) -> tuple[ComplexArray, ComplexArray]:
     """Return Γ, shape (n,), and its derivatives by the quantities of the joint covariance, shape (n, p).
 
     Raises
     ------
     RequestError
-        A frequency is so close to zero, or the definition so far from sense, that numbers overflow.
+        A frequency is so close to zero, or the definition so far from sense, that numbers fail.
     """
     with np.errstate(all="ignore"):
         gamma, own = reflection(definition.kind, definition.values, frequency_hz, kit.reference_ohm)
-    faulty = ~(np.isfinite(gamma) & np.isfinite(own).all(axis=1))
+    faulty = ~(np.isfinite(gamma) & np.isfinite(own).all(axis=1)) | (frequency_hz < LEAST_HZ)
     if faulty.any():
         raise RequestError(
             f"the reflection of '{definition.name}' cannot be computed at {float(frequency_hz[faulty][0]):.4g} Hz",

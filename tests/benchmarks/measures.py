@@ -1,6 +1,5 @@
 """How time and memory are taken: ratios within one run, so that they hold on any machine."""
 
-import resource
 import subprocess
 import sys
 import time
@@ -30,15 +29,10 @@ def child(*words: str) -> tuple[float, float]:
     """
     code = (
         "import resource, subprocess, sys\n"
-        "subprocess.run([sys.executable, *sys.argv[1:]], check=True, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL)\n"
+        "subprocess.run([sys.executable, *sys.argv[1:]], check=True, capture_output=True)\n"
         "used = resource.getrusage(resource.RUSAGE_CHILDREN)\n"
         "print(used.ru_utime + used.ru_stime, used.ru_maxrss)"
     )
     told = subprocess.run([sys.executable, "-c", code, *words], check=True, capture_output=True, text=True)
     seconds, peak = told.stdout.split()
     return float(seconds), float(peak) * (1 if sys.platform == "darwin" else 1024)
-
-
-def peak_of_this() -> float:
-    """Return the peak memory of this process, in bytes."""
-    return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss * 1024.0

@@ -98,6 +98,20 @@ def whole(folder: Path) -> Iterator[Line]:
     yield "stdfit --help ÷ an empty Python", f"{helped / bare:.1f}", ""
 
 
+def kits(folder: Path) -> Iterator[Line]:
+    """Several benches in one command against one after the other."""
+    count = 2 * (os.cpu_count() or 1)
+    benches = [str(bench_in(folder / str(k), 401, 5, seed=k)) for k in range(count)]
+    one, together = fastest(
+        [
+            lambda: [command("-m", "stdfit.cli", "fit", bench)() for bench in benches],
+            command("-m", "stdfit.cli", "fit", *benches),
+        ],
+        3,
+    )
+    yield f"{count} benches one by one ÷ in one command, on {os.cpu_count()} cores", f"{one / together:.1f}", ""
+
+
 def growth(folder: Path) -> Iterator[Line]:
     """Growth of time and memory with points and with connections."""
     for what, sizes, shape in (
@@ -175,6 +189,7 @@ BENCHMARKS: dict[str, Callable[[Path], Iterator[Line]]] = {
     "reading": reading,
     "kernel": kernel,
     "whole": whole,
+    "kits": kits,
     "growth": growth,
     "size": size,
     "efficiency": efficiency,

@@ -103,3 +103,8 @@ def test_inverse_of_badly_scaled_matrices():
 
 def test_outer_of_a_stack():
     np.testing.assert_allclose(outer(np.stack([HALF, 2 * HALF])), np.stack([COVARIANCE, 4 * COVARIANCE]))
+
+
+def test_so_few_degrees_of_freedom_that_no_radius_is_a_number():
+    assert circular(1e-3) == np.inf
+    assert np.isfinite(circular(0.1))
