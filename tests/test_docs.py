@@ -8,6 +8,7 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
+from printed import alike, missing
 
 from stdfit import cli, kit_text, limits
 from stdfit.base.errors import BenchError
@@ -123,6 +124,49 @@ def test_commands_and_options_exist(page, capsys):
                 known = set(re.findall(r"(?<![\w-])--?[a-z][a-z-]*", help_of(capsys, *command)))
                 options = {word.partition("=")[0] for word in call if re.match(r"--?[a-z]", word)}
                 assert options <= known, where
+
+
+ELSEWHERE = ("check", "wear", "history", "repeat", "adapter", "fit spring/")
+"""What these examples are of takes too long to make, or is read in other tests."""
+
+
+def examples(text):
+    """Return (line, command, what it prints) of the console blocks, a line "$ stdfit …" each."""
+    for line, block in text:
+        for command, printed in re.findall(r"^\$ stdfit (.*)\n((?:(?!\$ ).*\n?)*)", block, re.MULTILINE):
+            yield line, command, printed
+
+
+def test_examples_of_the_commands_are_what_the_demo_prints(tmp_path, monkeypatch, capsys):
+    monkeypatch.chdir(tmp_path)
+    page = ROOT / "docs" / "commands.md"
+    shutil.copy(ROOT / "docs" / "parts.drawing.toml", tmp_path)
+    ran, stale = set(), []
+    for line, command, shown in examples(blocks(page, "console")):
+        if command.startswith(ELSEWHERE):
+            continue
+        arguments, _, target = command.partition(" > ")
+        assert main(shlex.split(arguments)) == 0
+        printed = capsys.readouterr().out
+        if target:
+            (tmp_path / target).write_text(printed, encoding="utf-8")
+            continue
+        gap = missing(shown, printed)
+        if gap is not None:
+            stale.append(f"commands.md, block at line {line}, {command}: {gap}")
+        if command.startswith("demo"):
+            (tmp_path / "readings").mkdir()
+            for file in (tmp_path / "stdfit-demo").glob("*.s1p"):
+                shutil.copy(file, tmp_path / "readings")
+        ran.add(command.split()[0])
+    assert stale == []
+    assert ran >= set(commands_of(help_of(capsys))) - {*ELSEWHERE}
+
+
+def test_the_verdict_of_the_front_page_is_the_demos(tmp_path, capsys):
+    (shown,) = [text for _, text in blocks(ROOT / "README.md", "") if text.startswith("within ")]
+    assert main(["demo", "--out", str(tmp_path / "demo")]) == 0
+    assert any(alike(shown, line) for line in capsys.readouterr().out.splitlines())
 
 
 @pytest.mark.parametrize(

@@ -10,16 +10,53 @@ from stdfit.cli.exit_codes import WRONG_INPUT
 # typing and pathlib alone take as long to import as the rest of `--help`.
 TYPE_CHECKING = False
 if TYPE_CHECKING:
+    from collections.abc import Iterable, Sequence
     from pathlib import Path
-    from typing import NoReturn
+    from typing import Any, NoReturn
+
+
+KIT = "a kit file, or a folder that holds kit.toml"
+
+FEWEST_DRAWS = 100
+"""Fewer draws say nothing of a 95 % bound."""
 
 
 class Parser(argparse.ArgumentParser):
-    """A parser whose faults are one line and what to do."""
+    """A parser whose faults are one line and what to do, with the nearest word that it knows."""
 
-    def error(self, message: str) -> NoReturn:
+    def parse_known_args(self, args=None, namespace=None):  # type: ignore[no-untyped-def]
+        """Refuse what a command does not know in that command's own name."""
+        known, left = super().parse_known_args(args, namespace)
+        if left:
+            self.unknown(left)
+        return known, left
+
+    def unknown(self, left: Sequence[str]) -> NoReturn:
+        """Say which arguments are not known, and stop."""
+        options = [one.partition("=")[0] for one in left if one.startswith("-")]
+        meant = self._meant(options[0], self._option_string_actions) if options else ""
+        self.error(f"unrecognized arguments: {' '.join(left)}", meant)
+
+    def _check_value(self, action: argparse.Action, value: Any) -> None:
+        """Refuse a word that is no choice; argparse asks here."""
+        if action.choices is not None and value not in action.choices:
+            what = "command" if action.dest == "command" else f"choice of {'/'.join(action.option_strings)}"
+            meant = self._meant(value, action.choices)
+            self.error(f"no {what} '{value}'", meant or f"use one of: {', '.join(action.choices)}; ")
+
+    @staticmethod
+    def _meant(word: str, known: Iterable[str]) -> str:
+        """Return "did you mean 'x'? " where a known word is near, else nothing."""
+        from stdfit.data.words import nearest
+
+        # Dashes are no likeness.
+        plain = {one.lstrip("-"): one for one in known}
+        best = nearest(word.lstrip("-"), plain)
+        return f"did you mean '{plain[best]}'? " if best else ""
+
+    def error(self, message: str, meant: str = "") -> NoReturn:
         """Say what is wrong and stop."""
-        self.exit(WRONG_INPUT, f"stdfit: {shown(message)}\nsee '{self.prog} --help'\n")
+        self.exit(WRONG_INPUT, f"stdfit: {shown(message)}\n{meant}see '{self.prog} --help'\n")
 
 
 def parser() -> Parser:
@@ -51,6 +88,11 @@ def parser() -> Parser:
     demo.add_argument(
         "--out", metavar="DIR", type=_path, default="stdfit-demo", help="where to write (stdfit-demo)"
     )
+    demo.add_argument(
+        "--walkthrough",
+        action="store_true",
+        help="write the readings of docs/walkthrough.md instead, and fit nothing",
+    )
 
     new = add("new", "write a commented bench.toml from the readings found in a folder", "bench_commands")
     new.add_argument("folder", metavar="DIR", type=_path)
@@ -80,7 +122,7 @@ def parser() -> Parser:
         metavar="N",
         type=_draws,
         default=0,
-        help="check the linear bounds with N draws (some thousand) and say where they differ",
+        help="check the linear bounds with N draws (100 or more, better some thousand) and say where they differ",
     )
 
     plan = add(
@@ -96,20 +138,20 @@ def parser() -> Parser:
     )
 
     show = add("show", "show a kit file: what to type in, how sure, how far", "kit_commands")
-    show.add_argument("kit", metavar="KIT", type=_path)
+    show.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
 
     report = add(
         "report",
         "write a page for a browser: what to type in, how sure, how far, and the evidence with pictures",
         "report_commands",
     )
-    report.add_argument("kit", metavar="KIT", type=_path)
+    report.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
     report.add_argument(
         "-o", "--output", metavar="FILE.html", type=_path, help="page to write (KIT with .html, beside it)"
     )
 
     curve = add("curve", "print reflection and 95 % bound over frequency as CSV", "kit_commands")
-    curve.add_argument("kit", metavar="KIT", type=_path)
+    curve.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
     curve.add_argument(
         "--standard", metavar="NAME", action="append", help="only this standard; may be repeated"
     )
@@ -121,7 +163,7 @@ def parser() -> Parser:
     limit = add(
         "limit", "print the frequency-validity limit of kit and standards, with reasons", "kit_commands"
     )
-    limit.add_argument("kit", metavar="KIT", type=_path)
+    limit.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
     limit.add_argument("--within", metavar="X", type=_tolerance, nargs="+", help="tolerances (the kit's own)")
     limit.add_argument(
         "--return-loss",
@@ -154,7 +196,7 @@ def parser() -> Parser:
     device = add(
         "device", "print what a kit leaves in an analyser, and the bound on any device", "kit_commands"
     )
-    device.add_argument("kit", metavar="KIT", type=_path)
+    device.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
     device.add_argument(
         "--magnitude",
         metavar="X",
@@ -175,7 +217,7 @@ def parser() -> Parser:
         "write each standard as a Touchstone file, with covariances and bounds as CSV",
         "use_commands",
     )
-    export.add_argument("kit", metavar="KIT", type=_path)
+    export.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
     export.add_argument("folder", metavar="DIR", type=_path, help="where to write; made if it is not there")
     export.add_argument(
         "--from", dest="from_hz", metavar="HZ", type=_number, help="lowest frequency (first common reading)"
@@ -192,9 +234,12 @@ def parser() -> Parser:
     compare = add(
         "compare", "say where and by how much two kits differ, in units of their bounds", "use_commands"
     )
-    compare.add_argument("kit", metavar="KIT", type=_path)
+    compare.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
     compare.add_argument(
-        "other", metavar="KIT|ideal", help="another kit, or the word 'ideal' for standards at +1, -1 and 0"
+        "other",
+        metavar="KIT|ideal",
+        type=_kit_or_word,
+        help="another kit, or the word 'ideal' for standards at +1, -1 and 0",
     )
     compare.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="frequencies (some round ones)")
     compare.add_argument("--csv", action="store_true", help="print all differences over frequency as CSV")
@@ -202,7 +247,7 @@ def parser() -> Parser:
     sheet = add(
         "sheet", "say what to type where not all terms are accepted, and what that costs", "entry_commands"
     )
-    sheet.add_argument("kit", metavar="KIT", type=_path)
+    sheet.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
     sheet.add_argument(
         "--accepts",
         metavar="TERM",
@@ -239,7 +284,7 @@ def parser() -> Parser:
         "correct devices with a kit, and say whether they agree with their values within the bounds",
         "check_commands",
     )
-    check.add_argument("kit", metavar="KIT", type=_path)
+    check.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
     check.add_argument(
         "bench", metavar="BENCH", type=_path, help="a bench file with [[device]] tables, or its folder"
     )
@@ -254,7 +299,9 @@ def parser() -> Parser:
         "say whether standards have changed, in what, and what their old definition is still good for",
         "wear_commands",
     )
-    wear.add_argument("old", metavar="OLD", type=_path, help="the kit file of the standards as they were")
+    wear.add_argument(
+        "old", metavar="OLD", type=_kit, help="the kit file of the standards as they were, or its folder"
+    )
     wear.add_argument(
         "new", metavar="NEW", type=_path, help="a newer kit file, a new bench file, or its folder"
     )
@@ -365,6 +412,20 @@ def _path(text: str) -> Path:
     return Path(text)
 
 
+def _kit(text: str) -> Path:
+    """Return a kit file: a folder stands for the kit.toml in it."""
+    path = _path(text)
+    inside = path / "kit.toml"
+    try:
+        return inside if inside.is_file() else path
+    except OSError:  # no possible name: who reads it says so
+        return path
+
+
+def _kit_or_word(text: str) -> Path | str:
+    return text if text == "ideal" else _kit(text)
+
+
 def _tolerance(text: str) -> float:
     value = _number(text)
     if not 0.0 < value < 1.0:
@@ -394,6 +455,8 @@ def _seed(text: str) -> int:
 
 def _draws(text: str) -> int:
     value = _count(text)
-    if value < 100:
-        raise argparse.ArgumentTypeError(f"'{text}' draws say too little: take 1000 or more")
+    if value < FEWEST_DRAWS:
+        raise argparse.ArgumentTypeError(
+            f"'{text}' draws say too little: take {FEWEST_DRAWS} or more, better some thousand"
+        )
     return value

@@ -16,6 +16,8 @@ if TYPE_CHECKING:
 
 def new(asked: argparse.Namespace) -> int:
     """Write a commented bench file."""
+    from shlex import quote
+
     from stdfit.base.errors import RequestError
     from stdfit.writing.bench_draft import draft, find_standards
     from stdfit.writing.safely import write_whole
@@ -24,21 +26,24 @@ def new(asked: argparse.Namespace) -> int:
     if target.exists():
         raise RequestError("exists already, and is not overwritten", "edit it, or move it away", file=target)
     found, left_out = find_standards(asked.folder)
-    write_whole(target, draft(asked.folder.resolve().name, found))
+    following = f"stdfit fit {quote(str(asked.folder))}"
+    write_whole(target, draft(asked.folder.resolve().name, found, following))
     for line in left_out:
         tell(f"left out: {line}")
     if asked.json:
         print_json(
             {
                 "bench_file": str(target),
-                "standards": [{"kind": f.kind, "files": list(f.files)} for f in found],
+                "standards": [{"name": f.name, "kind": f.kind, "files": list(f.files)} for f in found],
             }
         )
         return DONE
     for one in found:
-        say(f"{one.kind}: {', '.join(one.files)}{'' if one.by_name else '  (guessed from the readings)'}")
+        kind = "" if one.name == one.kind else f" ({one.kind})"
+        guessed = "" if one.by_name else "  (guessed from the readings)"
+        say(f"{one.name}{kind}: {', '.join(one.files)}{guessed}")
     say(f"bench file: {target}")
-    say(f"next: look at the lines marked '<--' in it, then: stdfit fit {asked.folder}")
+    say(f"next: look at the lines marked '<--' in it, then: {following}")
     return DONE
 
 
@@ -109,7 +114,7 @@ def plan(asked: argparse.Namespace) -> int:
         bench = replace(bench, within=asked.within)
     measured = any(entry.files for entry in bench.standards)
     prepared = prepare_bench(bench, read_sweeps(bench)) if measured else imagine(bench)
-    with progress("remedies") as told:
+    with progress("planning") as told:
         found = plan(prepared, told)
     warn(found.kit)
     if asked.json:

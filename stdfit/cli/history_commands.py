@@ -16,7 +16,7 @@ def history(asked: argparse.Namespace) -> int:
     """Say what has become of standards over the kits of a folder."""
     from stdfit.base.errors import RequestError
     from stdfit.pipeline.history_folder import find_kits
-    from stdfit.validity.change.history import history
+    from stdfit.validity.change.history import history, other_names
     from stdfit.writing.history_text import COLUMNS, history_data, history_rows, history_text
 
     if asked.csv and asked.json:
@@ -40,6 +40,8 @@ def history(asked: argparse.Namespace) -> int:
     if asked.json:
         print_json(history_data(said))
     elif asked.csv:
+        for note in other_names(said.kits):
+            tell(f"warning: {note}")
         print_csv(COLUMNS, history_rows(said))
     else:
         print_text(history_text(said))

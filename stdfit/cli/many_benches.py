@@ -152,12 +152,12 @@ def _refuse(asked: argparse.Namespace) -> None:
 def _say(good: Sequence[Outcome], count: int) -> None:
     """Print one line for each kit, and how many there are."""
     from stdfit.writing.aligned import aligned
-    from stdfit.writing.numbers import frequency
+    from stdfit.writing.numbers import good_to
 
     if good:
         rows = [["kit file", "within", "good to", "ends because"]]
         rows += [
-            [one["kit_file"], f"{kit['within']:g}", frequency(kit["limit_hz"]), kit["reason"]]
+            [one["kit_file"], f"{kit['within']:g}", good_to(kit["limit_hz"]), kit["reason"]]
             for one in good
             for kit in (one["kit"],)
         ]

@@ -15,6 +15,8 @@ if TYPE_CHECKING:
 
 def demo(asked: argparse.Namespace) -> int:
     """Simulate a bench and characterise it."""
+    if asked.walkthrough:
+        return _walkthrough(asked)
     from stdfit.pipeline import fit_bench
     from stdfit.trials.demo import compare, compare_curves, write_demo
     from stdfit.trials.demo_text import demo_data, demo_text
@@ -48,6 +50,22 @@ def demo(asked: argparse.Namespace) -> int:
     say(f"next: open {page}   (in a browser: the same, with pictures)")
     say(f"      stdfit show {target}   (what to type in)")
     say("      stdfit new DIR   (DIR holds your own readings)")
+    return DONE
+
+
+def _walkthrough(asked: argparse.Namespace) -> int:
+    """Write the readings of the walk-through."""
+    from shlex import quote
+
+    from stdfit.trials.workshop import write_workshop
+
+    folders = write_workshop(asked.out)
+    if asked.json:
+        print_json({"folders": [str(folder) for folder in folders]})
+        return DONE
+    for folder in folders:
+        say(f"readings: {folder}")
+    say(f"next: stdfit new {quote(str(folders[0]))}   (step 4 of docs/walkthrough.md)")
     return DONE
 
 

@@ -73,8 +73,6 @@ def _export_grid(asked: argparse.Namespace, kit: Kit) -> FloatArray:
 
 def compare(asked: argparse.Namespace) -> int:
     """Print where and by how much two kits differ."""
-    from pathlib import Path
-
     from stdfit.base.errors import RequestError
     from stdfit.validity.device.compare import compare
     from stdfit.validity.device.pairing import ideal_like
@@ -90,7 +88,7 @@ def compare(asked: argparse.Namespace) -> int:
     if asked.csv and asked.json:
         raise RequestError("--csv and --json are asked for at once", "leave one of them out")
     one = read_kit(asked.kit)
-    two = ideal_like(one) if asked.other == "ideal" else read_kit(Path(asked.other))
+    two = ideal_like(one) if asked.other == "ideal" else read_kit(asked.other)
     found = compare(one, two)
     at_hz = table_frequencies(found, asked.at)
     if asked.json:

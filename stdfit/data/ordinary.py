@@ -1,8 +1,14 @@
 """Bytes of ordinary files; a pipe or a device is never waited for."""
 
+import hashlib
 import os
 import stat
 from pathlib import Path
+
+from stdfit.base.errors import InputError
+
+LARGEST_BYTES = 64 * 2**20
+"""Of any file that the program reads."""
 
 
 def ordinary_bytes(path: Path, most: int) -> bytes | None:
@@ -33,3 +39,23 @@ def beginning(path: Path, most: int) -> bytes:
         return ordinary_bytes(path, most) or b""
     except (OSError, ValueError):
         return b""
+
+
+def digest(path: Path) -> str:
+    """Return the SHA-256 of a file that was read, or is going to be.
+
+    Raises
+    ------
+    InputError
+        It is not an ordinary file, or larger than any that is read.
+    OSError
+        It cannot be read.
+    """
+    raw = ordinary_bytes(path, LARGEST_BYTES + 1)
+    if raw is None:
+        raise InputError("not an ordinary file", "name an ordinary file", file=path)
+    if len(raw) > LARGEST_BYTES:
+        raise InputError(
+            f"larger than {LARGEST_BYTES // 2**20} MB", "name the file that was written", file=path
+        )
+    return hashlib.sha256(raw).hexdigest()

@@ -14,11 +14,11 @@ from stdfit.base.errors import ReadingError
 from stdfit.base.records import Sweep
 from stdfit.data.columns import parse_columns
 from stdfit.data.exported import refuse_exported
+from stdfit.data.ordinary import LARGEST_BYTES
 from stdfit.data.soundness import HIGHEST_MAGNITUDE
 from stdfit.data.touchstone import parse_touchstone
 from stdfit.data.words import nearest, quoted
 
-LARGEST_BYTES = 64 * 2**20
 _TOUCHSTONE_SUFFIX = re.compile(r"\.(s[0-9]+p|ts)\Z", re.IGNORECASE)
 _TOUCHSTONE_START = re.compile(
     rb"\A(?:\s|![^\r\n]*(?:[\r\n]|\Z))*(\[|#[ \t]*([kmg]?hz|[syzgh]|ri|ma|db|r)\b)", re.IGNORECASE

@@ -1,6 +1,5 @@
 """What is read for a check: which entry of the bench is which standard, and whether the readings can serve."""
 
-import hashlib
 from collections.abc import Sequence
 from dataclasses import replace
 from pathlib import Path
@@ -13,6 +12,7 @@ from stdfit.base.records import Sweep
 from stdfit.circuits.residual_map import separation
 from stdfit.data.bench import Bench
 from stdfit.data.bench_records import DeviceEntry, StandardEntry
+from stdfit.data.ordinary import digest
 from stdfit.data.readings import read_reading
 from stdfit.data.soundness import HIGHEST_MAGNITUDE
 from stdfit.data.verify import verify_standards
@@ -86,7 +86,7 @@ def _own(entry: StandardEntry, kit: Kit, kit_file: Path) -> Definition | None:
 
 def digest_of(file: Path) -> str:
     """Return the SHA-256 of a file."""
-    return hashlib.sha256(file.read_bytes()).hexdigest()
+    return digest(file)
 
 
 def read_connections(entry: StandardEntry | DeviceEntry, bench: Bench) -> list[Sweep]:

@@ -29,6 +29,7 @@ from stdfit.validity.device.check_day import Day, Stack, correct_day, device_unc
 from stdfit.validity.device.check_value import Value, given_value, value_from_file, value_from_kit
 from stdfit.validity.device.pairing import shared
 from stdfit.validity.kit import Kit
+from stdfit.writing.kit_file import kit_file_of
 from stdfit.writing.kit_reading import read_kit
 
 UNSURE = 2.0
@@ -53,9 +54,10 @@ def check_kit(
     InputError
         Something in the kit, the bench or the readings is wrong.
     """
-    kit, bench = read_kit(Path(kit_file)), read_bench(bench_file, devices_alone=True)
+    kit_file = kit_file_of(kit_file)
+    kit, bench = read_kit(kit_file), read_bench(bench_file, devices_alone=True)
     _check_request(kit, bench)
-    entries, three = standards_of(kit, Path(kit_file), bench, names)
+    entries, three = standards_of(kit, kit_file, bench, names)
     own_sweeps = [[sweep for entry in own for sweep in read_connections(entry, bench)] for own in entries]
     device_sweeps = [read_connections(entry, bench) for entry in bench.devices]
     notes = file_notes(kit, bench, [entry for own in entries for entry in own])
@@ -92,7 +94,7 @@ def check_kit(
     findings = [
         finding
         for place, entry in enumerate(bench.devices)
-        for finding in _findings(kit, Path(kit_file), entry, day, place, judged, notes)
+        for finding in _findings(kit, kit_file, entry, day, place, judged, notes)
     ]
     return Check(
         kit=kit.name,

@@ -1,10 +1,10 @@
 """The kit files of a folder."""
 
-import hashlib
 from pathlib import Path
 
 from stdfit.base.errors import KitError, RequestError
 from stdfit.base.shown import shown
+from stdfit.data.ordinary import digest
 from stdfit.validity.change.history_kits import Dated
 from stdfit.writing.kit_file import is_kit_file
 from stdfit.writing.kit_reading import read_kit
@@ -43,7 +43,8 @@ def find_kits(folder: Path) -> tuple[list[Dated], list[tuple[str, str]]]:
                 f"more than {MOST} kit files", "name a folder with those of one set", file=folder
             )
         try:
-            found.append(Dated(name, hashlib.sha256(path.read_bytes()).hexdigest(), read_kit(path)))
+            kit = read_kit(path)
+            found.append(Dated(name, digest(path), kit))
         except KitError as fault:
             left_out.append((name, f"{fault.key}: {fault.what}" if fault.key else fault.what))
     return found, left_out

@@ -1,6 +1,5 @@
 """The whole path, from a bench file to a kit."""
 
-import hashlib
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import replace
 from pathlib import Path
@@ -10,6 +9,7 @@ import numpy as np
 from stdfit.base.errors import BenchError, RequestError
 from stdfit.base.records import Sweep
 from stdfit.data.bench import Bench, read_bench
+from stdfit.data.ordinary import digest
 from stdfit.data.readings import read_reading
 from stdfit.data.soundness import HIGHEST_MAGNITUDE
 from stdfit.pipeline.adapters.brought import refuse_behind
@@ -17,7 +17,7 @@ from stdfit.pipeline.adapters.known import thru_of
 from stdfit.pipeline.drawn import drawing_notes, drawn_contradictions, with_drawings
 from stdfit.pipeline.finished import finished, program_version, with_limits
 from stdfit.pipeline.kept_readings import session_of
-from stdfit.pipeline.prepare import Prepared, prepare
+from stdfit.pipeline.prepare import Prepared, analyser_told, prepare
 from stdfit.pipeline.raw.inherited import never_surer
 from stdfit.pipeline.raw.referenced import prepare_referenced
 from stdfit.pipeline.raw.references import FEWEST, count_references
@@ -68,7 +68,8 @@ def fit_bench(
     draws : int
         Draws of a Monte Carlo check of the linear bounds; 0 for none.
     tell : callable, optional
-        Is told how many are done: (done, total), of the draws, or of the ranges that are fitted without references.
+        Is told how many are done: (done, total), of the draws, of the ranges that are fitted without references, or
+        else of the orders of all standards.
 
     Raises
     ------
@@ -93,10 +94,7 @@ def source_files(bench: Bench) -> tuple[SourceFile, ...]:
         (f"{DRAWING}{entry.name}", entry.from_drawing.file) for entry in bench.standards if entry.from_drawing
     ]
     named += [(f"{ADAPTER}{one.name}", one.file) for one in bench.adapters if one.file is not None]
-    return tuple(
-        SourceFile(whose, _relative(file, bench.path.parent), hashlib.sha256(file.read_bytes()).hexdigest())
-        for whose, file in named
-    )
+    return tuple(SourceFile(whose, _relative(file, bench.path.parent), digest(file)) for whose, file in named)
 
 
 def read_sweeps(bench: Bench) -> dict[str, list[Sweep]]:
@@ -161,7 +159,7 @@ def characterise(
         kit = characterise_unreferenced(bench, sweeps, files=files, created=created, tell=tell)
         return replace(kit, warnings=(*kit.warnings, *drawing_notes(bench)))
     prepared = prepare_bench(bench, sweeps)
-    settled = settle(prepared, choose_all(prepared))
+    settled = settle(prepared, choose_all(prepared, None if draws else tell))
     kit = kit_of(prepared, settled, files=files, created=created)
     kit = replace(
         kit, warnings=(*kit.warnings, *drawing_notes(bench), *drawn_contradictions(prepared, settled))
@@ -223,7 +221,9 @@ def kit_of(
         files=files,
         created=created,
     )
-    kit = replace(kit, ancestors=prepared.ancestors, session=session_of(prepared))
+    kit = replace(
+        kit, ancestors=prepared.ancestors, session=session_of(prepared), analyser=analyser_told(prepared)
+    )
     return never_surer(kit, prepared)
 
 

@@ -15,8 +15,8 @@ from stdfit.pipeline.raw.remedies import OF_REFERENCES, with_reference_connectio
 from stdfit.pipeline.settle import choose_all, settle
 from stdfit.uncertainty.budget import radius
 from stdfit.uncertainty.sources import LumpedSource, SharedSource, SmoothSource, Source, WhiteSource
+from stdfit.validity.evidence.sharing import source_parts
 from stdfit.validity.kit import Definition, Kit, misfit_at, model
-from stdfit.validity.limits import shares_at
 
 BETTER_DB = 6.0
 """How much better a reference is in the remedy that asks for one."""
@@ -36,7 +36,7 @@ LONGER = 1.5
 
 @dataclass(frozen=True, slots=True)
 class Contribution:
-    """What one source does at the kit's limit: its part of the variance, and the 95 % radius it has alone."""
+    """What one source does at the kit's limit: its part of the bound, 0 … 1, and the 95 % radius it has alone."""
 
     name: str
     part: float
@@ -97,14 +97,16 @@ def plan(prepared: Prepared, tell: Callable[[int, int], None] | None = None) -> 
     prepared : Prepared
         Measured, or imagined.
     tell : callable, optional
-        Is told (done, total).
+        Is told (done, total), of the orders of the fit as it stands, then of the remedies.
     """
-    kit = _kit(prepared)
+    kit = _kit(prepared, tell)
     held_back = min(kit.definitions, key=lambda one: one.limit.limit_hz)
     at_hz = max(held_back.limit.limit_hz, held_back.read_low_hz)
     _, design = model(kit, held_back, np.array([at_hz]))
     wrong = float(misfit_at(held_back, np.array([at_hz]))[0])
-    parts = shares_at(design[0], kit.shares)
+    spread = radius(design, kit.shares)
+    bound = float(spread[0]) + wrong
+    parts = source_parts(design, kit.shares, spread)[:, 0] / max(bound, 1e-300)
     contributions = [
         Contribution(share.name, float(part), float(radius(design, [share])[0]))
         for share, part in zip(kit.shares, parts, strict=True)
@@ -120,15 +122,15 @@ def plan(prepared: Prepared, tell: Callable[[int, int], None] | None = None) -> 
         kit=kit,
         standard=held_back.name,
         at_hz=at_hz,
-        bound=float(radius(design, kit.shares)[0]) + wrong,
+        bound=bound,
         misfit=wrong,
         contributions=tuple(sorted(contributions, key=lambda one: -one.part)),
         remedies=tuple(sorted(remedies, key=lambda one: -one.gain_hz)),
     )
 
 
-def _kit(prepared: Prepared) -> Kit:
-    return kit_of(prepared, settle(prepared, choose_all(prepared)), created="planned")
+def _kit(prepared: Prepared, tell: Callable[[int, int], None] | None = None) -> Kit:
+    return kit_of(prepared, settle(prepared, choose_all(prepared, tell)), created="planned")
 
 
 def _remedies(prepared: Prepared, kit: Kit, held_back: Definition) -> Iterator[tuple[str, Prepared, bool]]:

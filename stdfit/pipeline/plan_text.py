@@ -4,11 +4,13 @@ from typing import Any
 
 from stdfit.pipeline.plan import Plan, Remedy, ranked
 from stdfit.writing.aligned import aligned
+from stdfit.writing.bound_rows import bound_rows
 from stdfit.writing.numbers import frequency
 from stdfit.writing.summary import verdict
 
-SMALLEST_PART = 0.005
-"""Sources below this part of the variance are not listed."""
+HEAD = (
+    "What would move the limit, each fitted again (estimates without a fit, as in 'stdfit show', are lower)"
+)
 
 
 def plan_text(plan: Plan, *, measured: bool) -> str:
@@ -26,16 +28,10 @@ def plan_text(plan: Plan, *, measured: bool) -> str:
             "  (usual parts that follow their models, read by a typical analyser whose errors pass for misfit in part)"
         )
     lines += ["", f"What makes up the bound of '{plan.standard}' at {frequency(plan.at_hz)}"]
-    rows = [["source", "part of variance", "alone (95 %)"]]
-    rows += [
-        [one.name, f"{100 * one.part:.0f} %", f"{one.alone:.4f}"]
-        for one in plan.contributions
-        if one.part > SMALLEST_PART
-    ]
-    rows += [["misfit, added to the rest", "", f"{plan.misfit:.4f}"], ["bound", "", f"{plan.bound:.4f}"]]
-    lines += aligned(rows)
+    named = [(one.name, one.part * plan.bound) for one in plan.contributions]
+    lines += aligned([["source", "part of the bound", ""], *bound_rows(named, plan.misfit)])
     helping, useless = ranked(plan.remedies)
-    lines += ["", "What would move the limit"]
+    lines += ["", HEAD]
     if helping:
         lines += aligned([["good to", "gain", "what to do"], *(_row(one) for one in helping)])
     else:

@@ -10,6 +10,7 @@ from stdfit.base.errors import ReadingError, RequestError
 from stdfit.base.records import Sweep
 from stdfit.circuits.connectors import Family
 from stdfit.data.bench import Bench, StatedResidual
+from stdfit.data.uncorrected import like_uncorrected
 from stdfit.data.verify import verify_standards
 from stdfit.fitting.observed import Observed, noise_of, without_delay
 from stdfit.fitting.roles import Wish
@@ -22,6 +23,7 @@ from stdfit.pipeline.ceiling import family_on
 from stdfit.uncertainty.connections import Repeatability, assumed_repeatability, pooled_repeatability
 from stdfit.uncertainty.outlying import without_outlying
 from stdfit.uncertainty.sources import Source, connection_sources
+from stdfit.validity.analyser import Analyser, analyser_of, same_residuals
 from stdfit.validity.kit import Ancestor
 
 ASSUMED_RESIDUAL = StatedResidual(
@@ -113,7 +115,9 @@ def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]], *, imagined: bo
     warnings: list[str] = []
     if not imagined:
         sweeps = brought(bench, sweeps, planes)
-        warnings += verify_standards(to_verify(bench, sweeps, planes))
+        readings = to_verify(bench, sweeps, planes)
+        warnings += verify_standards(readings)
+        warnings += like_uncorrected(readings, _given_delays(bench))
     family = family_on(bench)
     observed, left_out = _observe(bench, sweeps, family)
     wishes = tuple(
@@ -136,6 +140,17 @@ def prepare(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]], *, imagined: bo
         warnings=tuple(warnings),
         ancestors=adapter_ancestors(planes.in_use),
     )
+
+
+def _given_delays(bench: Bench) -> dict[str, float]:
+    """Return the offset delays that are given, in ps, for standards that share a line too."""
+    own = {
+        entry.name: entry.given["offset_delay_ps"].value
+        for entry in bench.standards
+        if "offset_delay_ps" in entry.given
+    }
+    shared = {one.name: own[one.same_offset_as] for one in bench.standards if one.same_offset_as in own}
+    return {**shared, **own}
 
 
 def refuse_known(bench: Bench) -> None:
@@ -212,6 +227,15 @@ def single_points(name: str, frequencies: FloatArray) -> str:
     )
 
 
+def analyser_told(prepared: Prepared) -> Analyser | None:
+    """Return what the analyser's own correction was told or taken to leave; None of raw readings."""
+    if prepared.bench.state != "corrected":
+        return None
+    stated = prepared.bench.residual
+    assumed = stated is None or same_residuals(stated, ASSUMED_RESIDUAL)
+    return analyser_of(prepared.residual, assumed=assumed)
+
+
 def repeatability(observed: Sequence[Observed], family: Family, reference_ohm: float) -> Repeatability:
     """Measure how connections scatter, or assume it where nothing was connected twice."""
     if any(one.connections > 1 for one in observed):
@@ -230,6 +254,11 @@ def _cautions(
             "no analyser residuals are stated: those of a modest calibration are assumed "
             "(36 … 32 dB directivity, 34 … 28 dB source match, 0.1 … 0.2 dB tracking; common practice, no source). "
             "State yours under [analyser.residual]."
+        )
+    elif same_residuals(bench.residual, ASSUMED_RESIDUAL):
+        cautions.append(
+            "the analyser residuals are still those of the draft, a modest calibration's (common practice, no source). "
+            "State yours under [analyser.residual]: limits rest on them."
         )
     return cautions + scatter_cautions(observed, scatter, family, bench.connector)
 

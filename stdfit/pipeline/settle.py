@@ -1,7 +1,8 @@
 """The fit itself: range and order of each standard, then all of them at once."""
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import replace
+from itertools import count
 
 import numpy as np
 
@@ -12,7 +13,7 @@ from stdfit.uncertainty.budget import radius, shares_of
 from stdfit.uncertainty.push import push, weighted
 from stdfit.uncertainty.region import CIRCULAR
 from stdfit.uncertainty.sources import SmoothSource, reading_variance
-from stdfit.validity.choose import Choice, choose, thin, weights_for
+from stdfit.validity.choose import Choice, choose, shapes_for, thin, weights_for
 from stdfit.validity.define import Settled
 from stdfit.validity.misfit import misfit
 
@@ -20,11 +21,27 @@ MISFIT_POINTS = 200
 """About how many values of the misfit a kit keeps for each standard."""
 
 
-def choose_all(prepared: Prepared) -> list[Choice]:
-    """Choose order and range of each standard, owners of a shared offset line first."""
+def choose_all(prepared: Prepared, tell: Callable[[int, int], None] | None = None) -> list[Choice]:
+    """Choose order and range of each standard, owners of a shared offset line first.
+
+    Parameters
+    ----------
+    prepared : Prepared
+    tell : callable, optional
+        Is told how many orders of how many standards' are fitted: (done, total).
+    """
     bench, observed, wishes, sources = prepared.bench, prepared.observed, prepared.wishes, prepared.sources
     choices: dict[str, Choice] = {}
     by_name = {entry.name: k for k, entry in enumerate(bench.standards)}
+    total = sum(
+        len(shapes_for(one.kind, entry.polynomial, wish))
+        for one, entry, wish in zip(observed, bench.standards, wishes, strict=True)
+    )
+    done = count(1)
+
+    def fitted() -> None:
+        if tell:
+            tell(next(done), total)
 
     def settle_one(name: str) -> Choice:
         if name in choices:
@@ -42,6 +59,7 @@ def choose_all(prepared: Prepared) -> list[Choice]:
             bench.within,
             bench.reference_ohm,
             prepared.family.top_hz,
+            tell=fitted,
         )
         return choices[name]
 

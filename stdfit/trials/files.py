@@ -84,7 +84,7 @@ def write_bench(simulated: SimulatedBench, folder: Path | str, name: str = "Simu
     bench = folder / "bench.toml"
     texts[bench] = bench_text(simulated, name)
     for path in texts:
-        if (path.exists() or path.is_symlink()) and not _is_simulated(path):
+        if (path.exists() or path.is_symlink()) and not is_simulated(path):
             raise RequestError(
                 "would overwrite a file that is not simulated", "choose another folder", file=path
             )
@@ -94,7 +94,7 @@ def write_bench(simulated: SimulatedBench, folder: Path | str, name: str = "Simu
     return bench
 
 
-def _is_simulated(path: Path) -> bool:
+def is_simulated(path: Path) -> bool:
     """Tell whether a file says of itself in its first line that it is simulated."""
     return MARK.encode() in beginning(path, 4096).split(b"\n")[0]
 

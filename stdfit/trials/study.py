@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 
 from stdfit.base.errors import RequestError, StdfitError
-from stdfit.data.words import suggestion
+from stdfit.data.words import nearest, quoted
 from stdfit.trials.bench import draw_bench
 from stdfit.trials.devices import devices_inside
 from stdfit.trials.drawn_parts import draw_drawn_bench
@@ -195,7 +195,8 @@ def run(
     for name in names:
         if name not in every:
             raise RequestError(
-                f"no family '{name}'{suggestion(name, every)}", f"choose among: {', '.join(every)}"
+                f"no family {quoted(name)}",
+                f"{_meant(name, every)}choose among: {', '.join(map(quoted, every))}",
             )
     chosen = list(names) or every
     jobs = [(name, seed, number, within, like) for name in chosen for number in range(benches)]
@@ -221,6 +222,11 @@ def run(
 
 def _trial_of(job: tuple[str, int, int, float, Scenario | None]) -> Trial | None:
     return trial(*job)
+
+
+def _meant(name: str, every: Sequence[str]) -> str:
+    best = nearest(name, every)
+    return f"did you mean {quoted(best)}? " if best else ""
 
 
 def row_of(family: str, benches: Sequence[Trial | None]) -> Row:

@@ -124,6 +124,8 @@ def choose(
     within: float,
     reference_ohm: float,
     ceiling_hz: float = np.inf,
+    *,
+    tell: Callable[[], None] | None = None,
 ) -> Choice:
     """Choose order and range of one standard by the limit they give.
 
@@ -142,6 +144,8 @@ def choose(
     reference_ohm : float
     ceiling_hz : float
         Top of the connector family: no limit beyond it counts.
+    tell : callable, optional
+        Is called when an order has been fitted.
     """
     f = observed.frequency_hz
     shapes = shapes_for(observed.kind, polynomial, wish)
@@ -153,7 +157,11 @@ def choose(
     def fit(shape: str) -> _Order:
         return _fit_order(observed, sources, wish, shape, cuts, points, reference_ohm)
 
-    orders = [fit(shape) for shape in shapes]
+    orders = []
+    for shape in shapes:
+        orders.append(fit(shape))
+        if tell:
+            tell()
     # What the richest order can follow, fitted to all readings, is no excuse for any order and range.
     richest = shapes_for(observed.kind, "chosen", wish)[-1]
     reference = orders[-1] if richest == shapes[-1] else fit(richest)

@@ -5,8 +5,18 @@ from collections.abc import Callable, Sequence
 import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
-from stdfit.circuits.standard import PARAMETERS
-from stdfit.uncertainty.budget import Share, parts_of_variance, radius
+from stdfit.base.errors import RequestError
+from stdfit.uncertainty.budget import radius
+from stdfit.validity.evidence.causes import (
+    DIFFERS,
+    LEAVES,
+    TYPED,
+    TYPED_FROM,
+    cause,
+    parts_of_bound,
+    percent,
+)
+from stdfit.validity.evidence.sharing import MISFIT
 from stdfit.validity.kit import Definition, Kit, Rung, misfit_at, model
 from stdfit.validity.limit import Limit, first_gap
 
@@ -17,11 +27,8 @@ GRID_POINTS = 400
 """Points at which a bound is compared with a tolerance, besides those of the misfit."""
 
 
-GIVEN = "given values"
-"""The source that stands for what the user gave."""
-
-TOLD_PART = 0.01
-"""An extra error is told of from this part of the tolerance on."""
+STEPS = "the readings leave the model just above (misfit)"
+"""How a reason begins where the misfit is the largest part above the limit and not yet at it."""
 
 Extra = Callable[[Definition, FloatArray], FloatArray]
 """An error of Γ over frequency that comes on top of a standard's bound, shape (n,)."""
@@ -35,7 +42,13 @@ def limits(
     The limit is the highest frequency up to which the bound, with the extra error if there is one, keeps within the
     tolerance without a gap, from the first reading on; never beyond the last reading nor beyond the connector
     family's top.
+
+    Raises
+    ------
+    RequestError
+        The tolerances are no list of numbers between 0 and 1.
     """
+    tolerances = _checked(tolerances)
     bounds = []
     for definition in kit.definitions:
         grid = limit_grid(kit, definition)
@@ -52,6 +65,18 @@ def limits(
         reason = f"{kit.definitions[lowest].name}: {each[lowest].reason}"
         result.append((Limit(within, each[lowest].limit_hz, reason), each))
     return result
+
+
+def _checked(tolerances: Sequence[float]) -> list[float]:
+    """Return tolerances, which must be several numbers between 0 and 1."""
+    try:
+        each = [float(within) for within in tolerances]
+    except (TypeError, ValueError) as fault:
+        raise RequestError("tolerances are a list of numbers", "write limits(kit, [0.02])") from fault
+    for within in each:
+        if not 0.0 < within < 1.0:
+            raise RequestError(f"the tolerance {within:g} does not lie between 0 and 1", "try 0.02")
+    return each
 
 
 def ladder(kit: Kit) -> tuple[Rung, ...]:
@@ -91,72 +116,20 @@ def _limit(
         if kit.top_hz < definition.read_top_hz:
             return Limit(within, limit_hz, "the next mode begins, or the connector family ends, here")
         return Limit(within, limit_hz, "the readings end here")
-    if extra[place] > max(misfit[place], spread[place]):
-        return Limit(within, limit_hz, "what is typed differs from the full definition here")
-    part = extra[place] / within
-    told = f"{100 * part:.0f} %" if part < 1.0 else "all"
-    more = f", and what is typed takes {told} of the tolerance" if part >= TOLD_PART else ""
     if not kit.shares:
-        reason = "the stated bound reaches it here"
-    elif misfit[place] >= spread[place]:
-        reason = "the readings leave the model here (misfit)"
-    else:
-        reason = cause(kit, design[place])
-    return Limit(within, limit_hz, reason + more)
-
-
-def shares_at(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
-    """Return each source's part of the variance of Γ at one frequency.
-
-    Parameters
-    ----------
-    design : complex array of shape (p,)
-    shares : sequence of Share
-    """
-    return parts_of_variance(design[None], shares)[:, 0]
-
-
-def largest_source(design: ComplexArray, shares: Sequence[Share]) -> str:
-    """Say which kind of source has the largest part of the variance of Γ at one frequency, and which of that kind.
-
-    Sources whose names begin alike, "analyser residuals (directivity)" and so on, are of one kind.
-    """
-    parts = shares_at(design, shares)
-    kinds: dict[str, list[tuple[float, str]]] = {}
-    for share, part in zip(shares, parts, strict=True):
-        kind, _, member = share.name.partition(" (")
-        kinds.setdefault(kind, []).append((float(part), member.rstrip(")")))
-    kind = max(kinds, key=lambda one: sum(part for part, _ in kinds[one]))
-    total = sum(part for part, _ in kinds[kind])
-    _, most = max(kinds[kind])
-    said = f"{kind}, {100 * total:.0f} % of the variance"
-    return f"{said}, most of it {most}" if most and len(kinds[kind]) > 1 else said
-
-
-def cause(kit: Kit, design: ComplexArray) -> str:
-    """Say which kind of source has the largest part of the variance of Γ at one frequency; of given values, which.
-
-    Parameters
-    ----------
-    kit : Kit
-        With shares.
-    design : complex array of shape (p,)
-    """
-    said = largest_source(design, kit.shares)
-    given = [share for share in kit.shares if share.name == GIVEN]
-    values = [
-        (f"{parameter.label} of {definition.name}", kit.order.index(own.of))
-        for definition in kit.definitions
-        for own, parameter in zip(definition.parameters, PARAMETERS[definition.kind], strict=True)
-        if own.role == "given" and own.of in kit.order
-    ]
-    if not said.startswith(GIVEN) or not given or not values:
-        return said
-    if len(values) == 1:
-        return said.replace(GIVEN, f"{GIVEN} ({values[0][0]})", 1)
-    covariance = given[0].covariances[0]
-    # A value kept by its evidence has the evidence's error: the one that the error of Γ goes along with is the cause.
-    along = np.array([design.real, design.imag]) @ covariance
-    size = np.sqrt(np.maximum(np.diag(covariance), 1e-300))
-    most = max(values, key=lambda value: float(np.hypot(*along[:, value[1]]) / size[value[1]]))
-    return f"{said}, most of it {most[0]}"
+        part = extra[place] / max(misfit[place] + extra[place], 1e-300)
+        if part > 0.5:
+            return Limit(within, limit_hz, f"{DIFFERS}, {percent(part)} of the bound")
+        more = f"; {TYPED} {percent(part)} of the bound" if part >= TYPED_FROM else ""
+        return Limit(within, limit_hz, f"the stated bound reaches it here{more}")
+    at = np.array([max(limit_hz, grid[0])])
+    _, there = model(kit, definition, at)
+    own = float(radius(there, kit.shares)[0]), float(misfit_at(definition, at)[0])
+    typed = float(np.interp(at[0], grid, extra))
+    reason = cause(kit, there[0], *own, typed)
+    if not reason.startswith(LEAVES):
+        # A step of the misfit ends it although the parts at the limit do not show it yet.
+        beyond = parts_of_bound(kit, design[place], spread[place], misfit[place], extra[place])
+        if next(iter(beyond)) == MISFIT:
+            reason = f"{STEPS}; at the limit {reason}"
+    return Limit(within, limit_hz, reason)

@@ -6,10 +6,10 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from stdfit.circuits.standard import PARAMETERS
-from stdfit.uncertainty.budget import kind_of
+from stdfit.uncertainty.budget import kind_of, parts_of_variance
 from stdfit.validity.evidence.sharing import MISFIT
 from stdfit.validity.kit import Definition, Kit, misfit_at, model
-from stdfit.validity.limits import limits, shares_at
+from stdfit.validity.limits import limits
 
 END_OF_READINGS = "end of readings"
 NEXT_MODE = "next mode"
@@ -137,7 +137,7 @@ def _kinds_at(kit: Kit, definition: Definition, at_hz: float) -> list[str]:
     at = np.array([max(at_hz, definition.read_low_hz)])
     _, design = model(kit, definition, at)
     parts: dict[str, float] = {}
-    for share, part in zip(kit.shares, shares_at(design[0], kit.shares), strict=True):
+    for share, part in zip(kit.shares, parts_of_variance(design, kit.shares)[:, 0], strict=True):
         parts[kind_of(share.name)] = parts.get(kind_of(share.name), 0.0) + float(part)
     found = sorted((kind for kind in parts if parts[kind] >= MATTERS), key=lambda kind: -parts[kind])
     # A step of the misfit lies just above the limit.

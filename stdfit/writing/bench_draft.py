@@ -2,7 +2,7 @@
 
 import re
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 import numpy as np
@@ -10,11 +10,14 @@ import tomlkit
 
 from stdfit.base.errors import InputError, RequestError
 from stdfit.base.records import Sweep
+from stdfit.base.shown import shown
 from stdfit.data.bench_files import natural_key
 from stdfit.data.bench_table import LONGEST_NAME
 from stdfit.data.readings import read_reading
 from stdfit.data.verify import low_end, phase_at_zero
 from stdfit.data.words import quoted
+from stdfit.writing.adapter_touchstone import is_adapter_touchstone
+from stdfit.writing.export_targets import is_export
 
 SUFFIXES = (".s1p", ".s2p", ".ts", ".csv")
 KINDS = ("open", "short", "load")
@@ -33,13 +36,13 @@ class Found:
     by_name : bool
         Whether the kind was read off the names; otherwise off the readings.
     name : str
-        What its files are called, where several standards of its kind are told apart by that; else empty.
+        What the standard is called, different from all others.
     """
 
     kind: str
     files: tuple[str, ...]
     by_name: bool
-    name: str = ""
+    name: str
 
 
 def find_standards(folder: Path) -> tuple[list[Found], list[str]]:
@@ -65,19 +68,25 @@ def find_standards(folder: Path) -> tuple[list[Found], list[str]]:
     groups: dict[tuple[str, bool], list[str]] = {}
     left_out = []
     for path in candidates:
-        shown = quoted(path.name)[1:-1]
+        file = quoted(path.name)[1:-1]
         if not path.name.isprintable():
-            left_out.append(f"{shown}: its name holds a control character; rename it")
+            left_out.append(f"{file}: its name holds a control character; rename it")
+            continue
+        if is_export(path):
+            left_out.append(f"{file}: written by 'stdfit export', and no reading")
+            continue
+        if is_adapter_touchstone(path):
+            left_out.append(f"{file}: written by 'stdfit adapter', and no reading")
             continue
         try:
             sweep = read_reading(path)
         except InputError as fault:
-            left_out.append(f"{shown}: {fault.what}")
+            left_out.append(f"{file}: {fault.what}")
             continue
         named = kind_by_name(path.stem)
         kind = named or kind_by_reading(sweep)
         if kind is None:
-            left_out.append(f"{shown}: reflects neither like an open, a short nor a load")
+            left_out.append(f"{file}: reflects neither like an open, a short nor a load")
             continue
         groups.setdefault((kind, named is not None), []).append(path.name)
     if not groups:
@@ -86,7 +95,7 @@ def find_standards(folder: Path) -> tuple[list[Found], list[str]]:
             f"no readings of standards found{why}", f"put files {', '.join(SUFFIXES)} there", file=folder
         )
     found = [one for (kind, by_name), files in groups.items() for one in _standards(kind, files, by_name)]
-    return sorted(found, key=lambda one: KINDS.index(one.kind)), left_out
+    return _with_names(sorted(found, key=lambda one: KINDS.index(one.kind))), left_out
 
 
 def _standards(kind: str, files: Sequence[str], by_name: bool) -> list[Found]:
@@ -95,11 +104,23 @@ def _standards(kind: str, files: Sequence[str], by_name: bool) -> list[Found]:
     for file in files:
         stems.setdefault(re.sub(r"[\W_]*\d+$", "", Path(file).stem), []).append(file)
     if len(stems) == 1 or all(len(own) == 1 for own in stems.values()):
-        return [Found(kind, tuple(files), by_name)]
+        return [Found(kind, tuple(files), by_name, kind)]
     return [
-        Found(kind, tuple(own), by_name, re.sub(r"[\W_]+", " ", stem).strip() or kind)
+        Found(kind, tuple(own), by_name, re.sub(r"[\W_]+", " ", stem)[: LONGEST_NAME - 8].strip() or kind)
         for stem, own in stems.items()
     ]
+
+
+def _with_names(found: Sequence[Found]) -> list[Found]:
+    """Number names that several standards would have."""
+    named: list[Found] = []
+    for one in found:
+        taken, name, count = {other.name for other in named}, one.name, 1
+        while name in taken:
+            count += 1
+            name = f"{one.name} {count}"
+        named.append(replace(one, name=name))
+    return named
 
 
 def kind_by_name(stem: str) -> str | None:
@@ -126,11 +147,21 @@ def quote(text: str) -> str:
     return str(tomlkit.item(text).as_string())
 
 
-def draft(folder_name: str, found: Sequence[Found]) -> str:
-    """Return the text of a bench file with a comment for each line that a user must look at."""
+def draft(folder_name: str, found: Sequence[Found], command: str = "stdfit fit .") -> str:
+    """Return the text of a bench file with a comment for each line that a user must look at.
+
+    Parameters
+    ----------
+    folder_name : str
+        What the kit is called.
+    found : sequence of Found
+    command : str
+        What to type when that is done.
+    """
     name = "".join(letter for letter in folder_name if letter.isprintable())[:LONGEST_NAME].strip()
     lines = [
-        "# What was measured, and with what. Look at every line marked with '<--', then run: stdfit fit .",
+        "# What was measured, and with what. Look at every line marked with '<--', then run:",
+        f"# {shown(command)}",
         'format = "stdfit-bench/1"',
         "",
         "[kit]",
@@ -152,15 +183,12 @@ def draft(folder_name: str, found: Sequence[Found]) -> str:
         "source_match_db = [34, 28]",
         "reflection_tracking_db = [0.1, 0.2]",
     ]
-    counts: dict[str, int] = {}
     for one in found:
-        counts[one.kind] = counts.get(one.kind, 0) + 1
-        name = one.name or (one.kind if counts[one.kind] == 1 else f"{one.kind} {counts[one.kind]}")
         doubt = "" if one.by_name else "               # <-- guessed from the readings"
         lines += [
             "",
             "[[standard]]",
-            f"name = {quote(name)}",
+            f"name = {quote(one.name)}",
             f"kind = {quote(one.kind)}{doubt}",
             "readings = ["
             + ", ".join(quote(file) for file in one.files)

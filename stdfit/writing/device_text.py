@@ -26,7 +26,7 @@ from stdfit.validity.device.questions import (
 )
 from stdfit.validity.kit import Kit
 from stdfit.writing.aligned import aligned
-from stdfit.writing.numbers import frequency
+from stdfit.writing.numbers import frequency, good_to
 
 ROUND_GHZ = (0.01, 0.03, 0.06, 0.1, 0.3, 0.6, 1.0, 3.0, 6.0, 10.0, 20.0, 30.0, 60.0, 100.0)
 """Frequencies at which a line or two of figures are told."""
@@ -147,10 +147,7 @@ def told_if(figure: float, text: str, otherwise: str = "no bound") -> str:
 def answer_lines(found: Sequence[Answer]) -> list[str]:
     """Return the answers to questions about devices."""
     rows = [["asked", "good to", "ends because"]]
-    rows += [
-        [one.question.label, frequency(one.limit_hz) if one.limit_hz > 0.0 else "none", one.reason]
-        for one in found
-    ]
+    rows += [[one.question.label, good_to(one.limit_hz), one.reason] for one in found]
     return aligned(rows, indent="")
 
 
@@ -202,7 +199,7 @@ def as_a_kit(kit: Kit) -> list[str]:
 
 def answer_end(one: Answer) -> str:
     """Say up to where a question is answered, and what holds it back."""
-    end = f"to {frequency(one.limit_hz)}" if one.limit_hz > 0.0 else "at no frequency"
+    end = f"to {frequency(one.limit_hz)}" if one.limit_hz > 0.0 else "none"
     holds = f", held back by {one.holds_back}" if one.holds_back else ""
     return f"{end}{holds}"
 
@@ -216,4 +213,7 @@ def ideal_line(errors: DeviceMap) -> str:
         for one, hertz in zip(cost, errors.frequency_hz, strict=True)
     )
     own = ", ".join(told_if(one, f"{one:.2g}", "any amount") for one in bound)
-    return f"typed in as ideal, a device would be wrong by up to {told}; with these values by at most {own}"
+    return (
+        f"were the standards typed in as ideal, a device's Γ would be wrong by up to {told}; "
+        f"with these values by at most {own}"
+    )

@@ -4,8 +4,14 @@ from collections.abc import Iterable
 from pathlib import Path
 
 from stdfit.base.errors import RequestError
+from stdfit.base.shown import shown
+from stdfit.data.exported import FIRST_LINE
+from stdfit.data.mistaken import KINDS, MOST, kind_of_text
 from stdfit.data.ordinary import beginning
-from stdfit.writing.export import FIRST_LINE, JOINT_COLUMNS, STANDARD_COLUMNS
+from stdfit.writing.export import JOINT_COLUMNS, STANDARD_COLUMNS
+
+READINGS = (".s1p", ".s2p", ".ts")
+"""Suffixes of files that pass for readings where an export did not write them."""
 
 
 def is_export(path: Path) -> bool:
@@ -17,6 +23,8 @@ def is_export(path: Path) -> bool:
 
 def check_folder(folder: Path, names: Iterable[str]) -> None:
     """Refuse a folder in which the files cannot stand: only files of earlier exports are overwritten.
+
+    Nor do they stand beside readings: definitions have names like theirs, and would be taken for them.
 
     Raises
     ------
@@ -34,6 +42,23 @@ def check_folder(folder: Path, names: Iterable[str]) -> None:
                 "name another folder, or move it away",
                 file=path,
             )
+    for path in sorted(folder.iterdir()) if folder.is_dir() else ():
+        if _is_of_a_bench(path):
+            raise RequestError(
+                f"holds readings or a bench file ('{shown(path.name)}'), "
+                "and definitions beside them would pass for readings",
+                f"name a folder of its own, such as {shown(folder / 'standards')}",
+                file=folder,
+            )
+
+
+def _is_of_a_bench(path: Path) -> bool:
+    """Return whether a file is a reading by its name, or a bench file by what it says of itself."""
+    suffix = path.suffix.lower()
+    if suffix in READINGS:
+        return path.is_file() and not is_export(path)
+    head = beginning(path, MOST).decode("utf-8", "replace") if suffix == ".toml" else ""
+    return kind_of_text(head) == KINDS["bench"]
 
 
 def make_folder(folder: Path) -> None:

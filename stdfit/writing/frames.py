@@ -4,9 +4,8 @@ import numpy as np
 import pandas as pd
 
 from stdfit.uncertainty.budget import radius
-from stdfit.validity.evidence.sharing import MISFIT
+from stdfit.validity.evidence.sharing import MISFIT, source_parts
 from stdfit.validity.kit import Definition, Kit, curve, misfit_at, model
-from stdfit.validity.limits import shares_at
 from stdfit.writing.numbers import label_of
 
 BOUND = "bound"
@@ -45,8 +44,8 @@ def budget_table(kit: Kit, at_hz: float | None = None) -> pd.DataFrame:
     -------
     DataFrame
         Rows by standard and source, largest first; then the misfit, which is added to the rest, and the whole bound.
-        Columns: ``frequency_hz``, ``part`` (of the variance of Γ; NaN for misfit and bound), ``alone`` (95 % radius of
-        that source alone).
+        Columns: ``frequency_hz``, ``part`` (of the bound, 0 … 1; those of sources and misfit add up to 1; NaN for the
+        bound), ``alone`` (95 % radius of that source alone).
 
     Raises
     ------
@@ -62,15 +61,16 @@ def budget_table(kit: Kit, at_hz: float | None = None) -> pd.DataFrame:
 
 
 def _sources(kit: Kit, definition: Definition, hertz: float) -> list[tuple[str, float, float]]:
-    """Return name, part of the variance and 95 % radius of each source at one frequency."""
+    """Return name, part of the bound and 95 % radius of each source at one frequency."""
     at = np.array([hertz])
     _, bound = curve(kit, definition, at)
     _, design = model(kit, definition, at)
-    parts = shares_at(design[0], kit.shares) if kit.shares else np.zeros(0)
+    wrong = float(misfit_at(definition, at)[0])
+    whole = max(float(bound[0]), 1e-300)
+    parts = source_parts(design, kit.shares, bound - wrong)[:, 0] / whole
     found = [
         (share.name, float(part), float(radius(design, [share])[0]))
         for share, part in zip(kit.shares, parts, strict=True)
     ]
     found.sort(key=lambda one: -one[1])
-    wrong = float(misfit_at(definition, at)[0])
-    return [*found, (MISFIT, float("nan"), wrong), (BOUND, float("nan"), float(bound[0]))]
+    return [*found, (MISFIT, wrong / whole, wrong), (BOUND, float("nan"), float(bound[0]))]

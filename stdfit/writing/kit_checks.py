@@ -13,6 +13,7 @@ from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Definition, Kit, curve
 from stdfit.validity.limits import limits
 from stdfit.validity.thru import line_faults
+from stdfit.writing.analyser_text import analyser_faults
 from stdfit.writing.session_file import session_faults
 
 MEND = "take the file as stdfit wrote it"
@@ -72,6 +73,7 @@ def checked(kit: Kit, path: Path | str) -> Kit:
         _ancestors(kit),
         _thru(kit),
         session_faults(kit),
+        analyser_faults(kit.analyser),
         _limits_again(kit),
     ):
         for key, what in faults:

@@ -6,14 +6,20 @@ from typing import Any
 
 import tomlkit
 
+from stdfit.base.errors import KitError
+from stdfit.base.shown import shown
 from stdfit.data.ordinary import beginning
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Combination, Definition, Fitted, Kit
 from stdfit.writing.adapter_file import line_table
+from stdfit.writing.analyser_text import analyser_table
 from stdfit.writing.session_file import session_table
 from stdfit.writing.toml_tables import rows_below_each_other, table_of, tables_of
 
 FORMAT = "stdfit-kit/1"
+
+KIT_NAME = "kit.toml"
+"""What a folder's kit file is called."""
 
 HEAD = """A calibration kit: definitions of standards, how sure they are (95 %), and up to which frequency.
 Written by stdfit; the format is described in docs/files.md of the program."""
@@ -43,6 +49,8 @@ def kit_text(kit: Kit) -> str:
             checks=list(kit.checks),
         ),
     )
+    if kit.analyser is not None:
+        document.add("analyser", analyser_table(kit.analyser))
     document.add("standard", tables_of(_standard(definition) for definition in kit.definitions))
     document.add(
         "ladder",
@@ -152,6 +160,29 @@ def rows_of(triangle: Sequence[float], count: int) -> list[list[float]]:
             rows[i][j] = rows[j][i] = triangle[place]
             place += 1
     return rows
+
+
+def kit_file_of(path: Path | str) -> Path:
+    """Return a kit file: of a folder the kit.toml in it.
+
+    Raises
+    ------
+    KitError
+        The folder holds none.
+    """
+    path = Path(path)
+    try:
+        if not path.is_dir():
+            return path
+        if (path / KIT_NAME).is_file():
+            return path / KIT_NAME
+    except (OSError, ValueError):  # no possible name: who reads it says so
+        return path
+    kits = sorted(one for one in path.glob("*.toml") if is_kit_file(one))
+    mend = "name a kit file: 'stdfit fit BENCH' writes one"
+    if kits:
+        mend = f"name the kit file, such as {shown(kits[0])}"
+    raise KitError(f"the folder holds no {KIT_NAME}", mend, file=path)
 
 
 def is_kit_file(path: Path) -> bool:

@@ -15,9 +15,10 @@ from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Ancestor, Combination, Definition, Fitted, Kit, Rung, SourceFile
 from stdfit.validity.limit import Limit
 from stdfit.validity.thru import LINE_TERMS, LineTerm, Thru
+from stdfit.writing.analyser_text import AnalyserTable, analyser_from
 from stdfit.writing.decoding import decoder_fault
 from stdfit.writing.kit_checks import checked, refuse_control_characters
-from stdfit.writing.kit_file import FORMAT, rows_of, triangle_size
+from stdfit.writing.kit_file import FORMAT, kit_file_of, rows_of, triangle_size
 from stdfit.writing.session_file import MeanTable, SessionTable, session_from
 from stdfit.writing.sheet_reading import looks_like_a_sheet, parse_sheet
 
@@ -150,6 +151,7 @@ class _Whole(_Strict):
     ancestor: list[_Ancestor] = []
     thru: _Thru | None = None
     session: SessionTable | None = None
+    analyser: AnalyserTable | None = None
 
 
 _FIELDS: dict[str, type[msgspec.Struct]] = {
@@ -165,6 +167,7 @@ _FIELDS: dict[str, type[msgspec.Struct]] = {
     "ancestor": _Ancestor,
     "thru": _Thru,
     "session": SessionTable,
+    "analyser": AnalyserTable,
     "mean": MeanTable,
     **dict.fromkeys((name for name, _ in LINE_TERMS), _Term),
 }
@@ -172,14 +175,14 @@ _FIELDS: dict[str, type[msgspec.Struct]] = {
 
 
 def read_kit(path: Path | str) -> Kit:
-    """Return the kit of a kit file, or the kit as it is typed from the JSON of an entry sheet.
+    """Return the kit of a kit file or of the kit.toml in a folder, or the kit as typed from an entry sheet's JSON.
 
     Raises
     ------
     KitError
         The file cannot be read, is no kit file, or says something that cannot be.
     """
-    path = Path(path)
+    path = kit_file_of(path)
     text = whole_text(path, "kit file", LARGEST_BYTES, KitError, "write one with 'stdfit fit BENCH -o KIT'")
     return parse_sheet(text, path) if looks_like_a_sheet(text) else parse_kit(text, path)
 
@@ -256,6 +259,7 @@ def _kit(whole: _Whole, path: Path | str) -> Kit:
         measured=head.measured,
         calibration=head.calibration,
         session=None if whole.session is None else session_from(whole.session),
+        analyser=None if whole.analyser is None else analyser_from(whole.analyser),
     )
 
 

@@ -10,6 +10,7 @@ from stdfit.validity.kit import Kit, curve
 from stdfit.validity.limit import Limit
 from stdfit.validity.next_steps import next_steps
 from stdfit.writing.adapter_words import line_data
+from stdfit.writing.analyser_text import residuals_data
 
 
 def kit_data(kit: Kit) -> dict[str, Any]:
@@ -73,6 +74,7 @@ def kit_data(kit: Kit) -> dict[str, Any]:
         "next_steps": [
             {"kind": one.kind, "action": one.action, "limit_hz": one.limit_hz} for one in next_steps(kit)
         ],
+        "analyser": None if kit.analyser is None else residuals_data(kit.analyser),
         "warnings": list(kit.warnings),
         "checks": list(kit.checks),
         "ancestors": [

@@ -85,8 +85,7 @@ def plot_element(panels: Sequence[Axes] | Axes, kit: Kit, standard: str) -> Sequ
         The kit holds no such standard, or there are not as many axes as needed.
     """
     one = _evidence(kit, standard)
-    given = [panels] if isinstance(panels, Axes) else panels
-    each = [_bare(axes) for axes in _so_many(given, len(one.element.symbols))]
+    each = [_bare(axes) for axes in _so_many(panels, len(one.element.symbols))]
     with _plain_text():
         _with_key(each[-1], *draw_element(each, one))
     return panels
@@ -143,11 +142,16 @@ def _whole(kit: Kit) -> KitEvidence:
     return found
 
 
-def _so_many(given: Sequence[Axes], count: int) -> list[Axes]:
+def _so_many(given: Sequence[Axes] | Axes, count: int) -> list[Axes]:
     """Return axes, of which there must be so many."""
-    if len(given) != count:
-        raise RequestError(f"{len(given)} axes for {count} panels", f"make {count} with subplots({count})")
-    return list(given)
+    try:
+        each = [given] if isinstance(given, Axes) else list(given)
+    except TypeError:
+        each = []
+    if len(each) != count:
+        panels = "one panel" if count == 1 else f"{count} panels"
+        raise RequestError(f"{len(each)} axes for {panels}", f"make {count} with subplots({count})")
+    return each
 
 
 @contextmanager
@@ -158,6 +162,11 @@ def _plain_text() -> Iterator[None]:
 
 
 def _bare(axes: Axes) -> Axes:
+    """Turn ticks and frame off."""
+    if not isinstance(axes, Axes):
+        raise RequestError(
+            f"{type(axes).__name__} where the Axes of one panel is wanted", "give one that subplots() makes"
+        )
     axes.set_axis_off()
     return axes
 

@@ -3,13 +3,32 @@
 from collections.abc import Sequence
 
 from stdfit.circuits.units import said_unit
-from stdfit.validity.kit import Definition, Kit
+from stdfit.validity.kit import Combination, Definition, Kit
 from stdfit.validity.limit import Limit
 from stdfit.validity.next_steps import next_steps
 from stdfit.writing.adapter_words import thru_lines
 from stdfit.writing.aligned import aligned
+from stdfit.writing.analyser_text import residuals_said
 from stdfit.writing.device_text import as_a_kit
-from stdfit.writing.numbers import decimals, frequency, label_of, plus_minus, rounded
+from stdfit.writing.numbers import (
+    decimals,
+    frequency,
+    good_to,
+    half_width,
+    label_of,
+    plus_minus,
+    rounded,
+    second_digit,
+)
+
+STEPS_HEAD = (
+    "What would push it further, at least about so far without another fit ('stdfit plan BENCH' fits again, and often "
+    "finds more)"
+)
+
+ORDERS_NOTE = (
+    "other orders are told as estimated over their own best range; of nearly equal ones the simplest is taken"
+)
 
 STEPS = 2
 """So many steps that would push the limit further are told in a few lines."""
@@ -42,7 +61,7 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
             *(
                 [
                     one.name,
-                    frequency(one.limit.limit_hz),
+                    good_to(one.limit.limit_hz),
                     frequency(one.fit_top_hz),
                     one.shape,
                     one.limit.reason,
@@ -57,6 +76,8 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
     ]
     for definition in kit.definitions:
         lines += _definition(kit, definition)
+    if any(len(one.tried) > 1 for one in kit.definitions):
+        lines.append(f"  ({ORDERS_NOTE})")
     lines += ["", *ladder_lines(kit)]
     whole = as_a_kit(kit)
     if whole:
@@ -65,6 +86,8 @@ def summary(kit: Kit, *, warnings: bool = True) -> str:
     notes = notes_of(kit)
     if notes:
         lines += ["", "Notes", *(f"  {', '.join(names)}: {note}" for note, names in notes.items())]
+    if kit.analyser is not None:
+        lines += ["", f"Analyser residuals, {kit.analyser.residuals}: {residuals_said(kit.analyser)}"]
     if kit.thru is not None:
         lines += ["", *thru_lines(kit.thru)]
     if kit.ancestors:
@@ -83,22 +106,27 @@ def parameter_rows(kit: Kit, definition: Definition) -> list[list[str]]:
         if parameter.role == "unused":
             continue
         label = label_of(definition.kind, parameter.name)
-        half = max(parameter.high - parameter.value, parameter.value - parameter.low)
-        role = "" if parameter.role == "free" else parameter.role
+        half = half_width(parameter)
+        shown = plus_minus(parameter.value, half, digits)
         if parameter.role == "held":
-            rows.append([label, rounded(parameter.value, digits), said_unit(parameter.unit), role])
-        else:
-            rows.append([label, plus_minus(parameter.value, half, digits), said_unit(parameter.unit), role])
+            shown = rounded(parameter.value, digits)
+        rows.append([label, shown, said_unit(parameter.unit), parameter.role])
     for one in definition.combinations:
         rows.append(
             [
                 one.label,
-                plus_minus(one.value, one.high - one.value, 3),
+                sum_said(one),
                 one.unit,
                 "the sum that the readings fix",
             ]
         )
     return rows
+
+
+def sum_said(one: Combination) -> str:
+    """Return the value of a combination with its 95 % uncertainty."""
+    half = one.high - one.value
+    return plus_minus(one.value, half, max(3, second_digit(half)))
 
 
 def notes_of(kit: Kit) -> dict[str, list[str]]:
@@ -113,10 +141,10 @@ def notes_of(kit: Kit) -> dict[str, list[str]]:
 def _definition(kit: Kit, definition: Definition) -> list[str]:
     """Return the parameters of one standard."""
     rows = parameter_rows(kit, definition)
-    others = [
-        f"{order} {frequency(limit_hz)}" for order, limit_hz in definition.tried if order != definition.shape
-    ]
-    tried = [f"    order {definition.shape}; others would be good to: {', '.join(others)}"] if others else []
+    others = [f"{order} {good_to(hertz)}" for order, hertz in definition.tried if order != definition.shape]
+    own = f"    order {definition.shape}, good to {good_to(definition.limit.limit_hz)}; others:"
+    useful = definition.limit.limit_hz > 0.0 or any(hertz > 0.0 for _, hertz in definition.tried)
+    tried = [f"{own} {', '.join(others)}"] if others and useful else []
     unused = any(parameter.role == "unused" for parameter in definition.parameters)
     zero = ["    all others: 0"] if unused else []
     return [f"  {definition.name}", *aligned(rows, indent="    "), *zero, *tried]
@@ -137,7 +165,7 @@ def step_lines(kit: Kit) -> list[str]:
     rows = [[frequency(step.limit_hz), step.action] for step in next_steps(kit)[:STEPS]]
     if not rows:
         return []
-    return ["", "What would push it further (estimated without a new fit)", *aligned(rows)]
+    return ["", STEPS_HEAD, *aligned(rows)]
 
 
 def ladder_lines(kit: Kit) -> list[str]:
@@ -147,7 +175,7 @@ def ladder_lines(kit: Kit) -> list[str]:
     rows += [
         [
             f"{rung.within:g}",
-            *(frequency(one) if one > 0.0 else "none" for one in (rung.kit_hz, *rung.standards_hz)),
+            *(good_to(one) for one in (rung.kit_hz, *rung.standards_hz)),
         ]
         for rung in kit.ladder
     ]
@@ -158,9 +186,9 @@ def limit_lines(kit: Kit, found: Sequence[tuple[Limit, Sequence[Limit]]]) -> str
     """Return limits and reasons for each tolerance."""
     rows = [["within", "what", "good to", "ends because"]]
     for whole, each in found:
-        rows.append([f"{whole.within:g}", "kit", frequency(whole.limit_hz), whole.reason])
+        rows.append([f"{whole.within:g}", "kit", good_to(whole.limit_hz), whole.reason])
         rows += [
-            ["", definition.name, frequency(one.limit_hz), one.reason]
+            ["", definition.name, good_to(one.limit_hz), one.reason]
             for definition, one in zip(kit.definitions, each, strict=True)
         ]
     return "\n".join(aligned(rows, indent="")) + "\n"

@@ -55,7 +55,7 @@ def wear_verdict(found: Wear) -> str:
     changed = [one.pair.label for one in found.standards if one.verdict == CHANGED]
     if changed:
         advice = (
-            "type the new definition"
+            "mend what can be mended and read it again, or type the new definition"
             if found.retype
             else f"the old definition still serves to {frequency(found.old_limit_hz)}: typing anew gains little"
         )
@@ -211,6 +211,16 @@ def _notes(found: Wear) -> list[str]:
         notes.append(
             "the two share no correction that is known of: where one calibration served both, name it in both bench "
             "files, or say --same-calibration"
+        )
+    lower = [
+        one.pair.label
+        for one in found.standards
+        if one.verdict != CHANGED and one.old_limit_hz < CLEARLY * one.new_limit_hz
+    ]
+    if lower:
+        notes.append(
+            f"{', '.join(lower)}: no change was found, and the old definition is good to less far all the same, since "
+            "a change as large as the comparison's uncertainty may hide in it and is allowed for"
         )
     if found.verdict == CHANGED and not found.retype:
         notes.append(

@@ -27,7 +27,7 @@ def told(done, code):
 
 USAGE = {
     "nothing": ([], "no command given"),
-    "unknown command": (["fti"], "invalid choice: 'fti'"),
+    "unknown command": (["fti"], "no command 'fti'"),
     "unknown option": (["show", SMALL, "--colour"], "unrecognized arguments: --colour"),
     "no kit": (["show"], "required: KIT"),
     "tolerance of 1": (["limit", SMALL, "--within", "1"], "'1' does not lie between 0 and 1"),
@@ -79,7 +79,7 @@ def test_wrong_input(arguments, words, capsys, tmp_path, monkeypatch):
 
 def test_the_installed_command_ends_with_the_same_codes(command, tmp_path):
     assert "no such kit file" in told(command(tmp_path, "show", "none.toml"), 2)[0]
-    assert "invalid choice" in told(command(tmp_path, "fti"), 2)[0]
+    assert "no command 'fti'" in told(command(tmp_path, "fti"), 2)[0]
     assert command(tmp_path, "show", SMALL).returncode == 0
     version = command(tmp_path, "--version")
     assert version.returncode == 0

@@ -42,7 +42,7 @@ def test_it_writes_and_says_what_to_do_next(kit_file, command, tmp_path):
         following = shlex.split(line.strip().removeprefix("next: ").removeprefix("stdfit ").split("  ")[0])
         assert command(tmp_path, *following).returncode == 0
     kit = read_kit(kit_file)
-    sweep = read_reading(tmp_path / "deep" / "folder" / "short.s1p")
+    sweep = read_reading(tmp_path / "deep" / "folder" / "short.s1p", exported=True)
     assert sweep.frequency_hz.size == 201
     assert (sweep.frequency_hz[0], sweep.frequency_hz[-1]) == (50e6, 6e9)
     expected, _ = curve(kit, kit.definition("short"), sweep.frequency_hz)
@@ -72,7 +72,9 @@ def test_the_grid_is_the_users(kit_file, tmp_path, capsys, options, expected):
         ("joint-covariance.csv", None),
     ]
     assert all(Path(one["file"]).is_file() for one in data["files"])
-    np.testing.assert_allclose(read_reading(tmp_path / "open.s1p").frequency_hz, expected, rtol=1e-12)
+    np.testing.assert_allclose(
+        read_reading(tmp_path / "open.s1p", exported=True).frequency_hz, expected, rtol=1e-12
+    )
 
 
 def test_its_own_files_are_overwritten_with_the_same_bytes(kit_file, tmp_path, capsys):
@@ -87,7 +89,7 @@ def test_its_own_files_are_overwritten_with_the_same_bytes(kit_file, tmp_path, c
 def test_files_of_an_earlier_export_are_told(kit_file, tmp_path, capsys):
     assert main(["export", str(kit_file), str(tmp_path)]) == 0
     (tmp_path / "open.s1p").rename(tmp_path / "old.s1p")
-    (tmp_path / "reading.s1p").write_text("# Hz S RI R 50\n1 0 0\n", encoding="utf-8")
+    (tmp_path / "notes.txt").write_text("of the old open", encoding="utf-8")
     capsys.readouterr()
     assert main(["export", str(kit_file), str(tmp_path)]) == 0
     told = f"stdfit: {tmp_path / 'old.s1p'} is of an earlier export, and was left as it is\n"
@@ -104,6 +106,44 @@ def test_a_file_of_somebody_else_is_kept_and_nothing_is_written(kit_file, tmp_pa
     assert err.startswith(f"stdfit: {tmp_path / name}: exists and was not written by this command\n")
     assert names(tmp_path) == [name]
     assert (tmp_path / name).read_text(encoding="latin-1") == content
+
+
+@pytest.mark.parametrize(
+    "name, content",
+    [
+        ("open-1.s1p", "# Hz S RI R 50\n1 0 0\n"),
+        ("both.S2P", ""),
+        ("bench.toml", 'format = "stdfit-bench/1"\n'),
+        ("autumn.toml", 'format = "stdfit-bench/1"\n'),
+    ],
+)
+def test_no_definitions_beside_readings(kit_file, tmp_path, capsys, name, content):
+    (tmp_path / name).write_text(content, encoding="utf-8")
+    err = refused(capsys, "export", kit_file, tmp_path)
+    assert err == (
+        f"stdfit: {tmp_path}: holds readings or a bench file ('{name}'), and definitions beside them would pass for "
+        f"readings\nname a folder of its own, such as {tmp_path / 'standards'}\n"
+    )
+    assert names(tmp_path) == [name]
+
+
+def test_a_kit_file_beside_it_is_no_obstacle(kit_file, tmp_path):
+    (tmp_path / "kit.toml").write_bytes(Path(kit_file).read_bytes())
+    assert main(["export", str(tmp_path / "kit.toml"), str(tmp_path)]) == 0
+
+
+def test_a_definition_among_the_readings_is_refused_by_a_fit(kit_file, tmp_path, capsys):
+    bench = Path(kit_file).parent
+    assert main(["export", str(kit_file), str(tmp_path / "standards")]) == 0
+    for file in [*bench.glob("*.s1p"), bench / "bench.toml"]:
+        (tmp_path / file.name).write_bytes(file.read_bytes())
+    (tmp_path / "open-1.s1p").write_bytes((tmp_path / "standards" / "open.s1p").read_bytes())
+    capsys.readouterr()
+    err = refused(capsys, "fit", tmp_path)
+    assert err.startswith(
+        f"stdfit: {tmp_path / 'open-1.s1p'}: a definition that 'stdfit export' wrote, and no reading\n"
+    )
+    assert "kit.toml" not in names(tmp_path)
 
 
 def test_places_where_no_export_can_go(kit_file, tmp_path, capsys):
@@ -154,7 +194,7 @@ def test_a_stop_in_the_middle_leaves_whole_files_only(kit_file, tmp_path, capsys
     monkeypatch.setattr(safely, "write_whole", full)
     assert "No space left" in refused(capsys, "export", kit_file, tmp_path)
     assert names(tmp_path) == ["open.s1p", "short.s1p"]
-    assert read_reading(tmp_path / "short.s1p").frequency_hz.size == 201
+    assert read_reading(tmp_path / "short.s1p", exported=True).frequency_hz.size == 201
 
 
 def test_hostile_names_stay_in_the_folder(kit_file, tmp_path, capsys):

@@ -71,6 +71,20 @@ def test_json_says_the_same(run):
     assert [one["file"] for one in said["left_out"]] == ["bench.toml", "broken.toml"]
 
 
+def test_other_names_are_told_beside_the_columns(folder, run, tmp_path):
+    for k, path in enumerate(sorted(folder.glob("2024-*.toml"))):
+        kit = read_kit(path)
+        (tmp_path / path.name).write_text(kit_text(replace(kit, name=f"set {k % 2}")), encoding="utf-8")
+    code, out, err = run("--csv", where=tmp_path)
+    assert code == 0
+    assert out.splitlines()[0] == ",".join(COLUMNS)
+    assert (
+        err.startswith("stdfit: warning: the kits have 2 names: 'set 0', 'set 1': ") and err.count("\n") == 1
+    )
+    code, out, err = run(where=tmp_path)
+    assert "  the kits have 2 names: 'set 0', 'set 1': " in out and err == ""
+
+
 def test_csv(run):
     code, out, _ = run("--csv")
     rows = list(csv.DictReader(io.StringIO(out)))

@@ -193,6 +193,43 @@ def test_every_command_can_be_quiet(capsys):
         assert "--quiet" in capsys.readouterr().out, name
 
 
+@pytest.mark.parametrize("columns", [80, 64])
+@pytest.mark.parametrize("arguments", [("compare", "ideal"), ("limit",), ("device",), ("show",)])
+def test_every_table_fits_the_terminal(kit_file, command, arguments, columns):
+    call = (arguments[0], kit_file, *arguments[1:])
+    piped = command(kit_file.parent, *call).stdout
+    shown, code = on_terminal(COMMAND, *call, columns=columns, TERM="dumb")
+    assert code == 0
+    assert max(map(len, shown.splitlines())) <= columns
+    assert sorted(shown.split()) == sorted(piped.split())
+
+
+def test_a_wide_table_is_folded_in_its_columns():
+    table = """\
+In words:
+  standard  verdict                by chance  largest          change known within
+  open      too uncertain to tell  100 %      0.85 at 1.5 GHz  0.036 up to 3.9 GHz
+            changed                                            |Γ| = 1
+and so on"""
+    assert (
+        fold(table, 60)
+        == """\
+In words:
+  standard  verdict      by chance  largest      change
+                                                 known
+                                                 within
+  open      too          100 %      0.85 at      0.036 up to
+            uncertain               1.5 GHz      3.9 GHz
+            to tell
+            changed                              |Γ| = 1
+and so on"""
+    )
+    # Where words do not allow it, lines are folded as lines.
+    assert max(map(len, fold(table, 48).splitlines())) <= 48
+    bars = "asked                good to   ends because\n|Z| near 75 Ω within 3 %  5.41 GHz  load: most of it, and more"
+    assert max(map(len, fold(bars, 50).splitlines())) <= 50
+
+
 def test_folding():
     text = "  open   4.22 GHz  analyser residuals, 78 % of the variance, most of it tracking"
     assert fold(text, 200) == text

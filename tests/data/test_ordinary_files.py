@@ -1,16 +1,17 @@
 """Pipes, devices, files without an end, lines without an end: told at once, never waited for."""
 
+import hashlib
 import os
 import time
 from pathlib import Path
 
 import pytest
 
-from stdfit.base.errors import BenchError, ReadingError
+from stdfit.base.errors import BenchError, InputError, ReadingError
 from stdfit.data import bench_files
 from stdfit.data.bench import parse_bench
 from stdfit.data.bench_files import matching_files
-from stdfit.data.ordinary import beginning, ordinary_bytes
+from stdfit.data.ordinary import beginning, digest, ordinary_bytes
 from stdfit.data.plain_text import LONGEST_LINE, MOST_LINES
 from stdfit.data.readings import read_reading
 from stdfit.data.repeat_file import read_repeat_file
@@ -161,3 +162,15 @@ def test_numbers_that_leave_arithmetic_no_room(number, how):
     assert parse_bench(text, path).within == 0.02
     with pytest.raises(BenchError, match=f"is too {how} to be meant"):
         parse_bench(text.replace("within = 0.02", f"within = {number}"), path)
+
+
+def test_the_digest_of_a_file_is_of_all_of_it_and_of_nothing_without_an_end(tmp_path, pipe):
+    path = tmp_path / "reading.s1p"
+    path.write_bytes(b"abc" * 10**6)
+    assert digest(path) == hashlib.sha256(b"abc" * 10**6).hexdigest()
+    with path.open("r+b") as file:
+        file.truncate(2**40)
+    with pytest.raises(InputError, match="larger than 64 MB"):
+        digest(path)
+    with pytest.raises(InputError, match="not an ordinary file"):
+        digest(pipe)

@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 
 from stdfit.base.errors import ReadingError
+from stdfit.data.exported import FIRST_LINE
 from stdfit.data.readings import read_reading
 
 VALID = Path(__file__).parents[1] / "files" / "valid"
@@ -132,3 +133,25 @@ def test_measured_readings():
         sweep = read_reading(file)
         assert len(sweep.gamma) in (641, 2501)
         assert np.abs(sweep.gamma).max() < 1.05
+
+
+@pytest.mark.parametrize("above", ["", "! of May\n", "\n! \u00e9t\u00e9\r\n"])
+@pytest.mark.parametrize("code", ["utf-8", "utf-8-sig", "utf-16"])
+def test_an_exported_definition_is_no_reading(tmp_path, above, code):
+    text = (VALID / "seventy-five-ohm.s1p").read_text(encoding="utf-8")
+    path = tmp_path / "open-1.s1p"
+    path.write_bytes(f"{above}{FIRST_LINE}\n{text}".encode(code))
+    with pytest.raises(
+        ReadingError, match=r"open-1\.s1p: a definition that 'stdfit export' wrote, and no reading"
+    ):
+        read_reading(path)
+    assert len(read_reading(path, exported=True).gamma) == len(
+        read_reading(VALID / "seventy-five-ohm.s1p").gamma
+    )
+
+
+def test_words_about_an_export_are_no_mark(tmp_path):
+    text = (VALID / "seventy-five-ohm.s1p").read_text(encoding="utf-8")
+    path = tmp_path / "open-1.s1p"
+    path.write_text(f"! stdfit export\n! against{FIRST_LINE}\n{text}\n{FIRST_LINE}\n", encoding="utf-8")
+    assert len(read_reading(path).gamma)

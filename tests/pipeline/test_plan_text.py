@@ -1,6 +1,7 @@
 """The plan in words, as data, and printed by the command."""
 
 import json
+import re
 from dataclasses import replace
 
 import numpy as np
@@ -9,7 +10,7 @@ import pytest
 from stdfit.cli import main
 from stdfit.pipeline import fit_bench
 from stdfit.pipeline.plan import Remedy, ranked
-from stdfit.pipeline.plan_text import plan_data, plan_text
+from stdfit.pipeline.plan_text import HEAD, plan_data, plan_text
 from stdfit.trials import demo_scenario, draw_bench, write_bench
 
 
@@ -17,8 +18,11 @@ def test_the_plan_in_words(first):
     lines = plan_text(first, measured=True).splitlines()
     assert lines[0].startswith("within 0.02 the kit is good to ")
     assert f"What makes up the bound of '{first.standard}' at" in "\n".join(lines)
-    assert any(line.startswith("  misfit, added to the rest") for line in lines)
-    at = lines.index("What would move the limit")
+    start = lines.index("  source                             part of the bound") + 1
+    rows = [re.split(" {2,}", line.strip()) for line in lines[start : lines.index("", start)]]
+    *parts, bound = [float(row[1]) for row in rows]
+    assert sum(parts) == pytest.approx(bound, abs=1e-9)
+    at = lines.index(HEAD)
     best = ranked(first.remedies)[0][0]
     assert lines[at + 2].endswith(best.what)
     assert ("at most" in lines[at + 2]) == best.at_most

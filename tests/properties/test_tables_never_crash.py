@@ -1,5 +1,6 @@
 """Adapter, repeatability and bench files with anything in them: a record, or an input error of two printable lines."""
 
+import os
 import sys
 from pathlib import Path
 
@@ -133,13 +134,15 @@ def test_patterns_stand_for_what_the_standard_library_says(tree):
     def compare(parts):
         pattern = "/".join(parts)
         try:
-            wanted = {path.resolve() for path in file.parent.glob(pattern) if not path.is_dir()}
+            wanted = {os.path.realpath(path) for path in file.parent.glob(pattern) if not path.is_dir()}
         except (ValueError, IndexError, OSError, RuntimeError):
-            wanted = set()
+            wanted = None
         try:
-            found = {path.resolve() for path in matching_files([pattern], file, "readings")}
+            found = {os.path.realpath(path) for path in matching_files([pattern], file, "readings")}
         except InputError:
             found = set()
-        assert found in (wanted, {path for path in wanted if path.exists()}), pattern
+        # The library gives up at links in a ring, or at links to nothing; the program passes them over.
+        there = {path for path in wanted or () if os.path.exists(path)}  # noqa: PTH110
+        assert wanted is None or there <= found <= wanted, pattern
 
     compare()

@@ -30,7 +30,7 @@ def test_a_resonance_costs_the_band_above_it_and_not_the_band_below(seed):
     """Method, section 5: with the range as part of the choice the limit comes near the resonance."""
     with_it, scored = limits_of_the_open(seed, 4.5e9)
     assert 3.5e9 < with_it.limit.limit_hz < 4.4e9
-    assert with_it.limit.reason == "the readings leave the model here (misfit)"
+    assert with_it.limit.reason.startswith("the readings leave the model ")
     assert scored.limit_true
 
 

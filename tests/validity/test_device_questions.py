@@ -63,7 +63,7 @@ def test_an_error_of_the_load_is_a_match_error_too(by_hand, loss, needed):
     assert decibels(directivity) == pytest.approx(needed + more, abs=0.1)
     assert match == pytest.approx(directivity, rel=1e-9)
     assert answer.holds_back == "load"
-    assert answer.reason == "load: scale, 100 % of the variance"
+    assert answer.reason == "load: scale, 100 % of its bound"
 
 
 @pytest.mark.parametrize(("loss", "within"), [(0.0, 0.5), (10.0, 1.0), (20.0, 1.0), (20.0, 6.0), (40.0, 0.1)])
@@ -141,10 +141,8 @@ def test_a_misfit_at_one_point_alone_is_not_stepped_over(by_hand):
     kit = replace(kit, definitions=(kit.definition("open"), short, kit.definition("load")))
     answer = one(kit, phase_within(2.0))
     assert 3e9 < answer.limit_hz < 3.001e9
-    assert (answer.holds_back, answer.reason) == (
-        "short",
-        "short: the readings leave the model here (misfit)",
-    )
+    assert answer.holds_back == "short"
+    assert answer.reason.startswith("short: the readings leave the model here (misfit), ")
 
 
 WORSE = {
@@ -173,7 +171,10 @@ def test_a_misfit_that_is_much_worse_is_named(by_hand, name):
     kit = by_hand({"load": {"load.resistance_ohm": 0.01}}, misfits={name: (0.0, 0.1)})
     answer = one(kit, phase_within(2.0))
     assert 0.0 < answer.limit_hz < 6e9
-    assert (answer.holds_back, answer.reason) == (name, f"{name}: the readings leave the model here (misfit)")
+    assert answer.holds_back == name
+    assert re.fullmatch(
+        f"{name}: the readings leave the model here \\(misfit\\), (99|100) % of its bound", answer.reason
+    )
 
 
 def test_a_kit_of_which_only_bounds_are_stated(by_hand):
@@ -223,7 +224,7 @@ def test_a_bad_standard_near_the_device_is_no_closeness(by_hand):
     answer = one(by_hand(sources, turned), impedance_within(2000.0, 20.0, 50.0))
     assert 2e9 < answer.limit_hz < 6e9
     assert answer.holds_back == "short"
-    assert answer.reason == "short: short, 100 % of the variance"
+    assert answer.reason == "short: short, 100 % of its bound"
 
 
 def test_the_readings_end(by_hand):

@@ -10,14 +10,13 @@ from hypothesis import strategies as st
 
 from stdfit.circuits.residual_map import separation
 from stdfit.circuits.standard import IDEAL
-from stdfit.uncertainty.budget import Share, kind_of
+from stdfit.uncertainty.budget import Share, kind_of, parts_of_variance
 from stdfit.validity.device.bound import device_bound, device_map, three_of
 from stdfit.validity.evidence.element import element_of
 from stdfit.validity.evidence.sharing import MISFIT, STATED, shared_out
 from stdfit.validity.evidence.standard import standard_evidence
 from stdfit.validity.evidence.whole import MAGNITUDES, kit_evidence
 from stdfit.validity.kit import curve, model, total_covariance
-from stdfit.validity.limits import shares_at
 
 
 @pytest.fixture(scope="module")
@@ -39,10 +38,10 @@ def test_the_parts_add_up_to_the_bound_everywhere(modest_kit, evidence):
 
 
 def test_the_parts_go_as_the_variances_that_reasons_are_told_by(modest_kit, evidence):
-    """At one frequency they are those of `shares_at`, which the reason of a limit names."""
+    """At one frequency a kind has the variance of its sources."""
     one, place = evidence[0], 120
     _, design = model(modest_kit, modest_kit.definitions[0], one.frequency_hz[place : place + 1])
-    parts = shares_at(design[0], modest_kit.shares)
+    parts = parts_of_variance(design, modest_kit.shares)[:, 0]
     for kind, part in zip(one.kinds[:-1], one.parts[:-1, place], strict=True):
         wanted = sum(
             p for share, p in zip(modest_kit.shares, parts, strict=True) if kind_of(share.name) == kind

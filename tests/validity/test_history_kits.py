@@ -90,6 +90,17 @@ def test_counts_that_fall_are_not_used(drift):
     assert any("fall with time" in note for note in found.notes)
 
 
+def test_other_names_are_told_first(drift):
+    assert not any("names" in note for note in history(drift).notes)
+    found = history(changed(drift, 2, name="Another set"))
+    name = drift[0].kit.name
+    assert found.notes[0].startswith(
+        f"the kits have 2 names: '{name}', 'Another set': a drift or step through kits "
+    )
+    every = [replace(one, kit=replace(one.kit, name=f"set {k}")) for k, one in enumerate(drift)]
+    assert history(every).notes[0].startswith("the kits have 6 names: 'set 0', 'set 1', 'set 2', …: ")
+
+
 def test_day_of_the_fit_stands_in(usual_kit):
     assert str(day_of(replace(usual_kit, measured="2024-02-03"))) == "2024-02-03"
     assert str(day_of(replace(usual_kit, measured="last spring"))) == usual_kit.created

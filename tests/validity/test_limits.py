@@ -1,14 +1,17 @@
 """Limits of kits and standards: each cause has its words, and every route gives the same limit."""
 
+import re
 from dataclasses import replace
 
 import numpy as np
 import pytest
 
 from stdfit.base.errors import RequestError
-from stdfit.uncertainty.budget import Share
-from stdfit.validity.kit import curve, model, total_covariance
-from stdfit.validity.limits import TOLERANCES, cause, ladder, largest_source, limits, shares_at
+from stdfit.uncertainty.budget import Share, parts_of_variance, radius
+from stdfit.validity.evidence.causes import cause
+from stdfit.validity.evidence.sharing import shared_out
+from stdfit.validity.kit import curve, misfit_at, model, total_covariance
+from stdfit.validity.limits import TOLERANCES, ladder, limits
 from stdfit.writing.kit_file import kit_text
 from stdfit.writing.kit_reading import parse_kit
 
@@ -58,7 +61,10 @@ def with_misfit(kit, bound):
 def test_the_misfit_ends_it(modest_kit):
     limit = of(with_misfit(modest_kit, [0.0, 0.0, 0.5, 0.5]), "open", 0.05)
     assert 3e9 < limit.limit_hz < 3.1e9
-    assert limit.reason == "the readings leave the model here (misfit)"
+    assert re.fullmatch(
+        r"the readings leave the model (here|just above) \(misfit\)(; at the limit)?.* % of the bound.*",
+        limit.reason,
+    )
 
 
 def test_a_misfit_at_one_point_alone_is_not_stepped_over(modest_kit):
@@ -132,19 +138,67 @@ def test_an_unknown_standard(modest_kit):
     assert caught.value.mend == "it holds: open, short, load"
 
 
+def test_a_step_of_the_misfit_is_told_although_it_is_no_part_yet(modest_kit):
+    steep = replace(
+        modest_kit.definitions[0],
+        misfit_hz=np.array([50e6, 3e9, 3.0000001e9, 6e9]),
+        misfit=np.array([0.0, 0.0, 0.5, 0.5]),
+    )
+    kit = replace(modest_kit, definitions=(steep, *modest_kit.definitions[1:]))
+    bound = float(curve(kit, steep, np.array([3e9]))[1][0])
+    limit = of(kit, "open", 1.2 * bound)
+    assert limit.limit_hz == pytest.approx(3e9, rel=1e-6)
+    begins = "the readings leave the model just above (misfit); at the limit analyser residuals, "
+    assert limit.reason.startswith(begins)
+    assert limit.reason.endswith("; misfit 17 %")  # 0.2/1.2
+
+
+def test_the_parts_of_a_reason_are_those_of_the_bound_at_the_limit(modest_kit):
+    """As pictures and tables share it out; the second is told from a tenth on."""
+    kit = with_misfit(modest_kit, [0.005, 0.005, 0.005, 0.005])
+    limit = of(kit, "open", 0.02)
+    assert 0.0 < limit.limit_hz < 6e9
+    at, opened = np.array([limit.limit_hz]), kit.definition("open")
+    _, design = model(kit, opened, at)
+    kinds, parts = shared_out(design, kit.shares, radius(design, kit.shares), misfit_at(opened, at))
+    known = dict(zip(kinds, 100.0 * parts[:, 0] / parts.sum(), strict=True))
+    first, second = limit.reason.split("; ")
+    assert first.startswith(f"analyser residuals, {known['analyser residuals']:.0f} % of the bound, ")
+    assert second == f"misfit {known['misfit']:.0f} %" == "misfit 25 %"
+
+
+def test_the_largest_part_is_the_reason_even_where_the_sources_together_are_more(modest_kit):
+    shares = tuple(
+        Share(name, np.inf, np.eye(2)[None]) for name in ("connections (plane)", "noise", "drift (a)")
+    )
+    kit = replace(modest_kit, shares=shares)
+    assert cause(kit, np.array([1.0, 1.0j]), 0.012, 0.008).startswith(
+        "the readings leave the model here (misfit), 40 % of the bound; connections 20 %"
+    )
+    assert cause(kit, np.array([1.0, 1.0j]), 0.018, 0.001) == ("connections, 32 % of the bound; noise 32 %")
+
+
 def test_parts_of_the_variance(modest_kit):
     """By hand: one quantity acts on the real part, the other on the imaginary part."""
     design = np.array([1.0, 1.0j])
     one = Share("one", np.inf, np.array([[[3.0, 0.0], [0.0, 0.0]]]))
     other = Share("other", np.inf, np.array([[[0.0, 0.0], [0.0, 0.5]], [[0.0, 0.0], [0.0, 1.0]]]))
-    np.testing.assert_allclose(shares_at(design, [one, other]), [0.75, 0.25])
-    assert largest_source(design, [other, one]) == "one, 75 % of the variance"
+    np.testing.assert_allclose(parts_of_variance(design[None], [one, other])[:, 0], [0.75, 0.25])
+    kit = replace(modest_kit, shares=(other, one))
+    assert cause(kit, design, 0.02, 0.0) == "one, 75 % of the bound; other 25 %"
     half = Share("pair (a)", np.inf, np.array([[[2.0, 0.0], [0.0, 0.0]]]))
     rest = Share("pair (b)", np.inf, np.array([[[1.5, 0.0], [0.0, 0.0]]]))
     # Neither half of the pair is the largest source, but together they are.
-    assert largest_source(design, [one, half, rest]) == "pair, 54 % of the variance, most of it a"
+    kit = replace(modest_kit, shares=(one, half, rest))
+    assert cause(kit, design, 0.02, 0.0) == "pair, 54 % of the bound, most of it a; one 46 %"
+    three = [
+        Share(f"set ({k})", np.inf, np.array([[[v, 0.0], [0.0, 0.0]]]))
+        for k, v in (("a", 3.0), ("b", 4.0), ("c", 3.0))
+    ]
+    said = cause(replace(modest_kit, shares=tuple(three)), design, 0.02, 0.0)
+    assert said == "set, 100 % of the bound, above all b"
     assert total_covariance([one, other]).tolist() == [[3.0, 0.0], [0.0, 1.0]]
-    assert shares_at(np.zeros(2), [one, other]).tolist() == [0.0, 0.0]
+    assert parts_of_variance(np.zeros((1, 2)), [one, other]).tolist() == [[0.0], [0.0]]
 
 
 def test_given_values_are_told_by_name(workshop):
@@ -157,5 +211,6 @@ def test_given_values_are_told_by_name(workshop):
     ):
         kit = replace(shop, given={**given, **extra}).kit()
         _, design = model(kit, kit.definition("load"), np.array([1e8]))
-        assert cause(kit, design[0]).startswith(said)
-        assert cause(kit, design[0]).endswith("most of it resistance of load") == bool(extra)
+        reason = cause(kit, design[0], 0.02, 0.001)
+        assert reason.startswith(said)
+        assert ("most of it resistance of load" in reason) == bool(extra)

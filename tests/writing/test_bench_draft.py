@@ -7,7 +7,9 @@ from stdfit.base.errors import RequestError
 from stdfit.base.records import Sweep
 from stdfit.circuits.standard import reflection
 from stdfit.data.bench import parse_bench
+from stdfit.writing.adapter_touchstone import FIRST_LINE as ADAPTER_LINE
 from stdfit.writing.bench_draft import Found, draft, find_standards, kind_by_name, kind_by_reading
+from stdfit.writing.export import export_files
 
 GRID = np.linspace(50e6, 3e9, 41)
 VALUES = {
@@ -68,14 +70,42 @@ def test_standards_are_found_and_doubtful_files_left_out(tmp_path):
     (tmp_path / "open.txt").write_text("no readings")
     found, left_out = find_standards(tmp_path)
     assert found == [
-        Found("open", ("open-1.s1p", "open-2.s1p", "open-10.s1p"), True),
-        Found("short", ("a.s1p",), False),
-        Found("load", ("b.S1P",), False),
+        Found("open", ("open-1.s1p", "open-2.s1p", "open-10.s1p"), True, "open"),
+        Found("short", ("a.s1p",), False, "short"),
+        Found("load", ("b.S1P",), False, "load"),
     ]
     told = dict(line.split(": ", 1) for line in left_out)
     assert sorted(told) == ["between.s1p", "load.s1p", "load�[31m.s1p", "short.s1p"]
     assert told["between.s1p"] == "reflects neither like an open, a short nor a load"
     assert "control character" in told["load�[31m.s1p"]
+
+
+def test_exports_and_adapters_are_no_readings(tmp_path, usual_kit):
+    put(tmp_path, "open-1.s1p", gamma_of("open"))
+    texts = export_files(usual_kit, np.linspace(1e8, 5e9, 21))
+    for name, text in texts.items():
+        (tmp_path / name).write_text(text, encoding="utf-8")
+    # Somebody has written a line above the mark.
+    (tmp_path / "short-1.s1p").write_text("! of May\n" + texts["short.s1p"], encoding="utf-8")
+    put(tmp_path, "barrel.s1p", gamma_of("load"))
+    barrel = (tmp_path / "barrel.s1p").read_text(encoding="utf-8")
+    (tmp_path / "barrel.s1p").write_text(f"{ADAPTER_LINE}\n{barrel}", encoding="utf-8")
+    found, left_out = find_standards(tmp_path)
+    assert [(one.name, one.files) for one in found] == [("open", ("open-1.s1p",))]
+    told = dict(line.split(": ", 1) for line in left_out)
+    exported = "written by 'stdfit export', and no reading"
+    assert told == {
+        **dict.fromkeys(texts, exported),
+        "short-1.s1p": "a definition that 'stdfit export' wrote, and no reading",
+        "barrel.s1p": "written by 'stdfit adapter', and no reading",
+    }
+
+
+def test_the_draft_says_how_to_go_on(tmp_path):
+    put(tmp_path, "open.s1p", gamma_of("open"))
+    found, _ = find_standards(tmp_path)
+    assert draft("Shed", found, "stdfit fit 'a b'").splitlines()[1] == "# stdfit fit 'a b'"
+    assert "# stdfit fit a\\nb" in draft("Shed", found, "stdfit fit a\nb")
 
 
 def test_a_folder_with_nothing_in_it(tmp_path):

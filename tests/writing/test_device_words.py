@@ -77,7 +77,7 @@ def test_where_there_is_no_bound(usual_kit, errors):
     assert [name for name, value in second.items() if value is not None] == ["frequency_hz"]
     line = ideal_line(lost)
     assert line.startswith(
-        "typed in as ideal, a device would be wrong by up to 0 at 1 GHz, any amount at 3 GHz; "
+        "were the standards typed in as ideal, a device's Γ would be wrong by up to 0 at 1 GHz, any amount at 3 GHz; "
     )
     assert line.endswith(", any amount")
 
@@ -125,7 +125,7 @@ def test_a_kit_with_three_standards_is_told_as_a_kit(usual_kit):
         "|Z| near 50 Ω within 2 %",
         "phase of a full reflection within 2°",
     ]
-    assert lines[8].startswith("  typed in as ideal, a device would be wrong by up to ")
+    assert lines[8].startswith("  were the standards typed in as ideal, a device's Γ would be wrong by up to ")
     assert len(lines) == 9
 
 
@@ -137,7 +137,7 @@ def test_what_fails_at_once_is_told(usual_kit):
     poor = replace(usual_kit.definition("load"), misfit_hz=np.array([50e6, 6e9]), misfit=np.array([0.5, 0.5]))
     rest = tuple(poor if one.name == "load" else one for one in usual_kit.definitions)
     lines = as_a_kit(replace(usual_kit, definitions=rest))
-    assert "  return loss of 20 dB within 1 dB: at no frequency, held back by load" in lines
+    assert "  return loss of 20 dB within 1 dB: none, held back by load" in lines
 
 
 def test_fewer_standards_are_no_kit_for_devices(small_kit, usual_kit):

@@ -59,7 +59,7 @@ def test_touchstone_files_are_read_back_as_the_model(usual_kit, tmp_path):
     written(tmp_path, export_files(usual_kit, grid))
     assert grid.size == 201
     for one in usual_kit.definitions:
-        sweep = read_reading(tmp_path / f"{one.name}.s1p")
+        sweep = read_reading(tmp_path / f"{one.name}.s1p", exported=True)
         np.testing.assert_array_equal(sweep.frequency_hz, grid)
         np.testing.assert_allclose(sweep.gamma, curve(usual_kit, one, grid)[0], rtol=0, atol=1e-15)
         assert sweep.reference_ohm == 50.0
@@ -131,7 +131,7 @@ def test_the_head_gives_bound_limit_and_origin(small_kit):
 def test_another_reference_impedance_stands_in_the_option_line(workshop, tmp_path):
     kit = workshop(reference_ohm=75.0, connections=2).kit()
     written(tmp_path, export_files(kit, export_grid(kit)))
-    sweep = read_reading(tmp_path / "load.s1p", reference_ohm=75.0)
+    sweep = read_reading(tmp_path / "load.s1p", reference_ohm=75.0, exported=True)
     assert "# Hz S RI R 75\n" in (tmp_path / "load.s1p").read_text(encoding="utf-8")
     expected, _ = curve(kit, kit.definition("load"), sweep.frequency_hz)
     np.testing.assert_allclose(sweep.gamma, expected, rtol=0, atol=1e-15)

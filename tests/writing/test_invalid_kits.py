@@ -324,7 +324,7 @@ def command_refuses(path, capsys):
 
 def test_files_that_are_no_files(tmp_path, capsys):
     assert command_refuses(tmp_path / "none.toml", capsys) == "no such kit file"
-    assert command_refuses(tmp_path, capsys) == "not an ordinary file"
+    assert command_refuses(tmp_path, capsys) == "the folder holds no kit.toml"
     os.mkfifo(tmp_path / "pipe")
     assert command_refuses(tmp_path / "pipe", capsys) == "not an ordinary file"
     assert "cannot be read" in command_refuses(tmp_path / ("x" * 300), capsys)

@@ -8,18 +8,20 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from stdfit.validity.evidence.kept import Connections
 from stdfit.validity.evidence.sharing import STATED
 from stdfit.validity.evidence.standard import standard_evidence
 from stdfit.validity.evidence.whole import kit_evidence
 from stdfit.validity.limit import Limit
 from stdfit.validity.session import Session
 from stdfit.writing.pictures import PALETTE, kit_pictures
-from stdfit.writing.pictures.bound import OTHERS, colours_of, stacked
+from stdfit.writing.pictures.bound import OTHERS, colours_of, draw_bound, stacked
 from stdfit.writing.pictures.frame import panels, ruled
 from stdfit.writing.pictures.labels import LONGEST, drawable, pushed_apart, width_of
+from stdfit.writing.pictures.leftover import draw_residuals
 from stdfit.writing.pictures.smith import marked_frequencies
 from stdfit.writing.pictures.vector import drawing_rules, svg_element
-from stdfit.writing.pictures.words import largest_part
+from stdfit.writing.pictures.words import connection_words, largest_part
 
 SVG = "{http://www.w3.org/2000/svg}"
 NAMES = ('<svg onload="x">&amp;--', "$x_1$ короткозамыкатель номер один", "_負荷 \\alpha{")
@@ -150,11 +152,55 @@ def test_words_tell_figures(kit, pictures):
         assert one.standard is None or one.standard in one.title
     bound = next(one for one in pictures if one.name == "standard-1-bound")
     assert f"up to {kit.definitions[0].limit.limit_hz / 1e9:.2f} GHz" in bound.caption
-    assert "analyser residuals make" in bound.caption
+    assert kit.definitions[0].limit.reason in bound.caption
     assert "analyser residuals make the largest part of it there" in bound.alt
     evidence = standard_evidence(kit, kit.definitions[0])
     assert largest_part(evidence)[0] == "analyser residuals"
     assert f"{evidence.bound[0]:.2g} at 50 MHz" in bound.alt
+
+
+def test_a_connection_that_lies_clearly_apart_is_named():
+    f = np.linspace(1e9, 6e9, 11)
+    expected = np.full(f.size, 0.001)
+    near = 1e-4 * np.ones(f.size)
+    far = np.where(f >= 3e9, 2e-3, 0.0)
+    slightly = np.full(f.size, 1.2e-3)
+    assert Connections(f, np.array([near, far]) + 0j, expected).above() == (2, 3e9, 6e9)
+    assert Connections(f, np.array([near, slightly]) + 0j, expected).above() is None
+    assert Connections(f, np.array([near, np.where(f == 3e9, 0.1, 0.0)]) + 0j, expected).above() is None
+
+
+def test_the_caption_of_connections_gives_a_verdict(kit):
+    one = standard_evidence(kit, kit.definitions[0])
+    known = one.readings.connections
+    for factor, said in (
+        (0.1, "All stay within"),
+        (10.0, "lies clearly above what is expected, the dotted line, from "),
+    ):
+        changed = Connections(known.frequency_hz, factor * known.deviations, known.expected)
+        _, caption, _ = connection_words(one, changed)
+        assert said in caption
+        assert ("look at it" in caption) == (factor > 1.0)
+
+
+def test_keys_name_only_what_is_drawn(kit):
+    one = standard_evidence(kit, kit.definitions[0])
+    for misfit, told in ((0.0 * one.misfit, False), (one.misfit + 0.001, True)):
+        changed = replace(one, misfit=misfit)
+        with drawing_rules("t"):
+            _, (axes,) = panels([1.8])
+            _, labels = draw_residuals(axes, changed, one.readings)
+        assert ("misfit" in labels) == told
+    tiny = np.array([one.bound, 1e-4 * one.bound])
+    with drawing_rules("t"):
+        _, (axes,) = panels([1.8])
+        _, labels = draw_bound(
+            axes,
+            replace(one, kinds=("connections", "noise"), parts=tiny),
+            {"connections": "series-1", "noise": "series-3"},
+        )
+    assert labels[0] == "connections"
+    assert "noise" not in labels
 
 
 def test_names_of_any_kind_break_nothing(odd):

@@ -9,14 +9,15 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from stdfit.validity.analyser import Analyser
 from stdfit.validity.entry.sheet import Wanted, entry_sheet, typed_kit
 from stdfit.validity.evidence.sharing import MISFIT
 from stdfit.validity.limit import Limit
 from stdfit.validity.limits import limits
-from stdfit.validity.next_steps import ACTIONS, EVIDENCE, next_steps
+from stdfit.validity.next_steps import ACTIONS, END_OF_READINGS, EVIDENCE, NEXT_MODE, Step, next_steps
 from stdfit.writing.kit_file import kit_text
 from stdfit.writing.kit_reading import parse_kit, read_kit
-from stdfit.writing.numbers import frequency
+from stdfit.writing.numbers import frequency, good_to
 from stdfit.writing.pictures import DARK, PALETTE, kit_pictures
 from stdfit.writing.report.html import report_html
 from stdfit.writing.report.own import is_report
@@ -25,6 +26,11 @@ from stdfit.writing.summary import summary, verdict
 
 LOFT = Path(__file__).parents[2] / "kits" / "boathouse-loft-sma" / "kit.toml"
 VOID = {"meta", "br", "hr", "img", "input", "link"}
+
+
+def plain_text(text):
+    """Return a text of the page as commands print it: without what keeps lines together, and with a plain minus."""
+    return text.replace("\u00a0", " ").replace("\u2060", "").replace("−", "-")
 
 
 class Reader(HTMLParser):
@@ -65,6 +71,7 @@ class Reader(HTMLParser):
     def handle_data(self, data):
         if "style" in self.open or "svg" in self.open:
             return
+        data = plain_text(data)
         self.words.append(data)
         if "caption" in self.open:
             self.caption += data
@@ -127,43 +134,63 @@ def test_the_answer_is_that_of_show(loft, page):
 
 
 def test_why_holds_with_a_comma_in_a_name(loft):
-    given = "open: given values (resistance of load, spare), 91 % of the variance"
+    given = "open: given values (resistance of load, spare), 91 % of the bound; misfit 12 %"
     told, gloss = why(replace(loft, limit=Limit(0.02, 1e9, given)))
     assert told == (
-        "It ends with “open”: the largest part of its uncertainty there is given values (resistance of load, spare) "
-        "(91 % of the variance)."
+        "It ends with “open”: the largest part of its bound there is given values (resistance of load, spare) "
+        "(91 %; misfit 12 %)."
     )
     assert gloss.startswith("Given values are")
+
+
+@pytest.mark.parametrize(
+    "reason",
+    [
+        "the readings leave the model here (misfit), 55 % of the bound; noise 20 %",
+        "the readings leave the model just above (misfit); at the limit noise, 70 % of the bound; misfit 17 %",
+        "what is typed differs from the full definition here, 60 % of the bound",
+        "the readings end here",
+    ],
+)
+def test_what_is_no_source_is_told_as_it_is(loft, reason):
+    told, gloss = why(replace(loft, limit=Limit(0.02, 1e9, f"open: {reason}")))
+    assert told == f"It ends with “open”: {reason}."
+    assert gloss
 
 
 @pytest.mark.parametrize("kind", sorted({*ACTIONS, *EVIDENCE} - {MISFIT}))
 def test_every_kind_of_source_is_explained(loft, kind):
     """Those that steps are known for; each has words of its own."""
-    _, gloss = why(replace(loft, limit=Limit(0.02, 1e9, f"open: {kind}, 91 % of the variance")))
+    _, gloss = why(replace(loft, limit=Limit(0.02, 1e9, f"open: {kind}, 91 % of the bound")))
     assert gloss
     assert [text for _, text in GLOSSES].count(gloss) == 1
 
 
 def test_values_are_those_of_show(loft, page):
-    """Single values and sums with ± 95 %, and what is typed is the value before the ±."""
+    """What is typed is the value before the ±, beside its 95 % uncertainty; roles and sums are the same."""
     text = summary(loft)
     below = text.partition("\nWhat to type in")[2].partition("\n\n")[0].split("\n")[1:]
-    singles, sums = table_of(page, "Single values"), table_of(page, "Sums")
-    told = {row[0]: row for row in singles + sums}
+    sums = {row[0]: row for row in table_of(page, "Sums")}
+    head, *kinds = table_of(page, "Where the values come from")
+    roles = {row[0]: dict(zip(head[1:], row[1:], strict=True)) for row in kinds}
     typed = {caption: {row[0]: row for row in rows} for caption, rows in page.tables.items()}
     looked_at = 0
     for line in below:
-        if line.startswith("    order") or line.startswith("    all others"):
+        if line.startswith(("    order", "    all others", "  (")):
             continue
         if not line.startswith("    "):
             name = line.strip()
             continue
         label, value, *rest = re.split(" {2,}", line.strip())
-        row = told[f"{name}: {label}"]
-        assert row[1] == value
-        assert row[2].replace("10⁻", "1e-")[:3] == rest[0][:3]
-        if " + " not in label:
-            assert typed[name][label][1] == value.partition(" ± ")[0]
+        if rest[-1] == "the sum that the readings fix":
+            assert sums[f"{name}: {label}"][1] == f"{value} {rest[0]}"
+            assert f"The readings fix {label} = {value} {rest[0]}" in page.text
+        else:
+            number, half, own = typed[name][label][1:]
+            assert f"{number} {half}".strip() == value
+            shown = {"10⁻¹⁵ F": "fF", "10⁻¹² H": "pH"}.get(own, own)
+            assert shown.replace("10⁻", "1e-")[:3] == rest[0][:3]
+            assert label in roles[name][rest[1]].split(", ")
         looked_at += 1
     assert looked_at >= 14
 
@@ -171,8 +198,8 @@ def test_values_are_those_of_show(loft, page):
 def test_everything_has_to_be_typed(loft, page):
     """Terms that a standard does not have are typed as zeros."""
     for one in loft.definitions:
-        rows = page.tables[one.name][1:]
-        assert len(rows) == len(one.parameters)
+        rows = page.tables[one.name][1 : 1 + len(one.parameters)]
+        assert len(page.tables[one.name]) == 1 + len(one.parameters) + len(one.combinations)
         unused = [row for row, p in zip(rows, one.parameters, strict=True) if p.role == "unused"]
         assert {row[1] for row in unused} == {"0"}
 
@@ -184,6 +211,7 @@ def test_ladder_and_devices_are_those_of_show(loft, page):
     assert table_of(page, "What is left in an analyser") == devices[:4]
     for line in devices[4:7]:
         asked, _, answered = line[0].partition(": to ")
+        assert answered
         (row,) = [row for row in table_of(page, "Up to where") if row[0] == asked]
         assert row[1] == answered.partition(", held back by ")[0]
         assert row[2].startswith(answered.partition(", held back by ")[2])
@@ -193,21 +221,70 @@ def test_ladder_and_devices_are_those_of_show(loft, page):
 def test_the_budget_adds_up_and_agrees_with_the_reason(loft, page):
     for one in loft.definitions:
         rows = table_of(page, f"What makes up the bound of {one.name} at")[1:]
-        *sources, together, misfit, bound = rows
-        assert float(together[2]) + float(misfit[2]) == pytest.approx(float(bound[2]), abs=1.01e-4)
-        if " of the variance" not in one.limit.reason:
+        *parts, bound = rows
+        assert sum(float(row[1]) for row in parts) == pytest.approx(float(bound[1]), abs=1e-9)
+        if " of the bound" not in one.limit.reason:
             continue
-        kind, percent = re.match(r"(.*), (\d+) % of the variance", one.limit.reason).groups()
-        parts = [float(row[1].split()[0]) for row in sources if row[0].startswith(kind) and "<" not in row[1]]
-        assert sum(parts) == pytest.approx(float(percent), abs=2.0)
-        # Between the two points of the grid next to the limit the bound passes the tolerance.
-        assert float(bound[2]) == pytest.approx(loft.within, rel=0.05)
+        kind, percent = re.match(r"(.*?), (\d+) % of the bound", one.limit.reason).groups()
+        own = [float(row[2].split()[0]) for row in parts if row[0].startswith(kind) and "<" not in row[2]]
+        assert sum(own) == pytest.approx(float(percent), abs=2.0)
+        for name, told in re.findall(r"; (\w+) (\d+) %", one.limit.reason):
+            assert sum(float(row[2].split()[0]) for row in parts if row[0].startswith(name)) == pytest.approx(
+                float(told), abs=2.0
+            )
+        assert float(bound[1]) == loft.within
 
 
 def test_steps_are_those_of_the_estimate(loft, page):
     rows = table_of(page, "What would push the limit")[1:]
     assert [row[1] for row in rows] == [frequency(one.limit_hz) for one in next_steps(loft)]
     assert len(rows) >= 1
+
+
+def test_the_best_step_stands_beside_the_answer(loft, html, page):
+    best = next_steps(loft)[0]
+    line = page.text.partition("Next : ")[2]
+    said, _, reach = line.partition(" → at least about ")
+    assert best.action.startswith(said[:1].lower() + said[1:])
+    assert reach.startswith(frequency(best.limit_hz))
+    assert page.text.index("Next : ") < page.text.index("What to type in")
+    assert '<a href="#next">' in html
+
+
+@pytest.mark.parametrize("kind, said", [(END_OF_READINGS, "Read on further up"), (NEXT_MODE, None)])
+def test_the_step_of_a_kit_at_its_end(loft, plain, monkeypatch, kind, said):
+    step = Step(kind, "the limit is what it is", 7e9)
+    monkeypatch.setattr("stdfit.writing.report.contents.next_steps", lambda kit: (step,))
+    text = Reader(report_html(loft)).text
+    assert ("Next : " in text) == (said is not None)
+    assert said is None or f"Next : {said} → at least about 7 GHz" in text
+
+
+def test_the_chosen_order_has_the_limit_of_the_kit(loft, page):
+    """The scan over ranges estimates its own: 4.26 GHz, say, where the kit is good to 4.22."""
+    for one in loft.definitions:
+        rows = table_of(page, f"Orders that were tried for {one.name}")[1:]
+        (chosen,) = [row for row in rows if row[2] == "chosen"]
+        assert chosen[:2] == [one.shape, good_to(one.limit.limit_hz)]
+        others = {order: good_to(hertz) for order, hertz in one.tried if order != one.shape}
+        assert {row[0]: row[1] for row in rows if not row[2]} == others
+    assert "of nearly equal ones the simplest is taken" in page.text
+    assert "even C0 and C2" in page.text
+
+
+def test_numbers_keep_to_their_units_and_minus_is_one_sign(html):
+    shown = re.sub(r"<(style|svg).*?</\1>|<title>.*?</title>|<meta[^>]*>", "", html, flags=re.DOTALL)
+    assert not re.search(r"\d (?:GHz|MHz|ps|dB|Ω|%)", shown)
+    assert not re.search(r"[ >]-\d", shown)
+    assert "|\u2060Γ\u2060|" in shown
+
+
+def test_residuals_are_in_the_record(loft, plain):
+    told = Analyser("assumed", [1e9, 6e9], [36.0, 32.0], [34.0, 28.0], [0.1, 0.2])
+    read = Reader(report_html(replace(loft, analyser=told)))
+    rows = table_of(read, "What the correction of the analyser left, assumed")
+    assert rows[2] == ["6 GHz", "32 dB", "28 dB", "± 0.2 dB"]
+    assert "Nobody stated them" in read.text
 
 
 def test_where_no_step_helps_the_page_says_so(loft, plain, monkeypatch):
@@ -231,7 +308,7 @@ def test_pictures_stand_with_captions_and_alternative_text(loft, html, page):
     assert all(given["role"] == "img" for given in drawn)
     assert html.count("<figcaption>") == len(pictures) >= 3
     for one in pictures:
-        assert one.caption in page.text
+        assert plain_text(one.caption) in page.text
 
 
 def test_it_is_one_well_formed_file_that_asks_for_nothing(html, page):
@@ -320,7 +397,7 @@ def test_a_kit_that_was_read_back_from_a_sheet(loft, plain):
     read = Reader(report_html(typed_kit(entry_sheet(loft, Wanted()))))
     assert not any(caption.startswith("What makes up") for caption in read.tables)
     assert "Nothing can be estimated from this kit file alone" in read.text
-    assert not any(caption.startswith("Single values") for caption in read.tables)
+    assert not any(caption.startswith("Where the values") for caption in read.tables)
     assert "good to" in read.text.lower()
 
 

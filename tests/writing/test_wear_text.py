@@ -54,12 +54,25 @@ def test_the_last_line_says_what_to_do(found):
         replace(found, old_limit_hz=1e9, new_limit_hz=2e9),
         replace(found, old_limit_hz=1.9e9, new_limit_hz=2e9),
     )
-    assert wear_verdict(far) == "changed: open; type the new definition"
+    assert wear_verdict(far) == (
+        "changed: open; mend what can be mended and read it again, or type the new definition"
+    )
+
     assert "still serves to 1.9 GHz" in wear_verdict(near)
     same = with_open(found, verdict="not changed")
     assert wear_verdict(same) == "not changed: no need to type anything anew"
     unsure = with_open(found, verdict="too uncertain to tell")
     assert wear_verdict(unsure).startswith("too uncertain to tell: a change of open by more than 0.02")
+
+
+def test_what_falls_without_a_change_is_explained(found):
+    standing = [replace(one, old_limit_hz=one.new_limit_hz) for one in found.standards]
+    fallen = [replace(one, old_limit_hz=0.5 * one.new_limit_hz) for one in standing]
+    assert [one.verdict for one in found.standards] == ["changed", "not changed", "not changed"]
+    for of_short, told in ((standing[1], []), (fallen[1], ["note: short: no change was found"])):
+        some = replace(found, standards=(fallen[0], of_short, standing[2]))
+        lines = wear_text(some).splitlines()
+        assert [line.partition(",")[0] for line in lines if "no change was found" in line] == told
 
 
 def test_data_and_rows_say_the_same(found):

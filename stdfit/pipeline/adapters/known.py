@@ -1,6 +1,5 @@
 """Adapters that a bench names: determined before, or estimated; what they do, and how sure that is."""
 
-import hashlib
 from collections.abc import Collection, Sequence
 from dataclasses import dataclass
 
@@ -11,6 +10,7 @@ from stdfit.base.errors import BenchError, RequestError
 from stdfit.circuits.two_port import LineTwoPort, line_two_port, loss_of_decibels, terms_by_s
 from stdfit.data.bench import Bench
 from stdfit.data.bench_records import AdapterEntry, Given
+from stdfit.data.ordinary import digest
 from stdfit.data.words import quoted
 from stdfit.uncertainty.region import CIRCULAR
 from stdfit.uncertainty.smooth import bumps, correlation_lengths
@@ -181,7 +181,7 @@ def _known(bench: Bench, entry: AdapterEntry) -> Known:
                 file=bench.path,
                 key=f"{key}.file",
             )
-        return Determined(adapter, hashlib.sha256(entry.file.read_bytes()).hexdigest())
+        return Determined(adapter, digest(entry.file))
     if entry.delay_ps is None:
         raise BenchError(
             "nothing is said of this adapter",

@@ -1,6 +1,5 @@
 """The references of a bench of raw readings: standards whose definition comes from a kit file."""
 
-import hashlib
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -10,6 +9,7 @@ import numpy as np
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.base.errors import BenchError
 from stdfit.data.bench import Bench, StandardEntry
+from stdfit.data.ordinary import digest
 from stdfit.data.words import quoted, suggestion
 from stdfit.validity.ancestry import Origin
 from stdfit.validity.kit import Definition, curve, model
@@ -131,7 +131,7 @@ def _read(path: Path, bench: Bench, entry: StandardEntry) -> Origin:
             "an entry sheet does not hold how the errors of its standards go together",
             "name the kit file that it was made from",
         )
-    return Origin(kit, hashlib.sha256(path.read_bytes()).hexdigest())
+    return Origin(kit, digest(path))
 
 
 def _reference(bench: Bench, entry: StandardEntry, origin: Origin) -> Reference:

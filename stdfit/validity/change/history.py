@@ -7,12 +7,16 @@ from datetime import date
 import numpy as np
 
 from stdfit.base.errors import RequestError
+from stdfit.data.words import quoted
 from stdfit.uncertainty.region import student
 from stdfit.validity.change.history_kits import MONTH, Dated, as_day, comparable, day_of
 from stdfit.validity.change.history_lines import Line, acts, lines_of
 from stdfit.validity.change.time_left import TimeLeft, time_left
 from stdfit.validity.change.trend import ALARM, STEP, Trend, own_uncertainty, trend
 from stdfit.validity.kit import Kit
+
+NAMES_TOLD = 3
+"""Different names of kits that are told one by one."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -145,7 +149,7 @@ def history(
     courses = tuple(_course(line, newest, alarm, tolerance, to_hz) for line in gathered)
     return History(
         *(tuple(kits), tuple(aside), courses, tolerance, alarm),
-        (*_never_served(courses, tolerance), *_notes(kits, courses, same_calibration)),
+        (*other_names(kits), *_never_served(courses, tolerance), *_notes(kits, courses, same_calibration)),
     )
 
 
@@ -178,6 +182,19 @@ def _course(line: Line, newest: Kit, alarm: float, within: float, to_hz: float |
     return Course(line.definition.name, one.label, one.unit, line.per, points, said, left, line.common)
 
 
+def other_names(kits: Sequence[Dated]) -> tuple[str, ...]:
+    """Say that kits have different names, since a drift through kits of other standards means nothing."""
+    names = list(dict.fromkeys(one.kit.name for one in kits))
+    if len(names) == 1:
+        return ()
+    told = ", ".join(quoted(name) for name in names[:NAMES_TOLD])
+    more = ", …" if len(names) > NAMES_TOLD else ""
+    return (
+        f"the kits have {len(names)} names: {told}{more}: a drift or step through kits of other standards means "
+        "nothing; leave in the folder what is of one set",
+    )
+
+
 def _never_served(courses: Sequence[Course], within: float) -> tuple[str, ...]:
     """Say of which standards no time is told, since their bound is above the tolerance from the first reading on."""
     names = dict.fromkeys(one.standard for one in courses if one.left is None and one.trend.verdict != STEP)
@@ -205,8 +222,10 @@ def _notes(kits: Sequence[Dated], courses: Sequence[Course], same_calibration: b
             "--same-calibration makes the trends surer"
         )
     fitted = [one.file for one in kits if as_day(one.kit.measured) is None]
-    if fitted and any(course.per == MONTH for course in courses):
-        notes.append(f"no date of measurement, the date of the fit is taken: {', '.join(fitted)}")
+    if fitted:
+        notes.append(
+            f"placed by the day of the fit, since no day of measurement (kit.date) is named: {', '.join(fitted)}"
+        )
     lengths = {(course.standard, course.label): len(course.points) for course in courses}
     notes += [
         f"{standard}, {label}: only in {count} of {len(kits)} kits"

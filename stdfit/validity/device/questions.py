@@ -17,9 +17,9 @@ from stdfit.validity.device.bound import (
     part_of,
     three_of,
 )
+from stdfit.validity.evidence.causes import cause
 from stdfit.validity.kit import Kit
 from stdfit.validity.limit import first_gap
-from stdfit.validity.limits import cause
 
 GRID_POINTS = 150
 """Frequencies at which a bound is compared with what is allowed, besides those of the misfits."""
@@ -211,9 +211,8 @@ def _culprit(kit: Kit, there: DeviceMap, question: Question) -> tuple[str, str]:
         return name, "the stated bound reaches it here"
     own: ComplexArray = weights[0, 0, worst]
     misfit = float(np.abs(own) * there.misfits[0, worst])
-    if 2.0 * misfit >= float(device_bound(_kept(there, [k == worst for k in range(3)]), device)[0, 0]):
-        return name, "the readings leave the model here (misfit)"
-    return name, cause(kit, own * there.designs[0, worst])
+    bound = float(device_bound(_kept(there, [k == worst for k in range(3)]), device)[0, 0])
+    return name, cause(kit, own * there.designs[0, worst], bound - misfit, misfit, of="its bound")
 
 
 def _kept(errors: DeviceMap, keep: Sequence[bool]) -> DeviceMap:

@@ -11,6 +11,9 @@ from stdfit.uncertainty.region import radius_95
 from stdfit.validity.kit import Definition, Kit, model
 from stdfit.validity.session import MeanReading, Session
 
+OFTEN, CLEARLY = 0.1, 1.3
+"""A connection is told that lies by this factor above what is expected at more than this part of the frequencies."""
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Connections:
@@ -39,6 +42,20 @@ class Connections:
         away = np.abs(self.deviations)
         k, i = np.unravel_index(int(np.argmax(away)), away.shape)
         return int(k) + 1, float(away[k, i]), float(self.frequency_hz[i])
+
+    def above(self) -> tuple[int, float, float] | None:
+        """Return the connection that lies most above what is expected, counted from 1, and between which Hz.
+
+        None where none is clearly above it at more than a tenth of the frequencies: one of twenty may be above by
+        chance, and only one of a hundred by 1.3 times.
+        """
+        higher = np.abs(self.deviations) > CLEARLY * self.expected
+        often = higher.mean(axis=1)
+        k = int(np.argmax(often))
+        if often[k] <= OFTEN:
+            return None
+        places = np.flatnonzero(higher[k])
+        return k + 1, float(self.frequency_hz[places[0]]), float(self.frequency_hz[places[-1]])
 
 
 @dataclass(frozen=True, slots=True, eq=False)

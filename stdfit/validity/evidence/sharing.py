@@ -14,6 +14,25 @@ STATED = "stated bound"
 """What stands for all parts where a kit states bounds and no sources, as an entry sheet that was read back does."""
 
 
+def source_parts(design: ComplexArray, shares: Sequence[Share], u95: FloatArray) -> FloatArray:
+    """Return what each source takes of the 95 % radius, U95·v_k/Σv, in the order of the shares.
+
+    Parameters
+    ----------
+    design : complex array of shape (n, p)
+        Derivatives of Γ by the quantities of the joint covariance.
+    shares : sequence of m Share
+    u95 : array of shape (n,)
+        The radius.
+
+    Returns
+    -------
+    array of shape (m, n)
+        Parts that add up to the radius.
+    """
+    return parts_of_variance(design, shares) * u95 if shares else np.zeros((0, design.shape[0]))
+
+
 def shared_out(
     design: ComplexArray, shares: Sequence[Share], u95: FloatArray, misfit: FloatArray
 ) -> tuple[tuple[str, ...], FloatArray]:
@@ -39,7 +58,7 @@ def shared_out(
     if not shares:
         return (STATED,), misfit[None].copy()
     kinds = tuple(dict.fromkeys(kind_of(share.name) for share in shares))
-    each = parts_of_variance(design, shares) * u95
+    each = source_parts(design, shares, u95)
     gathered = [
         sum(part for share, part in zip(shares, each, strict=True) if kind_of(share.name) == kind)
         for kind in kinds

@@ -25,6 +25,8 @@ class StandardEvidence:
     name, kind : str
     within, limit_hz, fit_low_hz, fit_top_hz : float
         The tolerance, up to where it is kept, and the range of the fit.
+    reason : str
+        Why the limit is where it is.
     frequency_hz : array of shape (n,)
         From the first reading to the last.
     ideal : complex
@@ -45,6 +47,7 @@ class StandardEvidence:
     kind: str
     within: float
     limit_hz: float
+    reason: str
     fit_low_hz: float
     fit_top_hz: float
     frequency_hz: FloatArray
@@ -88,6 +91,7 @@ def standard_evidence(kit: Kit, definition: Definition) -> StandardEvidence:
         kind=definition.kind,
         within=kit.within,
         limit_hz=definition.limit.limit_hz,
+        reason=definition.limit.reason,
         fit_low_hz=definition.fit_low_hz,
         fit_top_hz=definition.fit_top_hz,
         frequency_hz=grid,

@@ -17,6 +17,9 @@ OTHERS = "other sources"
 SEEN = 0.01
 """A kind that is nowhere more than this part of the bound is one of the others."""
 
+TOLD = 0.01
+"""An area that is nowhere higher than this part of the axis has no entry in the key."""
+
 HIGHEST = 4.0
 """The axis ends at this multiple of the tolerance, or of the smallest bound, if that is less than the largest bound."""
 
@@ -54,19 +57,21 @@ def draw_bound(
     areas = stacked(one, colours)
     ruled(axes, "bound on |error of Γ| (95 %)", (0.0, highest(one)), float(one.frequency_hz[-1]))
     handles: list[Artist] = []
+    names: list[str] = []
     base = np.zeros(x.size)
-    for _, colour, part in areas:
-        handles.append(
-            axes.fill_between(
-                x, base, base + part, facecolor=PALETTE[colour], edgecolor=PALETTE["paper"], linewidth=0.4
-            )
+    for label, colour, part in areas:
+        area = axes.fill_between(
+            x, base, base + part, facecolor=PALETTE[colour], edgecolor=PALETTE["paper"], linewidth=0.4
         )
+        if (part > TOLD * highest(one)).any():  # else it is drawn too thin to be seen
+            handles.append(area)
+            names.append(label)
         base = base + part
     handles += axes.plot(x, one.bound, color=PALETTE["ink"], linewidth=1.3)
     axes.axhline(one.within, color=PALETTE["paper"], linewidth=2.6)  # so that the dots show on areas
     within = axes.axhline(one.within, color=PALETTE["ink"], linewidth=1.1, linestyle=DOTTED)
     mark_limit(axes, one.limit_hz, size)
-    return [*handles, within], [*(label for label, _, _ in areas), "bound", f"tolerance {one.within:g}"]
+    return [*handles, within], [*names, "bound", f"tolerance {one.within:g}"]
 
 
 def highest(one: StandardEvidence) -> float:

@@ -65,15 +65,19 @@ def draw_absorbing(magnitude: Axes, plane: Axes, one: StandardEvidence) -> tuple
     ruled(
         plane, "real and imaginary part of Γ", _seen([real, imag, read.real, read.imag], bands, one), top_hz
     )
-    handles = [_points(magnitude, at, np.abs(read)), *_draw(magnitude, x, length, ends, "series-1")]
+    points = _points(magnitude, at, np.abs(read))
+    line, band = _draw(magnitude, x, length, ends, "series-1")
     _points(plane, at, read.real)
-    _points(plane, at, read.imag)
     _draw(plane, x, real, bands[0], "series-1")
     other = _draw(plane, x, imag, bands[1], "series-3", linestyle=DASHED)
     mark_limit(magnitude, one.limit_hz, size)
+    second = _points(plane, at, read.imag, "series-5")
     mark_limit(plane, one.limit_hz, size, told=False)
-    handles.append(other[0])
-    return _with_key(one, handles, ["mean reading", "model", "95 % bound", "model, imaginary part"])
+    return _with_key(
+        one,
+        [points, second, line, other[0], band],
+        ["reading", "reading, imaginary part", "model", "model, imaginary part", "95 % bound"],
+    )
 
 
 def decibels(length: FloatArray) -> FloatArray:
@@ -89,8 +93,8 @@ def _with_key(
     one: StandardEvidence, handles: list[Artist], labels: list[str]
 ) -> tuple[list[Artist], list[str]]:
     """Return the key, without the readings where there are none."""
-    start = 1 if one.readings is None else 0
-    return handles[start:], labels[start:]
+    kept = [k for k, label in enumerate(labels) if one.readings is not None or "reading" not in label]
+    return [handles[k] for k in kept], [labels[k] for k in kept]
 
 
 def _draw(
@@ -101,9 +105,9 @@ def _draw(
     return [line, band]
 
 
-def _points(axes: Axes, x: FloatArray, value: FloatArray) -> Artist:
+def _points(axes: Axes, x: FloatArray, value: FloatArray, colour: str = "series-2") -> Artist:
     step = max(1, -(-x.size // MOST_POINTS))
-    return dots(axes, x[::step], value[::step], "series-2", zorder=2.2)
+    return dots(axes, x[::step], value[::step], colour, zorder=2.2)
 
 
 def _seen(

@@ -102,4 +102,4 @@ def pair_labels(one: KitEvidence, place: int) -> tuple[str, str]:
 
 def longest_label(one: KitEvidence) -> float:
     """Return the width in inches of the longest name as it is drawn, with the dash behind it."""
-    return max(width_of(f"{label} –") for label in labels_of(one)) / 72.0
+    return max(width_of(f"{label} –") for label in labels_of(one)) / 72.0 + 0.05

@@ -8,7 +8,7 @@ from matplotlib.figure import Figure
 from stdfit.validity.evidence.standard import StandardEvidence, standard_evidence
 from stdfit.validity.evidence.whole import KitEvidence, kit_evidence
 from stdfit.validity.kit import Kit
-from stdfit.writing.pictures import words
+from stdfit.writing.pictures import whole_words, words
 from stdfit.writing.pictures.bound import colours_of, draw_bound
 from stdfit.writing.pictures.deviation import draw_absorbing, draw_reflecting
 from stdfit.writing.pictures.devices import draw_devices, draw_separation, longest_label
@@ -65,9 +65,9 @@ def _of_whole(one: KitEvidence) -> Iterator[Picture]:
         draw_separation(axes, one)
         return figure
 
-    yield _picture("kit-devices", words.device_words(one), devices)
-    yield _picture("kit-chart", words.smith_words(one), chart)
-    yield _picture("kit-separation", words.separation_words(one), separation)
+    yield _picture("kit-devices", whole_words.device_words(one), devices)
+    yield _picture("kit-chart", whole_words.smith_words(one), chart)
+    yield _picture("kit-separation", whole_words.separation_words(one), separation)
 
 
 def _of_standard(place: int, one: StandardEvidence, colours: Mapping[str, str]) -> Iterator[Picture]:
@@ -110,7 +110,7 @@ def _of_standard(place: int, one: StandardEvidence, colours: Mapping[str, str]) 
     yield _picture(f"standard-{place}-element", words.element_words(one), element)
 
 
-def _picture(name: str, said: words.Words, drawing: Drawing) -> Picture:
+def _picture(name: str, said: whole_words.Words, drawing: Drawing) -> Picture:
     title, caption, alt = said
     with drawing_rules(name):
         svg = svg_element(drawing(), name)

@@ -20,6 +20,9 @@ from stdfit.writing.pictures.palette import PALETTE
 LONGEST = 18
 """Characters of a name that are drawn."""
 
+BESIDE, MOVED = 0.1, 0.35
+"""Inches from the end of a line to its label; a label moved by more than this part of its height has a leader."""
+
 ROW, SAMPLE, GAP = 13.0, 15.0, 11.0
 """Points: height of a row of a key, width of its samples, room between entries."""
 
@@ -107,17 +110,33 @@ def at_the_end(
     """
     width, height = size_of(axes)
     rows = max(label.count("\n") + 1 for label in labels)
-    places = pushed_apart(np.clip(ends, 0.0, 1.0), (1.3 * rows + 0.15) * SMALL / 72.0 / height)
+    shown = np.clip(ends, 0.0, 1.0)
+    gap = (1.3 * rows + 0.15) * SMALL / 72.0 / height
+    places = pushed_apart(shown, gap)
+    right = 1.0 + BESIDE / width
+    leaders: list[Artist] = []
+    for end, place, colour in zip(shown, places, colours, strict=True):
+        if abs(place - end) > MOVED * gap:  # a label that was pushed away is led back to its line
+            leaders += axes.plot(
+                *([1.0, 1.0 + 0.75 * BESIDE / width], [end, place]),
+                transform=axes.transAxes,
+                color=PALETTE[colour],
+                linewidth=0.6,
+                clip_on=False,
+            )
     return [
-        axes.text(
-            *(1.0 + 0.05 / width, place, label),
-            transform=axes.transAxes,
-            color=PALETTE[colour],
-            fontsize=SMALL,
-            va="center",
-            ha="left",
-        )
-        for place, label, colour in zip(places, labels, colours, strict=True)
+        *leaders,
+        *(
+            axes.text(
+                *(right, place, label),
+                transform=axes.transAxes,
+                color=PALETTE[colour],
+                fontsize=SMALL,
+                va="center",
+                ha="left",
+            )
+            for place, label, colour in zip(places, labels, colours, strict=True)
+        ),
     ]
 
 

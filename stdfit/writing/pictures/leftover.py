@@ -29,15 +29,18 @@ def draw_residuals(
     x, at = one.frequency_hz / size, readings.frequency_hz[::step] / size
     left, end = readings.residual[::step], shown_to(one, readings)
     ruled(axes, "reading − model", (-end, end), float(one.frequency_hz[-1]))
+    wide = [("bound", one.bound, "rest", 0.5), ("misfit", one.misfit, MISFIT_COLOUR, 0.3)]
+    wide = [each for each in wide if each[1].any()]
     areas: list[Artist] = [
         axes.fill_between(*(x, -half, half), facecolor=PALETTE[colour], alpha=strength, linewidth=0.0)
-        for half, colour, strength in ((one.bound, "rest", 0.5), (one.misfit, MISFIT_COLOUR, 0.3))
+        for _, half, colour, strength in wide
     ]
     points: list[Artist] = [
         dots(axes, at, left.real, "series-1"),
         dots(axes, at, left.imag, "series-3", flat=True),
     ]
-    handles, labels = [*points, *reversed(areas)], ["real part", "imaginary part", "misfit", "bound"]
+    handles = [*points, *reversed(areas)]
+    labels = ["real part", "imaginary part", *(name for name, *_ in reversed(wide))]
     if one.fit_top_hz < 0.999 * float(one.frequency_hz[-1]):
         handles.append(axes.axvline(one.fit_top_hz / size, color=PALETTE["quiet"], linewidth=0.9))
         labels.append("end of the fit")

@@ -8,6 +8,7 @@ from matplotlib.axes import Axes
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.validity.evidence.whole import KitEvidence
+from stdfit.writing.numbers import figure
 from stdfit.writing.pictures.devices import labels_of
 from stdfit.writing.pictures.frame import unit_of
 from stdfit.writing.pictures.palette import LINES, PALETTE
@@ -28,6 +29,9 @@ MARKERS = ("o", "s", "^")
 APART = 0.13
 """Frequencies are not written nearer to each other than this."""
 
+NEAR = 0.15
+"""A standard that stays within this distance of the centre is told as a whole, and not by frequencies."""
+
 REACH = 1.17
 """The chart is drawn out to here, so that frequencies find room outside the rim."""
 
@@ -40,7 +44,9 @@ def draw_smith(axes: Axes, one: KitEvidence) -> tuple[list[Artist], list[str]]:
     marked = marked_frequencies(one.frequency_hz)
     handles: list[Artist] = []
     written: list[complex] = []
-    for gamma, colour, marker in zip(one.standards.T, LINES, MARKERS, strict=True):
+    names = labels_of(one)
+    inner = near_centre(one)
+    for place_of, (gamma, colour, marker) in enumerate(zip(one.standards.T, LINES, MARKERS, strict=True)):
         look: dict[str, Any] = {"color": PALETTE[colour], "solid_capstyle": "round"}
         axes.plot(gamma.real, gamma.imag, linewidth=0.9, linestyle=(0, (1, 1.5)), **look)
         axes.plot(gamma.real[inside], gamma.imag[inside], linewidth=2.0, **look)
@@ -59,6 +65,17 @@ def draw_smith(axes: Axes, one: KitEvidence) -> tuple[list[Artist], list[str]]:
             zorder=3,
         )
         handles.append(dots)
+        away = inner[place_of]
+        if away is not None:  # too close together for frequencies
+            axes.text(
+                *(0.0, -(away + 0.11), f"{names[place_of]}: within {figure(away)} of the centre"),
+                color=PALETTE[colour],
+                ha="center",
+                va="center",
+                zorder=3,
+                bbox={"facecolor": PALETTE["paper"], "edgecolor": "none", "pad": 1.5},
+            )
+            continue
         for place, hertz in zip(at, marked, strict=True):
             beside = place / abs(place) * (abs(place) + 0.10) if abs(place) > 0.5 else place - 0.10j
             if all(abs(beside - other) > APART for other in written):
@@ -70,7 +87,13 @@ def draw_smith(axes: Axes, one: KitEvidence) -> tuple[list[Artist], list[str]]:
                     ha="center",
                     va="center",
                 )
-    return handles, [*labels_of(one)]
+    return handles, [*names]
+
+
+def near_centre(one: KitEvidence) -> tuple[float | None, ...]:
+    """Return how far each standard is from the centre at most; None where it leaves it."""
+    away = np.abs(one.standards).max(axis=0)
+    return tuple(float(each) if each < NEAR else None for each in away)
 
 
 def draw_grid(axes: Axes) -> list[Artist]:

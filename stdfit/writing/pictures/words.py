@@ -1,4 +1,4 @@
-"""Title, caption and alternative text of each picture, with its key figures."""
+"""Title, caption and alternative text of the pictures of a standard, with their key figures."""
 
 import re
 
@@ -9,17 +9,19 @@ from stdfit.validity.evidence.element import QUANTITIES
 from stdfit.validity.evidence.kept import Connections, KeptReadings
 from stdfit.validity.evidence.sharing import STATED
 from stdfit.validity.evidence.standard import StandardEvidence
-from stdfit.validity.evidence.whole import KitEvidence
 from stdfit.writing.numbers import figure, frequency, rounded
 from stdfit.writing.pictures.bound import highest
-from stdfit.writing.pictures.frame import unit_of
-
-Words = tuple[str, str, str]
-"""Title, caption, alternative text."""
+from stdfit.writing.pictures.whole_words import Words
 
 _MINUS = re.compile(r"(?<![\w.])-(?=\d)")
 
 NEARLY_ALL = 0.99
+
+INSIDE = 0.95
+"""Of all readings of single connections; so many are expected to lie within."""
+
+ELEMENTS = {"open": "capacitance", "short": "inductance", "load": "impedance"}
+"""What stands at the end of the offset line."""
 
 EDGE = 0.999
 """A limit above this part of the last reading is where the readings end."""
@@ -33,9 +35,11 @@ def bound_words(one: StandardEvidence) -> Words:
     reach = "is above" if one.limit_hz <= 0.0 else "keeps within"
     until = "from the first reading on" if one.limit_hz <= 0.0 else f"up to {frequency(one.limit_hz)}"
     kept = f"{reach} the tolerance of {one.within:g} {until}"
-    ends = ", where the readings end" if one.limit_hz >= EDGE * last else ""
-    much = "nearly all" if part > NEARLY_ALL else f"{100.0 * part:.0f} %"
-    most = "" if kind == STATED else f"; there {kind} {_make(kind)} {much} of it"
+    ends, most = f": {one.reason}", ""
+    if " of the bound" not in one.reason:  # the readings or the connector end
+        much = "nearly all" if part > NEARLY_ALL else f"{100.0 * part:.0f} %"
+        ends = ", where the readings end" if one.limit_hz >= EDGE * last else ""
+        most = "" if kind == STATED else f"; there {kind} {_make(kind)} {much} of it"
     end = highest(one)
     cut = f" The axis ends at {figure(end)}." if end < float(one.bound.max()) else ""
     caption = (
@@ -102,16 +106,31 @@ def connection_words(one: StandardEvidence, connections: Connections) -> Words:
     near = np.argmin(np.abs(connections.frequency_hz - where))
     usual = figure(float(connections.expected[near]))
     key = f"connection {which} lies farthest from the mean, by {figure(away)} at {frequency(where)}"
+    found = _verdict(connections)
     caption = (
-        f"Each of the {count} connections that went into the mean, in their order, against it: {key}. 95 % should stay "
-        f"below the dotted line, {usual} there: lumped parts of a connection, as all standards of the bench show them, "
-        "and noise."
+        f"Each of the {count} connections that went into the mean, in their order, against it: {key}. {found}: "
+        f"95 % should lie below it, {usual} there, by the lumped parts of a connection, as all standards of the bench "
+        "show them, and noise."
     )
     alt = (
         f"Distance of {count} connections of {one.name} from their mean over frequency: {key}; "
         f"95 % should stay below {usual} there."
     )
     return f"{one.name}: connections one by one", caption, alt
+
+
+def _verdict(connections: Connections) -> str:
+    """Say whether all connections are as close as is expected, or which is not."""
+    above = connections.above()
+    if above is None:
+        inside = (np.abs(connections.deviations) <= connections.expected).mean()
+        return f"{'All stay within' if inside > INSIDE else 'None lies far above'} what is expected, the dotted line"
+    number, low, top = above
+    until = "on" if top >= EDGE * connections.frequency_hz[-1] else f"to {frequency(top)}"
+    return (
+        f"Connection {number} lies clearly above what is expected, the dotted line, from {frequency(low)} {until}: "
+        "look at it"
+    )
 
 
 def element_words(one: StandardEvidence) -> Words:
@@ -128,7 +147,8 @@ def element_words(one: StandardEvidence) -> Words:
             )
     key = ", ".join(ends)
     sure = " (95 %)" if element.u95.any() else "; the kit states no uncertainty of it"
-    caption = f"What stands at the end of the offset line: {key}{sure}."
+    what = ELEMENTS[one.kind]
+    caption = f"The {what} at the end of the offset line: {key}{sure}."
     if element.traded and element.u95_of_rest is not None:
         rest = figure(float(element.u95_of_rest[-1].mean()))
         caption += (
@@ -136,65 +156,9 @@ def element_words(one: StandardEvidence) -> Words:
             f"with the delay known {element.symbols[-1]} would be ± {rest} {element.units[-1]} on average."
         )
     return (
-        f"{one.name}: the element behind its line",
+        f"{one.name}: its {what}",
         caption,
-        f"Element of {one.name} over frequency: {key}{sure}.",
-    )
-
-
-def device_words(one: KitEvidence) -> Words:
-    """Return the words of the bound on devices."""
-    place = int(np.argmin(np.abs(one.frequency_hz - max(one.limit_hz, one.frequency_hz[0]))))
-    key = ", ".join(
-        f"{figure(float(bound))} for |Γ| = {magnitude:g}"
-        for magnitude, bound in zip(one.magnitudes, one.bounds[place], strict=True)
-    )
-    at = frequency(float(one.frequency_hz[place]))
-    caption = (
-        f"How far a device's reflection can be off after a correction with {_three(one)}, at the worst phase: "
-        f"{key} at {at}. Connections, drift and noise of the day come on top."
-    )
-    return (
-        "What the kit leaves on devices",
-        caption,
-        f"Bound on devices over frequency, one line for each |Γ|: at {at} {key}.",
-    )
-
-
-def smith_words(one: KitEvidence) -> Words:
-    """Return the words of the Smith chart."""
-    where = "nowhere" if one.limit_hz <= 0.0 else f"up to {frequency(one.limit_hz)}"
-    top = frequency(float(one.frequency_hz[-1]))
-    turned = [
-        f"{name} {np.ptp(np.degrees(np.unwrap(np.angle(gamma)))):.0f}°"
-        for name, kind, gamma in zip(one.names, one.kinds, one.standards.T, strict=True)
-        if kind != "load"
-    ]
-    caption = (
-        f"Reflections of the three standards, thick as far as the kit is good within {one.within:g} ({where}), "
-        f"dotted beyond. Numbers are frequencies in {unit_of(float(one.frequency_hz[-1]))[1]}."
-    )
-    alt = f"Smith chart of {_three(one)} up to {top}, good {where}" + (
-        f"; turns of the phase: {', '.join(turned)}." if turned else "."
-    )
-    return "The three standards", caption, alt
-
-
-def separation_words(one: KitEvidence) -> Words:
-    """Return the words of the distances between standards."""
-    inside = one.frequency_hz <= max(one.limit_hz, one.frequency_hz[0])
-    k, i = np.unravel_index(int(np.argmin(one.separation[inside].T)), one.separation[inside].T.shape)
-    first, second = one.pair(int(k))
-    key = f"{first} and {second} come nearest, {one.separation[i, k]:.2g} at {frequency(float(one.frequency_hz[i]))}"
-    reach = "" if one.limit_hz <= 0.0 else " up to the limit"
-    caption = (
-        f"Distances of the three standards from each other:{reach} {key}. "
-        "Where two come near each other, their errors are magnified in a correction."
-    )
-    return (
-        "How far apart the standards are",
-        caption,
-        f"Distances between {_three(one)} over frequency:{reach} {key}.",
+        f"The {what} of {one.name} over frequency: {key}{sure}.",
     )
 
 
@@ -229,7 +193,3 @@ def _with_band(values: FloatArray, halves: FloatArray, place: int) -> str:
 def _signed(text: str) -> str:
     """Return a text with the sign for minus before numbers."""
     return _MINUS.sub("−", text)
-
-
-def _three(one: KitEvidence) -> str:
-    return f"{one.names[0]}, {one.names[1]} and {one.names[2]}"

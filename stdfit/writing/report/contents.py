@@ -1,24 +1,26 @@
 """From a kit to everything that stands on its page."""
 
+import re
 from collections.abc import Sequence
 
 from stdfit.validity.kit import Kit
-from stdfit.validity.next_steps import next_steps
+from stdfit.validity.next_steps import END_OF_READINGS, NEXT_MODE, next_steps
 from stdfit.writing.adapter_words import line_rows
+from stdfit.writing.analyser_text import are_assumed, residual_rows
 from stdfit.writing.device_text import COMMENT
-from stdfit.writing.numbers import frequency
+from stdfit.writing.numbers import frequency, good_to
 from stdfit.writing.report.reasons import standard_of, why
 from stdfit.writing.report.records import Answer, Figure, Page, Reach, Table
-from stdfit.writing.report.standards import standard_parts, typing_of
-from stdfit.writing.report.sure import bound_tables, device_tables, good_to
+from stdfit.writing.report.standards import orders_note, standard_parts, typing_of
+from stdfit.writing.report.sure import bound_tables, device_tables
 from stdfit.writing.report.words import counted, sentence, unit
 from stdfit.writing.summary import TOLD_FROM, verdict
 
 NO_READINGS = "This kit file keeps no readings, so that the pictures show definitions and bounds alone."
 
 STEPS_NOTE = (
-    "Rough estimates without a new fit: one kind of error is halved and all else stays as it is. Most are low, since a "
-    "new fit finds less misfit and reaches further. “stdfit plan” looks at the bench file and does the fits."
+    "Estimates without another fit: one kind of error is halved and all else stays as it is. “stdfit plan BENCH” fits "
+    "again and often finds more, since a new fit leaves less misfit and may take another order and range."
 )
 
 NO_STEPS = (
@@ -76,6 +78,7 @@ def page_of(kit: Kit, figures: Sequence[tuple[str | None, Figure]]) -> Page:
         no_steps="" if steps else NO_STEPS if kit.shares else NO_SOURCES,
         figures=tuple(one for name, one in figures if name is None),
         readings_note="" if kit.session is not None else NO_READINGS,
+        orders_note=orders_note(kit),
         standards=standard_parts(kit, of_standards),
         record=_record(kit),
         checks=tuple(sentence(one) for one in kit.checks),
@@ -87,6 +90,7 @@ def _answer(kit: Kit) -> Answer:
     reason, gloss = why(kit)
     low = max(one.read_low_hz for one in kit.definitions)
     limit_hz = kit.limit.limit_hz
+    step, reach = _best_step(kit)
     return Answer(
         figure=frequency(limit_hz) if limit_hz > 0.0 else "",
         from_where=f"from {frequency(low)}" if low > TOLD_FROM * limit_hz > 0.0 else "",
@@ -94,25 +98,56 @@ def _answer(kit: Kit) -> Answer:
         reason=reason,
         gloss=gloss,
         standards=_reaches(kit),
+        scale=frequency(_scale_hz(kit)),
+        step=step,
+        reach=reach,
         verdict=verdict(kit),
     )
 
 
 def _reaches(kit: Kit) -> tuple[Reach, ...]:
     """Return how far each standard is good, on one scale of frequency for all."""
-    whole = max(one.read_top_hz for one in kit.definitions)
+    whole = _scale_hz(kit)
     ending = standard_of(kit)
     return tuple(
         Reach(
             one.name,
             good_to(one.limit.limit_hz),
             one.limit.reason,
-            100.0 * one.read_low_hz / whole,
+            _start(one.read_low_hz, whole),
             100.0 * one.read_top_hz / whole,
-            100.0 * min(max(one.limit.limit_hz, one.read_low_hz), one.read_top_hz) / whole,
+            100.0 * min(one.limit.limit_hz, one.read_top_hz) / whole
+            if one.limit.limit_hz > 0.0
+            else _start(one.read_low_hz, whole),
             one.name == ending,
         )
         for one in kit.definitions
+    )
+
+
+def _scale_hz(kit: Kit) -> float:
+    """Return where the scale of the bars ends."""
+    return max(one.read_top_hz for one in kit.definitions)
+
+
+def _start(low_hz: float, whole_hz: float) -> float:
+    """Return where a bar begins in percent: with its label, unless the readings begin so high that it matters."""
+    return 100.0 * low_hz / whole_hz if low_hz > TOLD_FROM * whole_hz else 0.0
+
+
+def _best_step(kit: Kit) -> tuple[str, str]:
+    """Return the best step in few words, and how far it reaches."""
+    steps = next_steps(kit)
+    if not steps:
+        return "", ""
+    best = steps[0]
+    if best.kind == NEXT_MODE:
+        return "", ""
+    short = {END_OF_READINGS: "read on further up"}.get(
+        best.kind, "halve several errors together" if " and " in best.kind else ""
+    )
+    return sentence(short or re.split(r": |, or | \(|; ", best.action)[0]).removesuffix("."), good_to(
+        best.limit_hz
     )
 
 
@@ -126,12 +161,22 @@ def _steps(kit: Kit) -> Table | None:
         f"What would push the limit of {frequency(now)} further" if now > 0.0 else "What would make it useful"
     )
     rows = tuple((sentence(one.action), good_to(one.limit_hz)) for one in steps)
-    return Table(caption, ("what to do", "good to"), rows, STEPS_NOTE)
+    return Table(caption, ("what to do", "good to at least about"), rows, STEPS_NOTE, flows=True)
 
 
 def _record(kit: Kit) -> tuple[Table, ...]:
     """Return thru, references and source files."""
     tables = []
+    if kit.analyser is not None:
+        note = "Nobody stated them: limits rest on an assumption." if are_assumed(kit.analyser) else ""
+        tables.append(
+            Table(
+                f"What the correction of the analyser left, {kit.analyser.residuals} (95 %)",
+                ("frequency", "directivity", "source match", "reflection tracking"),
+                tuple(residual_rows(kit.analyser)),
+                note,
+            )
+        )
     if kit.thru is not None:
         rows = [(label, value, unit(own)) for label, value, own in line_rows(kit.thru.line)]
         rows.append(("SHA-256 of its file", kit.thru.sha256, ""))

@@ -10,6 +10,7 @@ from stdfit.writing.pictures import DARK, PALETTE, Picture, kit_pictures
 from stdfit.writing.report.contents import page_of
 from stdfit.writing.report.own import BEGINNING
 from stdfit.writing.report.records import Figure
+from stdfit.writing.report.words import unbroken
 
 
 def report_html(kit: Kit) -> str:
@@ -27,10 +28,12 @@ def _figure(one: Picture) -> Figure:
 @cache
 def _template() -> Template:
     """Return the template; values that it does not know are faults, and text is escaped."""
-    return Environment(
+    environment = Environment(
         loader=PackageLoader("stdfit.writing.report"),
         autoescape=True,
         undefined=StrictUndefined,
         trim_blocks=True,
         lstrip_blocks=True,
-    ).get_template("report.html")
+    )
+    environment.filters["nb"] = unbroken
+    return environment.get_template("report.html")

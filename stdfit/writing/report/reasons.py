@@ -2,7 +2,9 @@
 
 import re
 
+from stdfit.validity.evidence.causes import DIFFERS, LEAVES
 from stdfit.validity.kit import Kit
+from stdfit.validity.limits import STEPS
 
 GLOSSES = (
     ("analyser residuals", "Analyser residuals are what the analyser's own calibration leaves uncorrected."),
@@ -32,7 +34,11 @@ GLOSSES = (
         "Model errors are what the parts differ from their models by, as far as their readings show it.",
     ),
     ("drift", "Drift is what changed in the analyser between the sets of readings."),
-    ("the readings leave the model", "The part does something there that its definition cannot describe."),
+    (
+        "the readings leave the model",
+        "Neither the definition nor the known errors explain the readings there: the part has a resonance, for "
+        "instance, or the analyser is worse than stated.",
+    ),
     ("the readings end", "Nothing was read beyond; a longer sweep would show more."),
     ("the next mode", "Beyond, the field in the connector is no longer that of a simple line."),
     ("the stated bound", "This kit states its bounds without their causes."),
@@ -55,8 +61,8 @@ def why(kit: Kit) -> tuple[str, str]:
     begin = "It ends" if kit.limit.limit_hz > 0.0 else "It fails at its first readings"
     begin = f"{begin} with “{name}”: " if name else f"{begin}: "
     # The name of a standard in the source may hold a comma of its own.
-    found = re.match(r"(.*?), (\d+ % of the variance.*)", reason)
-    if found is None:
+    found = re.match(r"(.*?), (\d+ %) of the bound(.*)", reason)
+    if found is None or reason.startswith((LEAVES, STEPS, DIFFERS)):
         return f"{begin}{reason}.", gloss
-    source, share = found.groups()
-    return f"{begin}the largest part of its uncertainty there is {source} ({share}).", gloss
+    source, share, more = found.groups()
+    return f"{begin}the largest part of its bound there is {source} ({share}{more}).", gloss

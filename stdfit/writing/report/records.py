@@ -15,12 +15,15 @@ class Table:
         The first cell of each row heads it.
     note : str
         What is to be said of it; empty for nothing.
+    flows : bool
+        Whether cells hold whole phrases: on a narrow screen each row becomes a block.
     """
 
     caption: str
     head: tuple[str, ...]
     rows: tuple[tuple[str, ...], ...]
     note: str = ""
+    flows: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,6 +63,10 @@ class Answer:
     reason, gloss : str
         Why the kit ends there, and what these words mean.
     standards : tuple of Reach
+    scale : str
+        The frequency at which the scale of `standards` ends.
+    step, reach : str
+        The best thing to do next and how far it would reach; empty where nothing is known.
     verdict : str
         As the command prints it.
     """
@@ -70,26 +77,40 @@ class Answer:
     reason: str
     gloss: str
     standards: tuple[Reach, ...]
+    scale: str
+    step: str
+    reach: str
     verdict: str
 
 
 @dataclass(frozen=True, slots=True)
 class Term:
-    """One number to type: its label, the number, its unit; `zero` where it is 0 and was not fitted."""
+    """One number to type.
+
+    Attributes
+    ----------
+    label, number, unit : str
+    half : str
+        Its 95 % uncertainty; empty where it has none.
+    zero : bool
+        Whether it is 0 and was not fitted.
+    """
 
     label: str
     number: str
+    half: str
     unit: str
     zero: bool
 
 
 @dataclass(frozen=True, slots=True)
 class Typing:
-    """The numbers of one standard in the order in which they are typed."""
+    """The numbers of one standard in the order in which they are typed, and the sums that the readings fix."""
 
     name: str
     kind: str
     terms: tuple[Term, ...]
+    sums: tuple[str, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,6 +132,8 @@ class StandardPart:
     name, anchor : str
     facts : tuple of (what, value)
     figures : tuple of Figure
+    last : Figure or None
+        One more, to stand beside the tables, so that no row of pictures has a hole.
     budget, orders : Table or None
     notes : tuple of str
     """
@@ -119,6 +142,7 @@ class StandardPart:
     anchor: str
     facts: tuple[tuple[str, str], ...]
     figures: tuple[Figure, ...]
+    last: Figure | None
     budget: Table | None
     orders: Table | None
     notes: tuple[str, ...]
@@ -155,6 +179,8 @@ class Page:
         Of the kit as a whole.
     readings_note : str
         Why there are no pictures of readings; empty where there are.
+    orders_note : str
+        What the names of orders mean; empty where none are told.
     standards : tuple of StandardPart
     record : tuple of Table
         Thru, references, source files.
@@ -178,6 +204,7 @@ class Page:
     no_steps: str
     figures: tuple[Figure, ...]
     readings_note: str
+    orders_note: str
     standards: tuple[StandardPart, ...]
     record: tuple[Table, ...]
     checks: tuple[str, ...]

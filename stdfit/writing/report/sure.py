@@ -11,10 +11,10 @@ from stdfit.writing.device_text import (
     term_rows,
     whole_kit,
 )
-from stdfit.writing.numbers import figure, frequency
+from stdfit.writing.numbers import figure, frequency, good_to, label_of
 from stdfit.writing.report.records import Table
 from stdfit.writing.report.words import unit
-from stdfit.writing.summary import parameter_rows
+from stdfit.writing.summary import sum_said
 
 ROWS = 8
 """Frequencies at which bounds are told."""
@@ -22,17 +22,14 @@ ROWS = 8
 FEWEST_ROWS = 4
 """Where a band holds fewer round frequencies, so many even steps are told instead."""
 
-NOWHERE = "none"
+ROLES = ("free", "given", "assumed", "held", "at its bound")
+"""As kit files name them, in the order of the columns."""
 
-VALUES_NOTE = (
-    "A value that is “given” was stated, and weighed with the readings. Of one that is “assumed” the readings say so "
-    "little that a weak assumption stands in for them. One that is “held” is not fitted."
+ROLES_NOTE = (
+    "What is free is told by the readings. What is given was stated, and weighed with them. Of what is assumed they "
+    "say so little that a weak assumption stands in for them. What is held is not fitted. A loss is at its bound, 0, "
+    "where the readings ask for less."
 )
-
-
-def good_to(hertz: float) -> str:
-    """Return a limit."""
-    return frequency(hertz) if hertz > 0.0 else NOWHERE
 
 
 def bound_tables(kit: Kit) -> tuple[Table, ...]:
@@ -76,29 +73,29 @@ def _bounds_on_curves(kit: Kit) -> Table:
 
 
 def _value_tables(kit: Kit) -> tuple[Table, Table]:
-    """Return the single values with their 95 % uncertainty, and the sums that trade-offs leave known."""
-    values: list[tuple[str, ...]] = []
+    """Return where the single values come from, and the sums that trade-offs leave known."""
+    kinds: list[tuple[str, ...]] = []
     sums: list[tuple[str, ...]] = []
-    for definition in kit.definitions:
-        rows = parameter_rows(kit, definition)
-        count = len(rows) - len(definition.combinations)
-        if all(role == "held" for *_, role in rows):
+    roles = [role for role in ROLES if any(p.role == role for one in kit.definitions for p in one.parameters)]
+    for one in kit.definitions:
+        if all(parameter.role in ("held", "unused") for parameter in one.parameters):
             continue  # a definition whose values carry no uncertainty of their own
-        for label, value, own, role in rows[:count]:
-            values.append((f"{definition.name}: {label}", value, unit(own), role or "readings"))
-        for (label, value, own, _), one in zip(rows[count:], definition.combinations, strict=True):
-            sums.append((f"{definition.name}: {label}", value, unit(own), f"{one.correlation:.3f}"))
+        named = [
+            ", ".join(label_of(one.kind, p.name) for p in one.parameters if p.role == role) or "–"
+            for role in roles
+        ]
+        kinds.append((one.name, *named))
+        sums += [
+            (f"{one.name}: {c.label}", f"{sum_said(c)} {unit(c.unit)}", f"{c.correlation:.3f}")
+            for c in one.combinations
+        ]
     return (
-        Table(
-            "Single values (± 95 %)",
-            ("value of", "value", "unit", "comes from"),
-            tuple(values),
-            VALUES_NOTE,
-        ),
+        Table("Where the values come from", ("standard", *roles), tuple(kinds), ROLES_NOTE, flows=True),
         Table(
             "Sums that the readings fix better than their parts (± 95 %)",
-            ("sum", "value", "unit", "correlation of the parts"),
+            ("sum", "value", "correlation of the parts"),
             tuple(sums),
+            flows=True,
         ),
     )
 
@@ -119,5 +116,6 @@ def device_tables(kit: Kit) -> tuple[tuple[Table, ...], str]:
         "Up to where a device is shown right",
         ("device", "good to", "ends because"),
         tuple((one.question.label, good_to(one.limit_hz), one.reason) for one in whole.answers),
+        flows=True,
     )
     return (terms, asked), ideal_line(whole.errors)
