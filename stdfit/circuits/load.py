@@ -40,7 +40,7 @@ def load(
     bridge = 1.0 + 1j * omega * capacitance_f * branch
     z = branch / bridge
     gamma: ComplexArray = np.asarray((z - reference_ohm) / (z + reference_ohm))
-    by_z = 2.0 * reference_ohm / (z + reference_ohm) ** 2
+    by_z = 2.0 * reference_ohm / (z + reference_ohm) / (z + reference_ohm)
     by_branch = by_z / bridge**2
-    by_capacitance = -by_z * 1j * omega * z**2
+    by_capacitance = -by_z * z * 1j * omega * z
     return gamma, np.stack([by_branch, 1j * omega * by_branch, by_capacitance], axis=-1)

@@ -16,6 +16,7 @@ REFLECTOR_ABSORBS = 0.5
 CLEAR_CONTRADICTION = 120.0
 # Standards whose mean readings differ by less are the same part (corrected, raw).
 SAME_PART = {"corrected": 0.05, "raw": 0.002}
+MEND_KIND = "check which file belongs to which standard"
 ACTIVE = 1.1
 # What a middling correction may leave (34 dB and 40 dB residuals together) is not worth a word.
 SLIGHTLY_ACTIVE = 1.05
@@ -187,14 +188,19 @@ def _check_magnitude(name: str, kind: str, sweeps: Sequence[Sweep]) -> None:
     """Refuse a load that reflects, and an open or short that absorbs, at the low end."""
     for sweep in sweeps:
         size = float(np.median(np.abs(sweep.gamma[low_end(sweep.frequency_hz)])))
-        if kind == "load" and size > LOAD_REFLECTS:
-            what = f"standard '{name}' is called a load but reflects like a short or open (|Γ| = {size:.2f})"
-        elif kind != "load" and size < REFLECTOR_ABSORBS:
-            article = "an" if kind == "open" else "a"
-            what = f"standard '{name}' is called {article} {kind} but absorbs like a load (|Γ| = {size:.2f})"
-        else:
-            continue
-        raise PhysicsError(what, "check which file belongs to which standard", file=sweep.name)
+        what = unlike_its_kind(name, kind, size)
+        if what is not None:
+            raise PhysicsError(what, MEND_KIND, file=sweep.name)
+
+
+def unlike_its_kind(name: str, kind: str, size: float) -> str | None:
+    """Return what contradicts the kind of a standard whose |Γ| at low frequency is known, or None."""
+    if kind == "load" and size > LOAD_REFLECTS:
+        return f"standard '{name}' is called a load but reflects like a short or open (|Γ| = {size:.2f})"
+    if kind != "load" and size < REFLECTOR_ABSORBS:
+        article = "an" if kind == "open" else "a"
+        return f"standard '{name}' is called {article} {kind} but absorbs like a load (|Γ| = {size:.2f})"
+    return None
 
 
 def _check_phases(readings: Readings) -> None:

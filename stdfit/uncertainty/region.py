@@ -73,7 +73,7 @@ def effective_freedom(variances: FloatArray, freedoms: FloatArray) -> FloatArray
     freedoms = np.asarray(freedoms, dtype=float)
     inverse = np.where(np.isfinite(freedoms), 1.0 / freedoms, 0.0)
     total = variances.sum(axis=0)
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         nu = total**2 / np.tensordot(inverse, variances**2, axes=(0, 0))
     return np.where(np.isnan(nu), np.inf, nu)
 

@@ -111,6 +111,11 @@ def _ending(kit: Kit) -> Definition:
     return min(kit.definitions, key=lambda one: one.limit.limit_hz)
 
 
+def can_be_planned(kit: Kit) -> bool:
+    """Tell whether `stdfit plan` takes the bench of a kit: not where raw readings had no references."""
+    return not any(kind_of(share.name) == "model errors" for share in kit.shares)
+
+
 def _end_of(kit: Kit, definition: Definition) -> float:
     """Return where a standard ends at the latest: at its last reading, or at the connector's top."""
     return min(definition.read_top_hz, kit.top_hz)

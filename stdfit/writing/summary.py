@@ -5,7 +5,7 @@ from collections.abc import Sequence
 from stdfit.circuits.units import said_unit
 from stdfit.validity.kit import Combination, Definition, Kit
 from stdfit.validity.limit import Limit
-from stdfit.validity.next_steps import next_steps
+from stdfit.validity.next_steps import can_be_planned, next_steps
 from stdfit.writing.adapter_words import thru_lines
 from stdfit.writing.aligned import aligned
 from stdfit.writing.analyser_text import residuals_said
@@ -21,10 +21,8 @@ from stdfit.writing.numbers import (
     second_digit,
 )
 
-STEPS_HEAD = (
-    "What would push it further, at least about so far without another fit ('stdfit plan BENCH' fits again, and often "
-    "finds more)"
-)
+STEPS_HEAD = "What would push it further, at least about so far without another fit"
+PLANNED = " ('stdfit plan BENCH' fits again, and often finds more)"
 
 ORDERS_NOTE = (
     "other orders are told as estimated over their own best range; of nearly equal ones the simplest is taken"
@@ -165,7 +163,7 @@ def step_lines(kit: Kit) -> list[str]:
     rows = [[frequency(step.limit_hz), step.action] for step in next_steps(kit)[:STEPS]]
     if not rows:
         return []
-    return ["", STEPS_HEAD, *aligned(rows)]
+    return ["", STEPS_HEAD + (PLANNED if can_be_planned(kit) else ""), *aligned(rows)]
 
 
 def ladder_lines(kit: Kit) -> list[str]:

@@ -109,7 +109,11 @@ def kits(folder: Path) -> Iterator[Line]:
         ],
         3,
     )
-    yield f"{count} benches one by one ÷ in one command, on {os.cpu_count()} cores", f"{one / together:.1f}", ""
+    yield (
+        f"{count} benches one by one ÷ in one command, on {os.cpu_count()} cores",
+        f"{one / together:.1f}",
+        "",
+    )
 
 
 def growth(folder: Path) -> Iterator[Line]:

@@ -2,7 +2,6 @@
 
 import os
 import random
-import re
 import shutil
 import tempfile
 import time
@@ -131,8 +130,8 @@ def may_write(case: Case) -> set[str]:
     allowed = {"out"} if any("OUT" in one for one in case.call) else set()
     targets = [after for before, after in pairwise(case.call) if before in ("-o", "--plot", "--report")]
     targets += case.call[2:3] if case.call[0] == "export" else []
-    plain = [one for one in targets if re.fullmatch(r"[^/]+", one) and one not in (".", "..")]
-    allowed |= {one.removesuffix(".toml") for one in plain}
+    inside = [one.split("/")[0] for one in targets if not one.startswith(("/", ".."))]
+    allowed |= {one.removesuffix(".toml") for one in inside if one not in ("", ".")}
     if case.call[0] == "fit":
         allowed.add("kit.toml")
     return allowed | ({"bench.toml"} if case.call[0] == "new" else set())

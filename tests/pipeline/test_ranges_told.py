@@ -12,10 +12,11 @@ def test_each_range_is_told(monkeypatch):
     monkeypatch.setattr(unreferenced, "gather", lambda *_: gathered)
     monkeypatch.setattr(unreferenced, "eliminate", lambda *_: None)
     monkeypatch.setattr(unreferenced, "_without_outlying", lambda same, _: same)
-    kit = SimpleNamespace(limit=SimpleNamespace(limit_hz=1e9))
+    kit = SimpleNamespace(limit=SimpleNamespace(limit_hz=1e9), definitions=())
+    bench = SimpleNamespace(path=None)
     monkeypatch.setattr(unreferenced, "_kit", lambda *_: kit)
     told = []
-    found = unreferenced.characterise_unreferenced(None, {}, tell=lambda *one: told.append(one))
+    found = unreferenced.characterise_unreferenced(bench, {}, tell=lambda *one: told.append(one))
     assert found is kit
     assert told == [(1, 4), (2, 4), (3, 4)]
-    assert unreferenced.characterise_unreferenced(None, {}) is kit
+    assert unreferenced.characterise_unreferenced(bench, {}) is kit

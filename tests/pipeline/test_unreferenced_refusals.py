@@ -114,6 +114,18 @@ def test_what_needs_corrected_readings(written, capsys, command):
     assert "'stdfit fit' takes such a bench" in told
 
 
+def test_an_open_that_is_called_a_load(written, capsys):
+    """Its resistance would run off to 10¹⁰⁰ Ω, with ± 0."""
+    path = written()
+    text = path.read_text(encoding="utf-8")
+    assert text.count('kind = "open"') == 1
+    path.write_text(text.replace('kind = "open"', 'kind = "load"'), encoding="utf-8")
+    told = refused(capsys, "fit", path)
+    assert "standard 'open' is called a load but reflects like a short or open (|Γ| = " in told
+    assert "check which file belongs to which standard" in told
+    assert not (path.parent / "kit.toml").exists()
+
+
 def test_nothing_is_written_where_something_is_refused(written, capsys):
     path = written({})
     refused(capsys, "fit", path)
@@ -135,7 +147,7 @@ def test_nonsense_readings_end_in_words_too(written, capsys):
     assert "Traceback" not in told.err + told.out
     assert code in (0, 1, 2)
     if code == 0:
-        assert " 0 Hz " in told.out.splitlines()[1]
+        assert " none " in told.out.splitlines()[1]
 
 
 def test_what_to_do_next_is_something_that_can_be_done(written, capsys):

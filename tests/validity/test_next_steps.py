@@ -10,7 +10,7 @@ from stdfit.uncertainty.region import LINE
 from stdfit.validity.limits import limits
 from stdfit.validity.next_steps import MOST, SMALLEST_GAIN, next_steps
 from stdfit.writing.plain_data import kit_data
-from stdfit.writing.summary import STEPS_HEAD, step_lines
+from stdfit.writing.summary import PLANNED, STEPS_HEAD, step_lines
 
 # A delay that is off by u turns Γ = ±1 by 4πfu, on a line: the bound is 1.96·4πfu, and halving u doubles the limit.
 PS_FOR_2_GHZ = 0.02 / (LINE * 4.0 * np.pi * 2e9) * 1e12
@@ -167,7 +167,7 @@ def test_steps_are_told_in_json_and_the_best_two_in_words(modest_kit):
     steps = next_steps(modest_kit)
     assert [one["limit_hz"] for one in kit_data(modest_kit)["next_steps"]] == [one.limit_hz for one in steps]
     lines = step_lines(modest_kit)
-    assert lines[:2] == ["", STEPS_HEAD]
+    assert lines[:2] == ["", STEPS_HEAD + PLANNED]
     assert len(lines) == 2 + min(2, len(steps))
     assert lines[2].endswith(steps[0].action)
     assert step_lines(replace(modest_kit, shares=())) == []

@@ -125,7 +125,9 @@ def test_a_kit_with_three_standards_is_told_as_a_kit(usual_kit):
         "|Z| near 50 Ω within 2 %",
         "phase of a full reflection within 2°",
     ]
-    assert lines[8].startswith("  were the standards typed in as ideal, a device's Γ would be wrong by up to ")
+    assert lines[8].startswith(
+        "  were the standards typed in as ideal, a device's Γ would be wrong by up to "
+    )
     assert len(lines) == 9
 
 

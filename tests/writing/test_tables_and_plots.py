@@ -44,7 +44,9 @@ def test_budget(modest, at_hz):
         assert own.loc["misfit", "alone"] == misfit_at(one, at)[0]
         parts = own["part"].dropna()
         assert set(parts.index) == {"misfit", *(share.name for share in modest.shares)}
-        assert parts["misfit"] * own.loc["bound", "alone"] == pytest.approx(own.loc["misfit", "alone"], rel=1e-12)
+        assert parts["misfit"] * own.loc["bound", "alone"] == pytest.approx(
+            own.loc["misfit", "alone"], rel=1e-12
+        )
         parts = parts.drop("misfit")
         assert (np.diff(parts) <= 0.0).all()
         # Root sum of squares of what each source has alone; degrees of freedom and shape make it differ a little.

@@ -10,8 +10,11 @@ from pathlib import Path
 
 import numpy as np
 
+from stdfit.base.errors import PhysicsError
 from stdfit.base.records import Sweep
+from stdfit.circuits.standard import reflection
 from stdfit.data.bench import Bench
+from stdfit.data.verify import MEND_KIND, unlike_its_kind
 from stdfit.pipeline.finished import finished
 from stdfit.pipeline.prepare import scatter_cautions
 from stdfit.pipeline.raw.anchors import FEWEST_POINTS, Gathered, gather, shapes_of
@@ -98,7 +101,18 @@ def eliminated(
             found = eliminate(gathered, top, found)
             each.append((_kit(gathered, found, files, created), found))
     best = max(kit.limit.limit_hz for kit, _ in each)
-    return next(one for one in each if one[0].limit.limit_hz >= NEAR * best)
+    chosen = next(one for one in each if one[0].limit.limit_hz >= NEAR * best)
+    _refuse_other_kinds(chosen[0], bench.path)
+    return chosen
+
+
+def _refuse_other_kinds(kit: Kit, path: Path) -> None:
+    """Refuse standards that come out as what they are not called: raw readings do not show it before the fit."""
+    for one in kit.definitions:
+        gamma, _ = reflection(one.kind, one.values, np.array([one.read_low_hz]), kit.reference_ohm)
+        fault = unlike_its_kind(one.name, one.kind, float(np.abs(gamma[0])))
+        if fault is not None:
+            raise PhysicsError(f"{fault}, as far as lengths and resistances tell", MEND_KIND, file=path)
 
 
 def _without_outlying(gathered: Gathered, found: Eliminated) -> Gathered:

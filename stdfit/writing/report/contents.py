@@ -4,7 +4,7 @@ import re
 from collections.abc import Sequence
 
 from stdfit.validity.kit import Kit
-from stdfit.validity.next_steps import END_OF_READINGS, NEXT_MODE, next_steps
+from stdfit.validity.next_steps import END_OF_READINGS, NEXT_MODE, Step, can_be_planned, next_steps
 from stdfit.writing.adapter_words import line_rows
 from stdfit.writing.analyser_text import are_assumed, residual_rows
 from stdfit.writing.device_text import COMMENT
@@ -18,20 +18,15 @@ from stdfit.writing.summary import TOLD_FROM, verdict
 
 NO_READINGS = "This kit file keeps no readings, so that the pictures show definitions and bounds alone."
 
-STEPS_NOTE = (
-    "Estimates without another fit: one kind of error is halved and all else stays as it is. “stdfit plan BENCH” fits "
-    "again and often finds more, since a new fit leaves less misfit and may take another order and range."
+STEPS_NOTE = "Estimates without another fit: one kind of error is halved and all else stays as it is."
+PLANNED = (
+    " “stdfit plan BENCH” fits again and often finds more, since a new fit leaves less misfit and may take another "
+    "order and range."
 )
 
-NO_STEPS = (
-    "No kind of error moves this limit when it alone is halved, nor do three of them together. “stdfit plan” looks at "
-    "the bench file and does the fits."
-)
-
-NO_SOURCES = (
-    "Nothing can be estimated from this kit file alone: it states bounds without their causes. “stdfit plan” looks at "
-    "the bench file."
-)
+NO_STEPS = "No kind of error moves this limit when it alone is halved, nor do three of them together."
+NO_SOURCES = "Nothing can be estimated from this kit file alone: it states bounds without their causes."
+LOOKS_FURTHER = " “stdfit plan BENCH” looks at the bench file and does the fits."
 
 TOP_WARNINGS = 4
 """So many warnings stand near the top, the others further down."""
@@ -51,8 +46,9 @@ def page_of(kit: Kit, figures: Sequence[tuple[str | None, Figure]]) -> Page:
         if name is not None:
             of_standards.setdefault(name, []).append(one)
     devices, ideal = device_tables(kit)
-    steps = _steps(kit)
-    answer = _answer(kit)
+    found = next_steps(kit)
+    steps = _steps(kit, found)
+    answer = _answer(kit, found)
     short = f"good to {answer.figure}" if answer.figure else "cannot be trusted"
     return Page(
         title=f"{kit.name}: {short} within {answer.within}",
@@ -75,7 +71,7 @@ def page_of(kit: Kit, figures: Sequence[tuple[str | None, Figure]]) -> Page:
         devices=devices,
         ideal=sentence(ideal) if ideal else "",
         steps=steps,
-        no_steps="" if steps else NO_STEPS if kit.shares else NO_SOURCES,
+        no_steps="" if steps else _no_steps(kit),
         figures=tuple(one for name, one in figures if name is None),
         readings_note="" if kit.session is not None else NO_READINGS,
         orders_note=orders_note(kit),
@@ -86,11 +82,11 @@ def page_of(kit: Kit, figures: Sequence[tuple[str | None, Figure]]) -> Page:
     )
 
 
-def _answer(kit: Kit) -> Answer:
+def _answer(kit: Kit, steps: Sequence[Step]) -> Answer:
     reason, gloss = why(kit)
     low = max(one.read_low_hz for one in kit.definitions)
     limit_hz = kit.limit.limit_hz
-    step, reach = _best_step(kit)
+    step, reach = _best_step(steps)
     return Answer(
         figure=frequency(limit_hz) if limit_hz > 0.0 else "",
         from_where=f"from {frequency(low)}" if low > TOLD_FROM * limit_hz > 0.0 else "",
@@ -135,9 +131,13 @@ def _start(low_hz: float, whole_hz: float) -> float:
     return 100.0 * low_hz / whole_hz if low_hz > TOLD_FROM * whole_hz else 0.0
 
 
-def _best_step(kit: Kit) -> tuple[str, str]:
+def _no_steps(kit: Kit) -> str:
+    """Say why there are no steps, and who looks further."""
+    return (NO_STEPS if kit.shares else NO_SOURCES) + (LOOKS_FURTHER if can_be_planned(kit) else "")
+
+
+def _best_step(steps: Sequence[Step]) -> tuple[str, str]:
     """Return the best step in few words, and how far it reaches."""
-    steps = next_steps(kit)
     if not steps:
         return "", ""
     best = steps[0]
@@ -151,9 +151,8 @@ def _best_step(kit: Kit) -> tuple[str, str]:
     )
 
 
-def _steps(kit: Kit) -> Table | None:
+def _steps(kit: Kit, steps: Sequence[Step]) -> Table | None:
     """Return what would push the limit, best first."""
-    steps = next_steps(kit)
     if not steps:
         return None
     now = kit.limit.limit_hz
@@ -161,7 +160,13 @@ def _steps(kit: Kit) -> Table | None:
         f"What would push the limit of {frequency(now)} further" if now > 0.0 else "What would make it useful"
     )
     rows = tuple((sentence(one.action), good_to(one.limit_hz)) for one in steps)
-    return Table(caption, ("what to do", "good to at least about"), rows, STEPS_NOTE, flows=True)
+    return Table(
+        caption,
+        ("what to do", "good to at least about"),
+        rows,
+        STEPS_NOTE + (PLANNED if can_be_planned(kit) else ""),
+        flows=True,
+    )
 
 
 def _record(kit: Kit) -> tuple[Table, ...]:
