@@ -226,11 +226,11 @@ VALUES = {
         "source[2].lower_triangles",
         "not positive",
     ),
-    "curve not finite": (
+    "bound beyond all sense": (
         "[0.0004, 0.0, 0.01,",
         "[1e308, 0.0, 1e308,",
-        "standard[0].parameter",
-        "no finite reflection and bound",
+        "standard[0].limit_hz",
+        "the bound allows no limit above 0 Hz",
     ),
     "value out of range": (
         'value = 45.5\nunit = "1e-15 F"\nu = 4.0\nlow_95 = 37.5\nhigh_95 = 53.5',
