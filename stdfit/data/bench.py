@@ -1,7 +1,5 @@
 """Bench files: the text says what was measured and with what; out comes a `Bench`."""
 
-import re
-import tomllib
 from pathlib import Path
 
 from stdfit.base.arrays import frozen_float
@@ -12,6 +10,7 @@ from stdfit.data.bench_records import Bench, Given, PlannedSweep, StandardEntry,
 from stdfit.data.bench_standards import decode_standards
 from stdfit.data.bench_table import Table
 from stdfit.data.mistaken import refuse_mistaken
+from stdfit.data.toml_text import parse_toml
 from stdfit.data.whole_text import whole_text
 from stdfit.data.words import nearest, quoted
 
@@ -69,7 +68,7 @@ def parse_bench(text: str, path: Path, *, devices_alone: bool = False) -> Bench:
         The text is no TOML, or says something that cannot be; the message names line or key.
     """
     refuse_mistaken(text, path, "bench file", BenchError)
-    values = _parse_toml(text, path)
+    values = parse_toml(text, path)
     _check_format(values, path)
     whole = Table(
         values,
@@ -146,40 +145,6 @@ def _plan(values: object, path: Path) -> PlannedSweep:
             raise table.fault(key, f"must be a whole number from {least} to {most}", "mend the number")
         counts[key] = int(value)
     return PlannedSweep(low, high, counts["points"], counts["connections"])
-
-
-def _parse_toml(text: str, path: Path) -> dict[str, object]:
-    """Parse TOML, with file and line in the error."""
-    try:
-        return tomllib.loads(text)
-    except RecursionError as fault:
-        raise BenchError("too deeply nested", "write plain tables and lists", file=path) from fault
-    except ValueError as fault:  # TOMLDecodeError is one; so is an endless integer
-        message = str(fault)
-        place = re.search(r" \(at line ([0-9]+), column ([0-9]+)\)\Z", message)
-        at_end = message.endswith("(at end of document)")
-        what = re.sub(r" \(at [^()]*\)\Z", "", message).split(" (")[0].split(";")[0]
-        line = int(place[1]) if place else len(text.splitlines()) if at_end else None
-        single = re.fullmatch(r"\s*\[\s*(standard|device|adapter)\s*\]\s*(?:#.*)?", _line_of(text, line))
-        if single is not None:
-            raise BenchError(
-                f"[{single[1]}] stands in single brackets, and there are several",
-                f"write [[{single[1]}]], in two pairs of brackets, at each of them",
-                file=path,
-                line=line,
-            ) from fault
-        column = f", column {place[2]}" if place else ""
-        raise BenchError(
-            f"not valid TOML{column}: {quoted(what, 100)[1:-1]}",
-            "mend the line; text needs quotes, and numbers a decimal point",
-            file=path,
-            line=line,
-        ) from fault
-
-
-def _line_of(text: str, line: int | None) -> str:
-    lines = text.splitlines()
-    return lines[line - 1] if line is not None and 0 < line <= len(lines) else ""
 
 
 def _check_format(values: dict[str, object], path: Path) -> None:

@@ -1,12 +1,12 @@
 """Drawing files: the text tells dimensions and materials of parts; out comes a `Drawing`."""
 
-import tomllib
 from pathlib import Path
 
 from stdfit.base.errors import BenchError
 from stdfit.data.bench_table import Table
 from stdfit.data.drawing_parts import decode_part
 from stdfit.data.drawing_records import Drawing, PartEntry
+from stdfit.data.toml_text import parse_toml
 from stdfit.data.whole_text import whole_text
 from stdfit.data.words import quoted, suggestion
 
@@ -36,13 +36,7 @@ def parse_drawing(text: str, path: Path) -> Drawing:
     BenchError
         The message names the key.
     """
-    try:
-        values = tomllib.loads(text)
-    except RecursionError as fault:
-        raise BenchError("too deeply nested", "write plain tables and lists", file=path) from fault
-    except ValueError as fault:
-        what = quoted(str(fault), 100)[1:-1]
-        raise BenchError(f"not valid TOML: {what}", "mend the line", file=path) from fault
+    values = parse_toml(text, path)
     if values.get("format") != FORMAT:
         raise BenchError("not a drawing", f'it begins with format = "{FORMAT}"', file=path, key="format")
     whole = Table(values, path, "", ("format", "name", "connector", "part"))

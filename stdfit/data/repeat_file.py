@@ -1,7 +1,6 @@
 """Repeatability files: which readings were taken under which calibration and connection."""
 
 import os
-import tomllib
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -10,6 +9,7 @@ from stdfit.data.bench_files import matching_files
 from stdfit.data.bench_standards import GIVEN_NAMES, decode_port
 from stdfit.data.bench_table import Table
 from stdfit.data.mistaken import refuse_mistaken
+from stdfit.data.toml_text import parse_toml
 from stdfit.data.whole_text import whole_text
 from stdfit.data.words import quoted
 
@@ -87,13 +87,7 @@ def parse_repeat_file(text: str, path: Path) -> RepeatFile:
         The message names the key.
     """
     refuse_mistaken(text, path, "repeatability file", BenchError)
-    try:
-        values = tomllib.loads(text)
-    except RecursionError as fault:
-        raise BenchError("too deeply nested", "write plain tables and lists", file=path) from fault
-    except ValueError as fault:
-        what = quoted(str(fault), 100)[1:-1]
-        raise BenchError(f"not valid TOML: {what}", "mend the line", file=path) from fault
+    values = parse_toml(text, path)
     if values.get("format") != FORMAT:
         raise BenchError(
             "not a repeatability file", f'it begins with format = "{FORMAT}"', file=path, key="format"

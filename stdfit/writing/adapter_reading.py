@@ -1,7 +1,6 @@
 """Adapter files read back, strictly: what passes can be used without a fault."""
 
 import re
-import tomllib
 from collections.abc import Iterator
 from pathlib import Path
 from typing import Annotated
@@ -11,12 +10,11 @@ import numpy as np
 
 from stdfit.base.errors import KitError
 from stdfit.data.whole_text import whole_text
-from stdfit.data.words import quoted
 from stdfit.validity.adapter import S_NAMES, Adapter
 from stdfit.validity.kit import Ancestor, SourceFile
 from stdfit.validity.thru import LineTerm, line_faults
 from stdfit.writing.adapter_file import FORMAT, TERM_NAMES
-from stdfit.writing.decoding import MEND, decoder_fault
+from stdfit.writing.decoding import MEND, decoder_fault, toml_of
 from stdfit.writing.kit_checks import refuse_control_characters
 
 LARGEST_BYTES = 64 * 2**20
@@ -149,12 +147,7 @@ def parse_adapter(text: str, path: Path | str) -> Adapter:
     KitError
         With the key at which it fails.
     """
-    try:
-        values = tomllib.loads(text)
-    except RecursionError as fault:
-        raise KitError("too deeply nested", MEND, file=path) from fault
-    except ValueError as fault:  # a TOMLDecodeError is one; so is an endless integer
-        raise KitError(f"not TOML: {quoted(str(fault), 100)[1:-1]}", MEND, file=path) from fault
+    values = toml_of(text, path)
     if values.get("format") != FORMAT:
         raise KitError(
             f"not an adapter file of this version (format = {FORMAT!r})",

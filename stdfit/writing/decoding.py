@@ -1,8 +1,10 @@
 """Tables decoded strictly: what a decoder says, turned into an error with key and nearest valid key."""
 
 import re
+import tomllib
 from collections.abc import Mapping
 from pathlib import Path
+from typing import Any
 
 import msgspec
 
@@ -23,6 +25,22 @@ _IN_WORDS = {
     "time": "a time",
     "null": "null",
 }
+
+
+def toml_of(text: str, path: Path | str) -> dict[str, Any]:
+    """Return what the TOML text of a file that the program wrote says.
+
+    Raises
+    ------
+    KitError
+        It is no TOML.
+    """
+    try:
+        return tomllib.loads(text)
+    except RecursionError as fault:
+        raise KitError("too deeply nested", MEND, file=path) from fault
+    except ValueError as fault:  # a TOMLDecodeError is one; so is an endless integer
+        raise KitError(f"not TOML: {quoted(str(fault), 100)[1:-1]}", MEND, file=path) from fault
 
 
 def decoder_fault(

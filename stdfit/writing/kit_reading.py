@@ -1,6 +1,5 @@
 """Kit files read back: decoded strictly, then handed to `kit_checks`."""
 
-import tomllib
 from pathlib import Path
 from typing import Annotated
 
@@ -10,13 +9,12 @@ import numpy as np
 from stdfit.base.errors import KitError
 from stdfit.data.mistaken import refuse_mistaken
 from stdfit.data.whole_text import whole_text
-from stdfit.data.words import quoted
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Ancestor, Combination, Definition, Fitted, Kit, Rung, SourceFile
 from stdfit.validity.limit import Limit
 from stdfit.validity.thru import LINE_TERMS, LineTerm, Thru
 from stdfit.writing.analyser_text import AnalyserTable, analyser_from
-from stdfit.writing.decoding import decoder_fault
+from stdfit.writing.decoding import decoder_fault, toml_of
 from stdfit.writing.kit_checks import checked, refuse_control_characters
 from stdfit.writing.kit_file import FORMAT, kit_file_of, rows_of, triangle_size
 from stdfit.writing.session_file import MeanTable, SessionTable, session_from
@@ -196,13 +194,7 @@ def parse_kit(text: str, path: Path | str) -> Kit:
         With the key at which it fails.
     """
     refuse_mistaken(text, path, "kit file", KitError)
-    try:
-        values = tomllib.loads(text)
-    except RecursionError as fault:
-        raise KitError("too deeply nested", "take the file as stdfit wrote it", file=path) from fault
-    except ValueError as fault:  # a TOMLDecodeError is one; so is an endless integer
-        what = quoted(str(fault), 100)[1:-1]
-        raise KitError(f"not TOML: {what}", "take the file as stdfit wrote it", file=path) from fault
+    values = toml_of(text, path)
     if values.get("format") != FORMAT:
         raise KitError(
             f"not a kit file of this version (format = {FORMAT!r})",
