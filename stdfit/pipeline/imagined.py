@@ -11,6 +11,7 @@ from stdfit.base.records import Sweep
 from stdfit.circuits.standard import PARAMETERS, reflection
 from stdfit.data.bench import Bench, StandardEntry
 from stdfit.fitting.observed import Observed
+from stdfit.pipeline.drawn import with_drawings
 from stdfit.pipeline.path import kit_of
 from stdfit.pipeline.plan import with_connections
 from stdfit.pipeline.prepare import Prepared, prepare
@@ -45,6 +46,7 @@ def imagine(bench: Bench) -> Prepared:
     BenchError
         The bench has no [plan] that tells the sweep.
     """
+    bench = with_drawings(bench, imagined_sweeps(bench))
     prepared = prepare(bench, imagined_sweeps(bench), imagined=True)
     resistance, shift, _ = prepared.family.repeatability
     told = [

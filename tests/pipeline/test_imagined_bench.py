@@ -143,3 +143,27 @@ def test_points_and_connections_have_defaults(planned):
     text = PLANNED.replace(", points = 239, connections = 4", "")
     told = parse_bench(text, planned).plan
     assert (told.points, told.connections) == (201, 3)
+
+
+def test_a_drawing_is_looked_at_before_there_are_readings(planned):
+    (planned.parent / "open.drawing.toml").write_text(
+        """format = "stdfit-drawing/1"
+[[part]]
+name = "open"
+kind = "open"
+[[part.section]]
+length_mm = { value = 6.0, tolerance = 0.05 }
+inner_mm = { value = 1.52, tolerance = 0.01 }
+outer_mm = { value = 3.5, tolerance = 0.02 }
+[part.end]
+form = "shielded"
+pin_mm = { value = 0.0, tolerance = 0.03 }
+pipe_mm = 8.0
+""",
+        encoding="utf-8",
+    )
+    text = PLANNED.replace('kind = "open"\n', 'kind = "open"\ngiven.from_drawing = "open.drawing.toml"\n')
+    drawn = imagine(parse_bench(text, planned))
+    wish = drawn.wishes[[one.name for one in drawn.observed].index("open")]
+    assert wish.given["c0"][0] == pytest.approx(39.85, rel=0.01)  # Somlo 1967, 3.50/1.52 mm
+    assert "c0" not in imagine(parse_bench(PLANNED, planned)).wishes[0].given
