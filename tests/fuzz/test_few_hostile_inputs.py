@@ -2,7 +2,7 @@
 
 from fuzz_loop import run_many
 
-INPUTS = 150
+INPUTS = 80
 
 
 def test_hostile_input_is_told_in_two_lines_and_harms_nothing():

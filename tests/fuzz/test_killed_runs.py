@@ -11,7 +11,7 @@ import pytest
 @pytest.mark.skipif(not hasattr(os, "fork"), reason="this system cannot fork")
 def test_no_kit_file_is_torn():
     done = subprocess.run(
-        [sys.executable, Path(__file__).with_name("kill.py"), "--kills", "6", "--rounds", "1"],
+        [sys.executable, Path(__file__).with_name("kill.py"), "--kills", "4", "--rounds", "1"],
         capture_output=True,
         encoding="utf-8",
         timeout=300,
