@@ -2,61 +2,8 @@
 
 from __future__ import annotations
 
-import argparse
-
-from stdfit.base.shown import shown
-from stdfit.cli.exit_codes import WRONG_INPUT
-
-# typing and pathlib alone take as long to import as the rest of `--help`.
-TYPE_CHECKING = False
-if TYPE_CHECKING:
-    from collections.abc import Iterable, Sequence
-    from pathlib import Path
-    from typing import Any, NoReturn
-
-
-KIT = "a kit file, or a folder that holds kit.toml"
-
-FEWEST_DRAWS = 100
-"""Fewer draws say nothing of a 95 % bound."""
-
-
-class Parser(argparse.ArgumentParser):
-    """A parser whose faults are one line and what to do, with the nearest word that it knows."""
-
-    def parse_known_args(self, args=None, namespace=None):  # type: ignore[no-untyped-def]
-        """Refuse what a command does not know in that command's own name."""
-        known, left = super().parse_known_args(args, namespace)
-        if left:
-            self.unknown(left)
-        return known, left
-
-    def unknown(self, left: Sequence[str]) -> NoReturn:
-        """Say which arguments are not known, and stop."""
-        options = [one.partition("=")[0] for one in left if one.startswith("-")]
-        meant = self._meant(options[0], self._option_string_actions) if options else ""
-        self.error(f"unrecognized arguments: {' '.join(left)}", meant)
-
-    def _check_value(self, action: argparse.Action, value: Any) -> None:
-        """Refuse a word that is no choice; argparse asks here."""
-        if action.choices is not None and value not in action.choices:
-            what = "command" if action.dest == "command" else f"choice of {'/'.join(action.option_strings)}"
-            meant = self._meant(value, action.choices)
-            self.error(f"no {what} '{value}'", meant or f"use one of: {', '.join(action.choices)}; ")
-
-    @staticmethod
-    def _meant(word: str, known: Iterable[str]) -> str:
-        """Return "did you mean 'x'? " where a known word is near, else nothing."""
-        from stdfit.data.words import nearest
-
-        # Dashes are no likeness.
-        plain = {one.lstrip("-"): one for one in known}
-        best = nearest(word.lstrip("-"), plain)
-        return f"did you mean '{plain[best]}'? " if best else ""
-
-    def error(self, message: str, meant: str = "") -> NoReturn:
-        """Say what is wrong and stop."""
-        self.exit(WRONG_INPUT, f"stdfit: {shown(message)}\n{meant}see '{self.prog} --help'\n")
+from stdfit.cli import argument_types as words
+from stdfit.cli.parser import Parser
 
 
 def parser() -> Parser:
@@ -86,7 +33,7 @@ def parser() -> Parser:
         "simulated_commands",
     )
     demo.add_argument(
-        "--out", metavar="DIR", type=_path, default="stdfit-demo", help="where to write (stdfit-demo)"
+        "--out", metavar="DIR", type=words.a_path, default="stdfit-demo", help="where to write (stdfit-demo)"
     )
     demo.add_argument(
         "--walkthrough",
@@ -95,7 +42,7 @@ def parser() -> Parser:
     )
 
     new = add("new", "write a commented bench.toml from the readings found in a folder", "bench_commands")
-    new.add_argument("folder", metavar="DIR", type=_path)
+    new.add_argument("folder", metavar="DIR", type=words.a_path)
 
     fit = add(
         "fit", "characterise a kit: readings in, a kit file with bounds and a limit out", "bench_commands"
@@ -103,24 +50,29 @@ def parser() -> Parser:
     fit.add_argument(
         "bench",
         metavar="BENCH",
-        type=_path,
+        type=words.a_path,
         nargs="+",
         help="a bench file, or a folder that holds bench.toml; several are fitted at once, on all cores",
     )
     fit.add_argument(
-        "-o", "--output", metavar="KIT", type=_path, help="kit file to write (kit.toml beside the bench file)"
+        "-o",
+        "--output",
+        metavar="KIT",
+        type=words.a_path,
+        help="kit file to write (kit.toml beside the bench file)",
     )
+    _within(fit, "the bench file's, 0.02")
     fit.add_argument(
-        "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the bench file's, 0.02)"
-    )
-    fit.add_argument(
-        "--report", metavar="FILE.html", type=_path, help="write a page for a browser, with pictures, as well"
+        "--report",
+        metavar="FILE.html",
+        type=words.a_path,
+        help="write a page for a browser, with pictures, as well",
     )
 
     fit.add_argument(
         "--monte-carlo",
         metavar="N",
-        type=_draws,
+        type=words.draws,
         default=0,
         help="check the linear bounds with N draws (100 or more, better some thousand) and say where they differ",
     )
@@ -130,45 +82,51 @@ def parser() -> Parser:
         "say what holds a kit back, and what would move its limit; before or after measuring",
         "bench_commands",
     )
-    plan.add_argument(
-        "bench", metavar="BENCH", type=_path, help="a bench file, or a folder that holds bench.toml"
-    )
-    plan.add_argument(
-        "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the bench file's)"
-    )
+    _bench(plan)
+    _within(plan, "the bench file's")
 
     show = add("show", "show a kit file: what to type in, how sure, how far", "kit_commands")
-    show.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
+    _kit(show)
 
     report = add(
         "report",
         "write a page for a browser: what to type in, how sure, how far, and the evidence with pictures",
         "report_commands",
     )
-    report.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
+    _kit(report)
     report.add_argument(
-        "-o", "--output", metavar="FILE.html", type=_path, help="page to write (KIT with .html, beside it)"
+        "-o",
+        "--output",
+        metavar="FILE.html",
+        type=words.a_path,
+        help="page to write (KIT with .html, beside it)",
     )
 
     curve = add("curve", "print reflection and 95 % bound over frequency as CSV", "kit_commands")
-    curve.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
+    _kit(curve)
     curve.add_argument(
         "--standard", metavar="NAME", action="append", help="only this standard; may be repeated"
     )
     curve.add_argument(
-        "--points", metavar="N", type=_count, default=201, help="points up to the top of the fit range (201)"
+        "--points",
+        metavar="N",
+        type=words.count,
+        default=201,
+        help="points up to the top of the fit range (201)",
     )
-    curve.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="these frequencies instead")
+    _at(curve, "these frequencies instead")
 
     limit = add(
         "limit", "print the frequency-validity limit of kit and standards, with reasons", "kit_commands"
     )
-    limit.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
-    limit.add_argument("--within", metavar="X", type=_tolerance, nargs="+", help="tolerances (the kit's own)")
+    _kit(limit)
+    limit.add_argument(
+        "--within", metavar="X", type=words.tolerance, nargs="+", help="tolerances (the kit's own)"
+    )
     limit.add_argument(
         "--return-loss",
         metavar=("DB", "WITHIN_DB"),
-        type=_number,
+        type=words.number,
         nargs=2,
         action="append",
         default=[],
@@ -177,7 +135,7 @@ def parser() -> Parser:
     limit.add_argument(
         "--impedance",
         metavar=("OHM", "PERCENT"),
-        type=_number,
+        type=words.number,
         nargs=2,
         action="append",
         default=[],
@@ -186,7 +144,7 @@ def parser() -> Parser:
     limit.add_argument(
         "--phase",
         metavar="DEGREES",
-        type=_number,
+        type=words.number,
         action="append",
         default=[],
         help="up to where the phase of a full reflection is shown within so many degrees; may be repeated",
@@ -196,20 +154,20 @@ def parser() -> Parser:
     device = add(
         "device", "print what a kit leaves in an analyser, and the bound on any device", "kit_commands"
     )
-    device.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
+    _kit(device)
     device.add_argument(
         "--magnitude",
         metavar="X",
-        type=_magnitude,
+        type=words.magnitude,
         nargs="+",
         default=[0.0, 0.1, 0.3, 1.0],
         help="|Γ| of the devices (0 0.1 0.3 1)",
     )
-    device.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="frequencies (some round ones)")
+    _at(device, "frequencies (some round ones)")
     device.add_argument(
-        "--points", metavar="N", type=_count, help="so many frequencies, evenly spaced, instead"
+        "--points", metavar="N", type=words.count, help="so many frequencies, evenly spaced, instead"
     )
-    device.add_argument("--csv", action="store_true", help="print CSV")
+    _csv(device, "print CSV")
     _three(device)
 
     export = add(
@@ -217,37 +175,43 @@ def parser() -> Parser:
         "write each standard as a Touchstone file, with covariances and bounds as CSV",
         "use_commands",
     )
-    export.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
-    export.add_argument("folder", metavar="DIR", type=_path, help="where to write; made if it is not there")
+    _kit(export)
     export.add_argument(
-        "--from", dest="from_hz", metavar="HZ", type=_number, help="lowest frequency (first common reading)"
+        "folder", metavar="DIR", type=words.a_path, help="where to write; made if it is not there"
     )
     export.add_argument(
-        "--to", dest="to_hz", metavar="HZ", type=_number, help="highest frequency (last common reading)"
+        "--from",
+        dest="from_hz",
+        metavar="HZ",
+        type=words.number,
+        help="lowest frequency (first common reading)",
     )
-    export.add_argument("--points", metavar="N", type=_count, help="so many frequencies (201)")
+    export.add_argument(
+        "--to", dest="to_hz", metavar="HZ", type=words.number, help="highest frequency (last common reading)"
+    )
+    export.add_argument("--points", metavar="N", type=words.count, help="so many frequencies (201)")
     export.add_argument(
         "--spacing", metavar="HOW", choices=("even", "log"), help="even steps, or equal ratios: log (even)"
     )
-    export.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="these frequencies instead")
+    _at(export, "these frequencies instead")
 
     compare = add(
         "compare", "say where and by how much two kits differ, in units of their bounds", "use_commands"
     )
-    compare.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
+    _kit(compare)
     compare.add_argument(
         "other",
         metavar="KIT|ideal",
-        type=_kit_or_word,
+        type=words.kit_or_ideal,
         help="another kit, or the word 'ideal' for standards at +1, -1 and 0",
     )
-    compare.add_argument("--at", metavar="HZ", type=_number, nargs="+", help="frequencies (some round ones)")
-    compare.add_argument("--csv", action="store_true", help="print all differences over frequency as CSV")
+    _at(compare, "frequencies (some round ones)")
+    _csv(compare, "print all differences over frequency as CSV")
 
     sheet = add(
         "sheet", "say what to type where not all terms are accepted, and what that costs", "entry_commands"
     )
-    sheet.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
+    _kit(sheet)
     sheet.add_argument(
         "--accepts",
         metavar="TERM",
@@ -264,7 +228,7 @@ def parser() -> Parser:
         "inductance=trade|H|nH|pH",
     )
     sheet.add_argument(
-        "--velocity-factor", metavar="V", type=_number, help="of delays that are typed as lengths (1)"
+        "--velocity-factor", metavar="V", type=words.number, help="of delays that are typed as lengths (1)"
     )
     sheet.add_argument(
         "--digits",
@@ -273,25 +237,27 @@ def parser() -> Parser:
         default=[],
         help="significant digits of all numbers, and of single ones: 3 resistance=5 (4)",
     )
-    sheet.add_argument(
-        "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the kit's own)"
-    )
+    _within(sheet, "the kit's own")
     sheet.add_argument("--no-negative", action="store_true", help="type no negative number")
-    sheet.add_argument("--csv", action="store_true", help="print CSV")
+    _csv(sheet, "print CSV")
 
     check = add(
         "check",
         "correct devices with a kit, and say whether they agree with their values within the bounds",
         "check_commands",
     )
-    check.add_argument("kit", metavar="KIT", type=_kit, help=KIT)
+    _kit(check)
     check.add_argument(
-        "bench", metavar="BENCH", type=_path, help="a bench file with [[device]] tables, or its folder"
+        "bench", metavar="BENCH", type=words.a_path, help="a bench file with [[device]] tables, or its folder"
     )
     check.add_argument(
-        "--to", dest="to_hz", metavar="HZ", type=_number, help="give the verdict up to here (the kit's limit)"
+        "--to",
+        dest="to_hz",
+        metavar="HZ",
+        type=words.number,
+        help="give the verdict up to here (the kit's limit)",
     )
-    check.add_argument("--csv", action="store_true", help="print all differences over frequency as CSV")
+    _csv(check, "print all differences over frequency as CSV")
     _three(check)
 
     wear = add(
@@ -300,27 +266,30 @@ def parser() -> Parser:
         "wear_commands",
     )
     wear.add_argument(
-        "old", metavar="OLD", type=_kit, help="the kit file of the standards as they were, or its folder"
+        "old",
+        metavar="OLD",
+        type=words.a_kit,
+        help="the kit file of the standards as they were, or its folder",
     )
     wear.add_argument(
-        "new", metavar="NEW", type=_path, help="a newer kit file, a new bench file, or its folder"
+        "new", metavar="NEW", type=words.a_path, help="a newer kit file, a new bench file, or its folder"
     )
     wear.add_argument(
         "--same-calibration",
         action="store_true",
         help="one calibration of the analyser served both: its errors are no change",
     )
-    wear.add_argument("--csv", action="store_true", help="print all differences over frequency as CSV")
+    _csv(wear, "print all differences over frequency as CSV")
 
     drawing = add(
         "drawing",
         "say what dimensions and materials tell of standards, as evidence for a bench file",
         "drawing_commands",
     )
-    drawing.add_argument("file", metavar="FILE", type=_path, help="a drawing file")
+    drawing.add_argument("file", metavar="FILE", type=words.a_path, help="a drawing file")
     drawing.add_argument("--part", metavar="NAME", help="only this part")
     drawing.add_argument(
-        "--to", dest="to_hz", metavar="HZ", type=_number, default=6e9, help="top of the band (6e9)"
+        "--to", dest="to_hz", metavar="HZ", type=words.number, default=6e9, help="top of the band (6e9)"
     )
 
     adapter = add(
@@ -328,14 +297,12 @@ def parser() -> Parser:
         "determine an adapter from known standards that were read through it",
         "adapter_commands",
     )
-    adapter.add_argument(
-        "bench", metavar="BENCH", type=_path, help="a bench file, or a folder that holds bench.toml"
-    )
+    _bench(adapter)
     adapter.add_argument(
         "-o",
         "--output",
         metavar="FILE",
-        type=_path,
+        type=words.a_path,
         help="adapter file to write, its .s2p beside it (adapter.toml beside the bench file)",
     )
 
@@ -344,15 +311,15 @@ def parser() -> Parser:
         "say which values drifted or stepped over the kits of a folder, and how long they will serve",
         "history_commands",
     )
-    history.add_argument("folder", metavar="DIR", type=_path, help="holds kit files of the same standards")
     history.add_argument(
-        "--within", metavar="X", type=_tolerance, help="tolerance on |error of Γ| (the newest kit's)"
+        "folder", metavar="DIR", type=words.a_path, help="holds kit files of the same standards"
     )
+    _within(history, "the newest kit's")
     history.add_argument(
         "--to",
         dest="to_hz",
         metavar="HZ",
-        type=_number,
+        type=words.number,
         help="definitions have to serve up to here (three quarters of each standard's limit)",
     )
     history.add_argument(
@@ -360,8 +327,8 @@ def parser() -> Parser:
         action="store_true",
         help="one calibration of the analyser served all kits: its residuals do not scatter",
     )
-    history.add_argument("--plot", metavar="FILE.svg", type=_path, help="write a plot there")
-    history.add_argument("--csv", action="store_true", help="print all values as CSV")
+    history.add_argument("--plot", metavar="FILE.svg", type=words.a_path, help="write a plot there")
+    _csv(history, "print all values as CSV")
 
     repeat = add(
         "repeat",
@@ -369,21 +336,56 @@ def parser() -> Parser:
         "history_commands",
     )
     repeat.add_argument(
-        "file", metavar="FILE", type=_path, help="a repeatability file, or a folder with repeatability.toml"
+        "file",
+        metavar="FILE",
+        type=words.a_path,
+        help="a repeatability file, or a folder with repeatability.toml",
     )
-    repeat.add_argument(
-        "--at", metavar="HZ", type=_number, nargs="+", help="frequencies of |ΔΓ| (quarters of the sweep)"
-    )
+    _at(repeat, "frequencies of |ΔΓ| (quarters of the sweep)")
 
     trials = add("trials", "score the bounds on simulated benches with a known truth", "simulated_commands")
     trials.add_argument(
-        "like", metavar="BENCH", type=_path, nargs="?", help="simulate benches like this one (all families)"
+        "like",
+        metavar="BENCH",
+        type=words.a_path,
+        nargs="?",
+        help="simulate benches like this one (all families)",
     )
-    trials.add_argument("--benches", metavar="N", type=_count, default=25, help="benches of each family (25)")
+    trials.add_argument(
+        "--benches", metavar="N", type=words.count, default=25, help="benches of each family (25)"
+    )
     trials.add_argument("--family", metavar="NAME", action="append", help="only this family; may be repeated")
-    trials.add_argument("--within", metavar="X", type=_tolerance, default=0.02, help="tolerance (0.02)")
-    trials.add_argument("--seed", metavar="S", type=_seed, default=1, help="seed of all chance (1)")
+    trials.add_argument("--within", metavar="X", type=words.tolerance, default=0.02, help="tolerance (0.02)")
+    trials.add_argument("--seed", metavar="S", type=words.seed, default=1, help="seed of all chance (1)")
     return whole
+
+
+def _kit(command: Parser) -> None:
+    """Let a command take a kit."""
+    help_ = "a kit file, or a folder that holds kit.toml"
+    command.add_argument("kit", metavar="KIT", type=words.a_kit, help=help_)
+
+
+def _bench(command: Parser) -> None:
+    """Let a command take a bench."""
+    help_ = "a bench file, or a folder that holds bench.toml"
+    command.add_argument("bench", metavar="BENCH", type=words.a_path, help=help_)
+
+
+def _within(command: Parser, default: str) -> None:
+    """Let a command take one tolerance; `default` says what it is otherwise."""
+    help_ = f"tolerance on |error of Γ| ({default})"
+    command.add_argument("--within", metavar="X", type=words.tolerance, help=help_)
+
+
+def _at(command: Parser, help_: str) -> None:
+    """Let a command take frequencies."""
+    command.add_argument("--at", metavar="HZ", type=words.number, nargs="+", help=help_)
+
+
+def _csv(command: Parser, help_: str) -> None:
+    """Let a command print CSV."""
+    command.add_argument("--csv", action="store_true", help=help_)
 
 
 def _three(command: Parser) -> None:
@@ -395,68 +397,3 @@ def _three(command: Parser) -> None:
         default=[],
         help="the three standards that devices are corrected with (an open, a short, a load)",
     )
-
-
-def _magnitude(text: str) -> float:
-    value = _number(text)
-    if not 0.0 <= value <= 1.0:
-        raise argparse.ArgumentTypeError(f"{text!r} is not |Γ| of a passive device, from 0 to 1")
-    return value
-
-
-def _path(text: str) -> Path:
-    from pathlib import Path
-
-    if "\0" in text:
-        raise argparse.ArgumentTypeError(f"{text!r} is not a possible name")
-    return Path(text)
-
-
-def _kit(text: str) -> Path:
-    """Return a kit file: a folder stands for the kit.toml in it."""
-    path = _path(text)
-    inside = path / "kit.toml"
-    try:
-        return inside if inside.is_file() else path
-    except OSError:  # no possible name: who reads it says so
-        return path
-
-
-def _kit_or_word(text: str) -> Path | str:
-    return text if text == "ideal" else _kit(text)
-
-
-def _tolerance(text: str) -> float:
-    value = _number(text)
-    if not 0.0 < value < 1.0:
-        raise argparse.ArgumentTypeError(f"{text!r} does not lie between 0 and 1")
-    return value
-
-
-def _count(text: str) -> int:
-    value = _number(text)
-    if not 1 <= value <= 100_000 or value != int(value):
-        raise argparse.ArgumentTypeError(f"{text!r} is no whole number between 1 and 100000")
-    return int(value)
-
-
-def _number(text: str) -> float:
-    try:
-        return float(text)
-    except ValueError:
-        raise argparse.ArgumentTypeError(f"{text!r} is not a number: write it like 0.02 or 1e9") from None
-
-
-def _seed(text: str) -> int:
-    if not (text.isascii() and text.isdecimal() and len(text) < 19):
-        raise argparse.ArgumentTypeError(f"{text!r} is no whole number from 0 on")
-    return int(text)
-
-
-def _draws(text: str) -> int:
-    value = _count(text)
-    if value < FEWEST_DRAWS:
-        raise argparse.ArgumentTypeError(
-            f"'{text}' draws say too little: take {FEWEST_DRAWS} or more, better some thousand"
-        )
-    return value
