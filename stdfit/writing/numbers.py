@@ -69,8 +69,8 @@ def second_digit(half: float) -> int:
     >>> second_digit(0.23), second_digit(4.1), second_digit(250.0)
     (2, 1, 0)
     """
-    # 0.0996 is shown as 0.10: its second digit is that of the rounded value.
-    return max(0, 1 - int(np.floor(np.log10(float(f"{half:.1e}"))))) if half > 0.0 else 0
+    # 0.0996 is shown as 0.10: its second digit is that of the rounded value. From 10 on none is behind the point.
+    return max(0, 1 - int(np.floor(np.log10(float(f"{half:.1e}"))))) if 0.0 < half < 10.0 else 0
 
 
 def plus_minus(value: float, half: float, digits: int) -> str:

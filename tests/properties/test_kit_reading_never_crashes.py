@@ -101,6 +101,7 @@ def test_any_value_at_any_key(line, value):
     ),
 )
 @example(NUMBERS[0], "1e300")
+@example((166, "50.375"), "1.75e+308")  # two digits of it are more than a float holds
 def test_any_number_in_place_of_any_number(place, number):
     line, word = place
     changed = LINES.copy()
