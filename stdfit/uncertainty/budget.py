@@ -110,8 +110,7 @@ def radius(design: ComplexArray, shares: Sequence[Share]) -> FloatArray:
     """
     if not shares:
         return np.zeros(design.shape[:-1])
-    planes = [plane(design, share.covariances) for share in shares]
-    return radius_of_planes(planes, [share.freedom for share in shares])
+    return radius_of_planes(planes_of(design, shares), [share.freedom for share in shares])
 
 
 def radius_of_planes(planes: Sequence[FloatArray], freedoms: Sequence[float]) -> FloatArray:
@@ -135,6 +134,13 @@ def radius_of_planes(planes: Sequence[FloatArray], freedoms: Sequence[float]) ->
     return np.asarray(radius_95(stack.sum(axis=0), freedom).max(axis=0))
 
 
+def planes_of(design: ComplexArray, shares: Sequence[Share]) -> list[FloatArray]:
+    """Return the `plane` of each share, for each correlation length; one product serves them all."""
+    every = plane(design, np.concatenate([share.covariances for share in shares]))
+    ends = np.cumsum([len(share.covariances) for share in shares])
+    return np.split(every, ends[:-1])
+
+
 def plane(design: ComplexArray, covariance: FloatArray) -> FloatArray:
     """Return variance of the real part, of the imaginary part, and their covariance, shape (..., n, 3).
 
@@ -143,11 +149,11 @@ def plane(design: ComplexArray, covariance: FloatArray) -> FloatArray:
     design : complex array of shape (n, p)
     covariance : array of shape (..., p, p)
     """
-    real, imag = design.real, design.imag
-    by_real, by_imag = real @ covariance, imag @ covariance
-    return np.stack(
-        [(by_real * real).sum(axis=-1), (by_imag * imag).sum(axis=-1), (by_real * imag).sum(axis=-1)], axis=-1
-    )
+    # One product of matrices over all pairs of quantities: several times faster than sums over single rows.
+    flat = covariance.reshape(*covariance.shape[:-2], -1)
+    pairs = ((design.real, design.real), (design.imag, design.imag), (design.real, design.imag))
+    products = [(one[:, :, None] * other[:, None, :]).reshape(len(design), -1) for one, other in pairs]
+    return np.stack([flat @ product.T for product in products], axis=-1)
 
 
 def kind_of(source: str) -> str:
@@ -176,7 +182,7 @@ def parts_of_variance(design: ComplexArray, shares: Sequence[Share]) -> FloatArr
     array of shape (m, n)
         Parts that add up to 1; zero where nothing is uncertain.
     """
-    variances = [plane(design, share.covariances)[..., :2].sum(axis=-1) for share in shares]
+    variances = [own[..., 0] + own[..., 1] for own in planes_of(design, shares)]
     lengths, points = max(own.shape[0] for own in variances), design.shape[0]
     stack = np.maximum([np.broadcast_to(own, (lengths, points)) for own in variances], 0.0)
     worst = stack[:, stack.sum(axis=0).argmax(axis=0), np.arange(points)]

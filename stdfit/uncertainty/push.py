@@ -102,10 +102,9 @@ def push(
                 for own, vectors in zip(kept, source.vectors, strict=True):
                     own.append((rows.T @ vectors[index][part]).real)
         for place, length in enumerate(lengths):
-            images = np.split(
-                _image(smoothly[part], frequency_hz[part], span, float(length)), max(len(smooth), 1)
-            )
-            for k, image in zip(smooth, images, strict=False):
+            images = _image(smoothly[part], frequency_hz[part], span, float(length))
+            by_source = images.reshape(len(smooth), acting.shape[1], images.shape[1])
+            for k, image in zip(smooth, by_source, strict=True):
                 pieces[k][place].append(image)
         start = stop
     summed = [[np.cumsum(np.array(kept), axis=0) for kept in by_length] for by_length in pieces]

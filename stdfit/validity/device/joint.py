@@ -7,7 +7,7 @@ tried; a covariance has to come from one of them, and here it comes from the one
 import numpy as np
 
 from stdfit.base.arrays import FloatArray
-from stdfit.uncertainty.budget import Share, plane
+from stdfit.uncertainty.budget import Share, planes_of
 from stdfit.uncertainty.region import effective_freedom
 from stdfit.validity.kit import Definition, Kit, model
 
@@ -33,7 +33,7 @@ def own_covariance(
     if not kit.shares:
         return np.zeros((frequency_hz.size, 3)), np.full(frequency_hz.size, np.inf)
     _, design = model(kit, definition, frequency_hz)
-    planes = [plane(design, share.covariances) for share in kit.shares]
+    planes = planes_of(design, kit.shares)
     lengths = max(one.shape[0] for one in planes)
     stack = np.array([np.broadcast_to(one, (lengths, *one.shape[1:])) for one in planes])
     total = stack[..., :2].sum(axis=(0, -1))
