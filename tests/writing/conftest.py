@@ -2,12 +2,15 @@
 
 import numpy as np
 import pytest
+from report_reader import LOFT, Reader
 
 from stdfit.circuits.standard import PARAMETERS
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.kit import Combination, Definition, Fitted, Kit, Rung, SourceFile
 from stdfit.validity.limit import Limit
 from stdfit.writing.kit_file import rows_of
+from stdfit.writing.kit_reading import read_kit
+from stdfit.writing.report.html import report_html
 
 ORDER = ("open.offset_delay_ps", "open.c0", "load.resistance_ohm")
 
@@ -101,3 +104,24 @@ def small_kit():
         warnings=("one connection only of nothing",),
         checks=("nothing was drawn at random",),
     )
+
+
+@pytest.fixture(scope="module")
+def loft():
+    return read_kit(LOFT)
+
+
+@pytest.fixture(scope="module")
+def html(loft):
+    return report_html(loft)
+
+
+@pytest.fixture(scope="module")
+def page(html):
+    return Reader(html)
+
+
+@pytest.fixture
+def plain(monkeypatch):
+    """Leave out the pictures, which take most of the time, where a test does not look at them."""
+    monkeypatch.setattr("stdfit.writing.report.html.kit_pictures", lambda kit: ())
