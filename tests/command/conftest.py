@@ -1,26 +1,28 @@
-"""The installed command, run in a folder of its own."""
+"""The command, run in a folder of its own."""
 
 import subprocess
 import sys
 from pathlib import Path
 
 import pytest
+from forked import CAN_FORK, run_forked
 
 COMMAND = Path(sys.executable).with_name("stdfit")
 
 
-def run_in(folder, *arguments, **options):
+def run_in(folder, *arguments):
     """Run the command; no traceback may ever come out of it."""
-    done = subprocess.run(
-        [COMMAND, *map(str, arguments)],
-        cwd=folder,
-        capture_output=True,
-        encoding="utf-8",
-        timeout=60,
-        **options,
-    )
+    words = [*map(str, arguments)]
+    done = run_forked(folder, words, timeout=60) if CAN_FORK else run_installed(folder, words, timeout=60)
     assert "Traceback" not in done.stdout + done.stderr
     return done
+
+
+def run_installed(folder, words, timeout):
+    """Run the command that stands beside this Python."""
+    return subprocess.run(
+        [COMMAND, *words], cwd=folder, capture_output=True, encoding="utf-8", timeout=timeout
+    )
 
 
 @pytest.fixture(scope="session")
