@@ -90,12 +90,8 @@ def least_squares(
     def at(current: "lmfit.Parameters") -> FloatArray:
         return np.array([current[name].value for name in names])
 
-    def finite_residual(current: "lmfit.Parameters") -> FloatArray:
-        # A step into overflow must be refused like any bad step, so that a shorter one follows.
-        found = residual(at(current))
-        return found if np.isfinite(found).all() else np.full(found.size, OVERFLOW)
-
-    result = lmfit.Minimizer(finite_residual, parameters, calc_covar=False).leastsq(
+    finite = _finite(residual)
+    result = lmfit.Minimizer(lambda current: finite(at(current)), parameters, calc_covar=False).leastsq(
         Dfun=lambda current: jacobian(at(current)),
         ftol=tolerance,
         xtol=1e-12,
@@ -135,13 +131,9 @@ def near_least(residual: Function, jacobian: Function, start: FloatArray, tolera
     """
     from scipy.optimize import leastsq
 
-    def finite_residual(values: FloatArray) -> FloatArray:
-        found = residual(values)
-        return found if np.isfinite(found).all() else np.full(found.size, OVERFLOW)
-
     # With full output the reasons to stop come as codes, not as warnings.
     found = leastsq(
-        finite_residual,
+        _finite(residual),
         start,
         Dfun=jacobian,
         ftol=tolerance,
@@ -151,6 +143,16 @@ def near_least(residual: Function, jacobian: Function, start: FloatArray, tolera
         full_output=True,
     )
     return np.asarray(found[0])
+
+
+def _finite(residual: Function) -> Function:
+    """Return the residual with large numbers in place of overflow: such a step is refused like any bad one."""
+
+    def finite(values: FloatArray) -> FloatArray:
+        found = residual(values)
+        return found if np.isfinite(found).all() else np.full(found.size, OVERFLOW)
+
+    return finite
 
 
 def inverse_of_normal(design: FloatArray) -> FloatArray:

@@ -78,7 +78,7 @@ def with_drawings(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> Bench:
     drawings: dict[Path, Drawing] = {}
     standards = []
     for entry in bench.standards:
-        if entry.from_drawing is None or entry.drawn:
+        if entry.from_drawing is None:
             standards.append(entry)
             continue
         file = entry.from_drawing.file

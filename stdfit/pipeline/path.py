@@ -151,18 +151,19 @@ def characterise(
     ------
     InputError, FitError
     """
-    bench = with_drawings(bench, sweeps)
     if has_few_references(bench):
         refuse_behind(bench)
         if draws:
             raise too_few_references(bench)
+        bench = with_drawings(bench, sweeps)
         kit = characterise_unreferenced(bench, sweeps, files=files, created=created, tell=tell)
         return replace(kit, warnings=(*kit.warnings, *drawing_notes(bench)))
     prepared = prepare_bench(bench, sweeps)
     settled = settle(prepared, choose_all(prepared, None if draws else tell))
     kit = kit_of(prepared, settled, files=files, created=created)
     kit = replace(
-        kit, warnings=(*kit.warnings, *drawing_notes(bench), *drawn_contradictions(prepared, settled))
+        kit,
+        warnings=(*kit.warnings, *drawing_notes(prepared.bench), *drawn_contradictions(prepared, settled)),
     )
     if draws:
         rng = np.random.default_rng(CHECK_SEED)
@@ -183,11 +184,11 @@ def prepare_bench(bench: Bench, sweeps: Mapping[str, Sequence[Sweep]]) -> Prepar
     ------
     InputError
     """
+    if has_few_references(bench):
+        raise too_few_references(bench)
     bench = with_drawings(bench, sweeps)
     if bench.state == "corrected":
         return prepare(bench, sweeps)
-    if has_few_references(bench):
-        raise too_few_references(bench)
     return prepare_referenced(bench, sweeps)
 
 
