@@ -3,7 +3,7 @@
 from stdfit.validity.entry.sheet import Entry, Sheet
 from stdfit.validity.entry.terms import default_of
 from stdfit.writing.aligned import aligned
-from stdfit.writing.numbers import frequency
+from stdfit.writing.numbers import frequency, good_to
 from stdfit.writing.sheet_data import told_cost
 
 
@@ -80,8 +80,8 @@ def _costs(sheet: Sheet) -> list[str]:
                 f"≤ {entry.extra:.2g}" if entry.extra else "0",
                 frequency(entry.low_hz),
                 frequency(entry.top_hz),
-                _good_to(entry.before.limit_hz),
-                _good_to(entry.left.limit_hz),
+                good_to(entry.before.limit_hz),
+                good_to(entry.left.limit_hz),
                 entry.left.reason,
             ]
         )
@@ -91,13 +91,9 @@ def _costs(sheet: Sheet) -> list[str]:
             "",
             "",
             "",
-            _good_to(sheet.before.limit_hz),
-            _good_to(sheet.left.limit_hz),
+            good_to(sheet.before.limit_hz),
+            good_to(sheet.left.limit_hz),
             sheet.left.reason,
         ]
     )
     return aligned(rows)
-
-
-def _good_to(hertz: float) -> str:
-    return frequency(hertz) if hertz > 0.0 else "none"

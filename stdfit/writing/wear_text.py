@@ -6,7 +6,7 @@ from typing import Any
 from stdfit.validity.change.cause import Cause
 from stdfit.validity.change.wear import CHANGED, CLEARLY, UNSURE, StandardWear, Wear
 from stdfit.writing.aligned import aligned
-from stdfit.writing.numbers import figure, frequency
+from stdfit.writing.numbers import figure, frequency, good_to
 
 COLUMNS = ("standard", "frequency_hz", "difference", "bound", "normalised", "explained")
 
@@ -42,9 +42,9 @@ def wear_text(found: Wear) -> str:
     lines += ["", f"The old definition on the standards as they are now, within {found.old.within:g}"]
     table = [["standard", "old definition good to", "new definition good to"]]
     table += [
-        [one.pair.label, frequency(one.old_limit_hz), frequency(one.new_limit_hz)] for one in found.standards
+        [one.pair.label, good_to(one.old_limit_hz), good_to(one.new_limit_hz)] for one in found.standards
     ]
-    table.append(["kit", frequency(found.old_limit_hz), frequency(found.new_limit_hz)])
+    table.append(["kit", good_to(found.old_limit_hz), good_to(found.new_limit_hz)])
     lines += [*aligned(table), ""]
     lines += [f"note: {note}" for note in _notes(found)]
     return "\n".join([*lines, wear_verdict(found)]) + "\n"
@@ -54,16 +54,20 @@ def wear_verdict(found: Wear) -> str:
     """Return the last line: what has changed, and whether to type the definition anew."""
     changed = [one.pair.label for one in found.standards if one.verdict == CHANGED]
     if changed:
-        advice = (
-            "mend what can be mended and read it again, or type the new definition"
-            if found.retype
-            else f"the old definition still serves to {frequency(found.old_limit_hz)}: typing anew gains little"
-        )
-        return f"changed: {', '.join(changed)}; {advice}"
+        return f"changed: {', '.join(changed)}; {_advice(found)}"
     if found.verdict == UNSURE:
         names = ", ".join(one.pair.label for one in found.standards if one.verdict == UNSURE)
         return f"too uncertain to tell: a change of {names} by more than {found.old.within:g} would not have been seen"
     return "not changed: no need to type anything anew"
+
+
+def _advice(found: Wear) -> str:
+    """Return what to do about a change."""
+    if found.retype:
+        return "mend what can be mended and read it again, or type the new definition"
+    if found.old_limit_hz <= 0.0:
+        return f"neither definition is good at any frequency within {found.old.within:g}"
+    return f"the old definition still serves to {frequency(found.old_limit_hz)}: typing anew gains little"
 
 
 def wear_rows(found: Wear) -> list[list[Any]]:

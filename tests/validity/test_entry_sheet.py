@@ -5,13 +5,14 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
+from typed_kit import typed_kit
 
 from stdfit.base.errors import RequestError
 from stdfit.circuits.standard import PARAMETERS, reflection
 from stdfit.uncertainty.budget import Share
 from stdfit.validity.entry.error import distance, largest_distance, rounded_up, stated
 from stdfit.validity.entry.kept import held
-from stdfit.validity.entry.sheet import Wanted, entry_sheet, ideal_cost, typed_kit
+from stdfit.validity.entry.sheet import Wanted, entry_sheet, ideal_cost
 from stdfit.validity.entry.terms import terms_of
 from stdfit.validity.entry.units import nearest_number, units_from
 from stdfit.validity.kit import Definition, Kit, curve

@@ -3,8 +3,9 @@
 from dataclasses import replace
 
 from report_reader import Reader, table_of
+from typed_kit import typed_kit
 
-from stdfit.validity.entry.sheet import Wanted, entry_sheet, typed_kit
+from stdfit.validity.entry.sheet import Wanted, entry_sheet
 from stdfit.validity.limit import Limit
 from stdfit.validity.limits import limits
 from stdfit.writing.report.html import report_html

@@ -6,9 +6,10 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from typed_kit import typed_kit
 
 from stdfit.base.errors import KitError
-from stdfit.validity.entry.sheet import Wanted, entry_sheet, typed_kit
+from stdfit.validity.entry.sheet import Wanted, entry_sheet
 from stdfit.validity.entry.units import units_from
 from stdfit.validity.kit import curve
 from stdfit.validity.limits import limits

@@ -82,3 +82,13 @@ def test_data_and_rows_say_the_same(found):
     assert len(COLUMNS) == 1 + of_open.shape[1]
     assert of_open[:, 3].max() == data["standards"][0]["largest_normalised"]
     assert data["standards"][0]["explained_by"][0][0]["length_um"] == pytest.approx(300.0, abs=70.0)
+
+
+def test_limits_of_nothing_are_none(found):
+    nowhere = replace(with_open(found, old_limit_hz=0.0), old_limit_hz=0.0, new_limit_hz=0.0)
+    text = wear_text(nowhere)
+    assert "0 Hz" not in text
+    assert [line.split()[1:] for line in text.splitlines() if line.split()[:1] == ["kit"]] == [
+        ["none", "none"]
+    ]
+    assert "neither definition is good at any frequency within" in text

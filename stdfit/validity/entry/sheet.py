@@ -1,7 +1,7 @@
 """The entry sheet: what to type where only part of a definition is accepted, what it costs, and the limit left."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, field
 
 import numpy as np
 
@@ -9,12 +9,11 @@ from stdfit.base.arrays import FloatArray, frozen_float
 from stdfit.circuits.standard import Parameter
 from stdfit.validity.entry.choice import Choice, choose
 from stdfit.validity.entry.error import distance, stated
-from stdfit.validity.entry.kept import ORDER, held
 from stdfit.validity.entry.terms import accepted_places, digits_of
 from stdfit.validity.entry.units import Units, text_of, typing_of, units_from
 from stdfit.validity.kit import Definition, Kit, curve
 from stdfit.validity.limit import Limit
-from stdfit.validity.limits import GRID_POINTS, ladder, limit_grid, limits
+from stdfit.validity.limits import GRID_POINTS, limit_grid, limits
 
 BELOW_POINTS = 33
 """Points of the stated curve between a thousandth of the first reading and the first reading."""
@@ -213,34 +212,3 @@ def ideal_cost(sheet: Sheet, frequencies_hz: Sequence[float]) -> list[tuple[floa
             error, name = max(found)
             rows.append((hertz, error, name))
     return rows
-
-
-def typed_kit(sheet: Sheet) -> Kit:
-    """Return the kit as it is typed; its bound is that of the full kit plus the extra error."""
-    kit = replace(
-        sheet.kit,
-        within=sheet.within,
-        limit=sheet.left,
-        definitions=tuple(_typed_definition(entry) for entry in sheet.entries),
-        order=(),
-        shares=(),
-        files=(),
-        checks=(),
-        ancestors=(),
-    )
-    return replace(kit, ladder=ladder(kit))
-
-
-def _typed_definition(entry: Entry) -> Definition:
-    full = entry.definition
-    return replace(
-        full,
-        shape=ORDER,
-        parameters=held(full.kind, entry.values),
-        combinations=(),
-        misfit_hz=entry.frequency_hz,
-        misfit=entry.bound_and_extra,
-        limit=entry.left,
-        notes=entry.notes,
-        tried=(),
-    )
