@@ -32,8 +32,6 @@ class Solution:
     converged : bool
     message : str
         The solver's own words.
-    evaluations : int
-        How often the residual was computed.
     """
 
     values: FloatArray
@@ -41,7 +39,6 @@ class Solution:
     residual: FloatArray
     converged: bool
     message: str
-    evaluations: int
 
     def __post_init__(self) -> None:
         for name in ("values", "unscaled_covariance", "residual"):
@@ -108,7 +105,6 @@ def least_squares(
         residual=residual(values),
         converged=bool(result.ier in (1, 2, 3, 4, 6, 7, 8)),
         message=str(result.lmdif_message if hasattr(result, "lmdif_message") else result.message),
-        evaluations=int(result.nfev),
     )
 
 

@@ -62,15 +62,12 @@ class Residuals:
         δD, δT, δM.
     kinds : tuple of str
         How each was built.
-    lengths_hz : tuple of float
-        Correlation length of each.
     """
 
     directivity: ComplexArray
     tracking: ComplexArray
     source_match: ComplexArray
     kinds: tuple[str, str, str]
-    lengths_hz: tuple[float, float, float]
 
 
 def gaussian_process(frequency_hz: FloatArray, length_hz: float, rng: np.random.Generator) -> ComplexArray:
@@ -163,21 +160,14 @@ def draw_residuals(
     """
     span = float(frequency_hz[-1] - frequency_hz[0])
     low, high = LENGTHS[correlation]
-    drawn, kinds, lengths = [], [], []
+    drawn, kinds = [], []
     for bound in stated.bounds(frequency_hz):
         this = ("gaussian" if rng.random() < 0.5 else "ripple") if kind == "any" else kind
         length_hz = span * float(np.exp(rng.uniform(np.log(low), np.log(high))))
         build = gaussian_process if this == "gaussian" else ripple
         drawn.append(scale * bound / RADIUS_95 * build(frequency_hz, length_hz, rng))
         kinds.append(this)
-        lengths.append(length_hz)
-    return Residuals(
-        drawn[0],
-        drawn[1],
-        drawn[2],
-        (kinds[0], kinds[1], kinds[2]),
-        (lengths[0], lengths[1], lengths[2]),
-    )
+    return Residuals(drawn[0], drawn[1], drawn[2], (kinds[0], kinds[1], kinds[2]))
 
 
 def imperfect_correction(gamma: ComplexArray, residuals: Residuals) -> ComplexArray:

@@ -10,9 +10,7 @@ from scipy.special import j1
 from stdfit.base.errors import RequestError
 from stdfit.circuits.coaxial.aperture import aperture_of, edge_exponent
 from stdfit.circuits.coaxial.flush_open import (
-    BARE_FACE_SHARE,
     finite_flange_share,
-    finite_flange_u,
     flush_open,
     tem_bound_f,
 )
@@ -139,14 +137,10 @@ def test_half_as_many_waves_end_where_a_panel_ends():
 
 
 def test_a_flange_that_ends():
-    end = flush_open(INNER, OUTER, SWEEP, er=2.07)
-    wide = finite_flange_u(end, SWEEP, INNER, OUTER, 10 * OUTER)
-    assert wide[0] < 1e-4 * end.capacitance_f[0]
-    # The ripple grows as f³.
-    assert wide[2] / wide[1] == pytest.approx(8.0, rel=0.1, abs=0)
-    face = finite_flange_u(end, SWEEP, INNER, OUTER)
-    assert face[0] == pytest.approx(BARE_FACE_SHARE * end.capacitance_f[0] / 3**0.5, rel=1e-6, abs=0)
-    assert finite_flange_share(INNER, OUTER, 1.01 * OUTER) < 0.04
+    shares = [finite_flange_share(INNER, OUTER, width * OUTER) for width in (1.01, 1.2, 2.0, 10.0)]
+    assert shares[0] < 0.04
+    assert shares == sorted(shares, reverse=True)
+    assert shares[-1] < 1e-4
     with pytest.raises(RequestError, match=r"not wider than the line's 4\.1 mm"):
         finite_flange_share(INNER, OUTER, OUTER)
 

@@ -90,7 +90,7 @@ def test_correction_is_the_inverse_of_the_three_term_model():
 def test_correction_of_ideal_standards_to_first_order():
     # δ = D + TΓ + MΓ² (EURAMET cg-12 v3.0, 2018; from memory).
     tiny = np.array([1e-5 + 2e-5j])
-    residuals = Residuals(tiny, 2 * tiny, -1j * tiny, ("ripple",) * 3, (1e9,) * 3)
+    residuals = Residuals(tiny, 2 * tiny, -1j * tiny, ("ripple",) * 3)
     for gamma in (1.0, -1.0, 0.0, 0.5j):
         error = imperfect_correction(np.array([gamma + 0j]), residuals) - gamma
         np.testing.assert_allclose(error, tiny * (1 + 2 * gamma - 1j * gamma**2), atol=3e-9)

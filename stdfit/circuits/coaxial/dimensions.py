@@ -57,12 +57,6 @@ def delay_s(length_m: float, er: float = 1.0) -> float:
     return length_m * float(np.sqrt(er)) / SPEED_M_PER_S
 
 
-def skin_depth_m(frequency_hz: FloatArray | float, conductivity_s_per_m: float) -> FloatArray:
-    """Return the skin depth δ = 1/√(πfμ0σ) in m; frequency f in Hz above 0, conductivity σ in S/m."""
-    _check_conductivity(conductivity_s_per_m)
-    return np.asarray(1.0 / np.sqrt(np.pi * np.asarray(frequency_hz) * VACUUM_H_PER_M * conductivity_s_per_m))
-
-
 def surface_resistance_ohm(
     frequency_hz: FloatArray | float, conductivity_s_per_m: float, roughness_m: float = 0.0
 ) -> FloatArray:

@@ -73,7 +73,7 @@ def flush_open(
     Galerkin's method with the TM0n waves of the line and the spectrum of the half space. With one field alone, that of
     the TEM wave, it is the variational formula of N. Marcuvitz, Waveguide Handbook, 1951, section 4.16, whose static
     value `tem_bound_f` is an upper bound. G rises as f⁴ at low frequency. A flange that ends has less: see
-    `finite_flange_u`.
+    `finite_flange_share`.
 
     Examples
     --------
@@ -148,38 +148,3 @@ def finite_flange_share(inner_m: float, outer_m: float, flange_m: float) -> floa
             "give the diameter of the flat metal face",
         )
     return float(0.065 * (inner_m / outer_m) ** (2.0 / 3.0) * (outer_m / flange_m) ** 3)
-
-
-def finite_flange_u(
-    end: FlushOpen, frequency_hz: FloatArray, inner_m: float, outer_m: float, flange_m: float | None = None
-) -> FloatArray:
-    """Return the standard uncertainty that a flange which ends adds to the capacitance of one without end.
-
-    u² = (s·C)²/3 + (G/ω)²
-
-    Parameters
-    ----------
-    end : FlushOpen
-        The open in a flange without end.
-    frequency_hz : array of shape (n,)
-        Its frequencies in Hz.
-    inner_m, outer_m : float
-        Diameters of the line in m.
-    flange_m : float, optional
-        Diameter of the flange in m. Without it the face of a connector is meant, and the share s is `BARE_FACE_SHARE`
-        in place of `finite_flange_share`.
-
-    Returns
-    -------
-    array of shape (n,)
-        In F. The first part has one sign: C is lower, anywhere from −s·C to 0 (a rectangle, seen from its upper end).
-
-    Notes
-    -----
-    The second part is a ripple: the edge of the flange sends back some of what runs along it. Its size, the whole of G,
-    is a judgement without a source.
-    """
-    share = BARE_FACE_SHARE if flange_m is None else finite_flange_share(inner_m, outer_m, flange_m)
-    omega = 2.0 * np.pi * np.abs(np.asarray(frequency_hz, dtype=np.float64))
-    ripple = np.divide(end.conductance_s, omega, out=np.zeros_like(omega), where=omega > 0.0)
-    return np.asarray(np.hypot(share * end.capacitance_f / np.sqrt(3.0), ripple))

@@ -162,20 +162,9 @@ def line_te11_hz(inner_m: float, outer_m: float, er: float = 1.0) -> float:
     return SPEED_M_PER_S * line_te11_root(outer_m / inner_m) / (np.pi * inner_m * float(np.sqrt(er)))
 
 
-def line_tm01_hz(inner_m: float, outer_m: float, er: float = 1.0) -> float:
-    """Return the frequency from which a coaxial line carries TM01; diameters in m."""
-    root = float(line_tm_roots(outer_m / inner_m, 1)[0])
-    return SPEED_M_PER_S * root / (np.pi * inner_m * float(np.sqrt(er)))
-
-
 def pipe_te11_hz(bore_m: float, er: float = 1.0) -> float:
     """Return the frequency from which an empty pipe carries TE11, its first mode; bore (a diameter) in m."""
     return SPEED_M_PER_S * PIPE_TE11 / (np.pi * bore_m * float(np.sqrt(er)))
-
-
-def pipe_tm01_hz(bore_m: float, er: float = 1.0) -> float:
-    """Return the frequency from which an empty pipe carries TM01, its first mode of full symmetry; bore in m."""
-    return SPEED_M_PER_S * float(pipe_tm_roots(1)[0]) / (np.pi * bore_m * float(np.sqrt(er)))
 
 
 def _check_ratio(ratio: float) -> None:
