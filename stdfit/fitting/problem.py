@@ -7,6 +7,7 @@ import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray
 from stdfit.circuits.standard import Parameter, reflection
+from stdfit.fitting.latest import Latest
 from stdfit.fitting.observed import Observed
 from stdfit.fitting.solve import Solution, least_squares, near_least
 
@@ -167,9 +168,6 @@ class Problem:
 class Evaluation:
     """Weighted residuals of a problem with their derivatives.
 
-    A solver asks for the residuals of a point and then, mostly, for the derivatives there; the model gives
-    both at once, so the last point is kept.
-
     Rows stand in the order of the standards, readings inside the fit range alone, real and imaginary part in turn, then
     the evidence.
 
@@ -206,8 +204,7 @@ class Evaluation:
         self._evidence = np.zeros((target.size, self._root.size))
         self._evidence[told] = np.diag(self._root)
         self._size = first + self._root.size
-        self._at: FloatArray | None = None
-        self._found: tuple[FloatArray, FloatArray] = (np.zeros(0), np.zeros((0, 0)))
+        self._both = Latest(self._computed)
 
     def residual(self, scaled: FloatArray) -> FloatArray:
         """Return the weighted residuals, shape (n,)."""
@@ -217,10 +214,8 @@ class Evaluation:
         """Return the derivatives of `residual`, shape (n, p)."""
         return self._both(scaled)[1].T
 
-    def _both(self, scaled: FloatArray) -> tuple[FloatArray, FloatArray]:
+    def _computed(self, scaled: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Return residuals, shape (n,), and derivatives, shape (p, n)."""
-        if self._at is not None and np.array_equal(scaled, self._at):
-            return self._found
         values = self._problem.expand(scaled)
         residual, jacobian = np.empty(self._size), np.zeros((scaled.size, self._size))
         for kind, columns, frequency_hz, target, root, moved, rows in self._parts:
@@ -231,5 +226,4 @@ class Evaluation:
         evidence = slice(self._size - self._root.size, None)
         residual[evidence] = (scaled - self._target)[self._told] * self._root
         jacobian[:, evidence] = self._evidence
-        self._at, self._found = scaled.copy(), (residual, jacobian)
-        return self._found
+        return residual, jacobian

@@ -5,12 +5,13 @@ set of parameters the best a, b and c follow by linear least squares, so that th
 variable projection, G. H. Golub and V. Pereyra, SIAM J. Numer. Anal. 10, 1973, 413–432.
 """
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
 from stdfit.base.arrays import ComplexArray, FloatArray, as_pairs, frozen_complex
 from stdfit.circuits.error_box import corrected
+from stdfit.fitting.latest import Latest
 from stdfit.fitting.observed import Observed
 from stdfit.fitting.problem import Problem
 
@@ -32,9 +33,12 @@ class RawProblem:
 
     problem: Problem
     raw: ComplexArray
+    model: Latest[tuple[ComplexArray, ComplexArray]] = field(init=False, repr=False)
+    """Takes scaled values, returns Γ of all standards, shape (n, s), and its derivatives, shape (n, s, p)."""
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "raw", frozen_complex(self.raw))
+        object.__setattr__(self, "model", Latest(self._model))
 
     @property
     def weights(self) -> FloatArray:
@@ -57,8 +61,7 @@ class RawProblem:
         weights = tuple(own[part] * step for own in self.problem.weights)
         return RawProblem(replace(self.problem, observed=observed, weights=weights), self.raw[part])
 
-    def model(self, scaled: FloatArray) -> tuple[ComplexArray, ComplexArray]:
-        """Return Γ of all standards, shape (n, s), and its derivatives, shape (n, s, p)."""
+    def _model(self, scaled: FloatArray) -> tuple[ComplexArray, ComplexArray]:
         values = self.problem.expand(scaled)
         each = [self.problem.model(k, values) for k in range(len(self.problem.observed))]
         return np.stack([gamma for gamma, _ in each], axis=1), np.stack([own for _, own in each], axis=1)

@@ -112,24 +112,20 @@ def pooled_repeatability(
         )
     )
     floor = max(noise, 1e-9) ** 2
-    systems = []
-    for one in repeated:
-        basis = as_pairs(responses(one.gamma, one.frequency_hz, reference_ohm))
-        seen = as_pairs(one.deviations.T)
-        products = basis.T @ seen
-        systems.append((one.connections - 1.0, basis.T @ basis, products @ products.T))
-    total = sum(contrasts for contrasts, _, _ in systems)
+    bases = [as_pairs(responses(one.gamma, one.frequency_hz, reference_ohm)) for one in repeated]
+    products = [basis.T @ as_pairs(one.deviations.T) for basis, one in zip(bases, repeated, strict=True)]
+    contrasts = np.array([one.connections - 1.0 for one in repeated])
+    normals = np.array([basis.T @ basis for basis in bases]) / floor
+    moments = np.array([product @ product.T for product in products]) / floor**2
     variance = np.array([1e-4, 1e-2, 1e-2])
-    spread = np.zeros((len(systems), len(PARTS)))
+    spread = np.zeros((len(repeated), len(PARTS)))
     for _ in range(ROUNDS):
-        gathered = np.zeros(len(PARTS))
-        for i, (contrasts, normal, moment) in enumerate(systems):
-            posterior = np.linalg.inv(normal / floor + np.diag(1.0 / variance))
-            spread[i] = np.diag(posterior)
-            gathered += np.diag(posterior @ moment @ posterior) / floor**2 + contrasts * spread[i]
-        variance = np.maximum(gathered / total, 1e-16)
+        posterior = np.linalg.inv(normals + np.diag(1.0 / variance))
+        spread = np.diagonal(posterior, axis1=1, axis2=2)
+        seen = np.sum((posterior @ moments) * posterior, axis=-1)  # the diagonal of P·M·P
+        variance = np.maximum((seen.sum(axis=0) + contrasts @ spread) / contrasts.sum(), 1e-16)
     told = np.clip(1.0 - spread / variance, 0.0, 1.0)
-    freedom = np.array([contrasts for contrasts, _, _ in systems]) @ told
+    freedom = contrasts @ told
     shown = freedom > SHOWN
     leftover = [_leftover(one, variance, floor, reference_ohm) for one in observed]
     powers = [

@@ -17,7 +17,7 @@ from stdfit.writing.adapter_reading import parse_adapter
 from stdfit.writing.kit_reading import parse_kit
 
 FUZZ = str(Path(__file__).parents[1] / "fuzz")
-FEW = settings(max_examples=80, deadline=None, suppress_health_check=[HealthCheck.too_slow])
+FEW = settings(max_examples=50, deadline=None, suppress_health_check=[HealthCheck.too_slow])
 RANDOM = st.randoms(use_true_random=False)
 
 

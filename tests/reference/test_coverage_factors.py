@@ -27,6 +27,11 @@ def test_factors_without_end_of_freedom():
     assert circular(1e5) == pytest.approx(CIRCULAR, rel=1e-4)
 
 
+def test_students_series_is_the_librarys_function():
+    freedom = np.geomspace(1.0, 9e5, 2000)
+    np.testing.assert_allclose(student(freedom), stdtrit(freedom, 0.975), rtol=1e-12)
+
+
 def exact_radius_probability(radius, ratio):
     """P(|z| ≤ radius) for variances 1 and `ratio`: the angle is integrated, the radius is closed."""
     if ratio == 0.0:

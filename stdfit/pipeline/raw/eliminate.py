@@ -9,8 +9,9 @@ from stdfit.base.arrays import FloatArray
 from stdfit.base.errors import FitError
 from stdfit.circuits.error_box import corrected
 from stdfit.fitting.observed import Observed
+from stdfit.fitting.problem import NEAR_TOLERANCE
 from stdfit.fitting.roles import places_of
-from stdfit.fitting.solve import Solution, least_squares
+from stdfit.fitting.solve import Solution, least_squares, near_least
 from stdfit.fitting.unknown_box import RawProblem, coupled, fitted_box
 from stdfit.pipeline.prepare import repeatability
 from stdfit.pipeline.raw.anchors import Gathered, starting_problem
@@ -218,8 +219,8 @@ def _best_start(raw: RawProblem) -> FloatArray:
     for delay_ps in LOAD_DELAYS_PS if turning else (0.0,):
         first = start.copy()
         first[turning] = delay_ps / problem.scales[turning]
-        found.append(least_squares(raw.residual, raw.jacobian, first))
-    return min(found, key=lambda one: float(one.residual @ one.residual)).values
+        found.append(near_least(raw.residual, raw.jacobian, first, NEAR_TOLERANCE))
+    return min(found, key=lambda values: float(np.sum(raw.residual(values) ** 2)))
 
 
 def _pushed(
