@@ -43,7 +43,7 @@ def plain_text(raw: bytes, name: str) -> bytes:
         text = text.decode("latin-1").encode("ascii", errors="replace")
     text = text.rstrip(b"\x1a")
     # After a blank line that ends in \r the fast parser drops a row's first field where that is empty.
-    if text.count(b"\r") > text.count(b"\r\n"):
+    if b"\r" in text and text.count(b"\r") > text.count(b"\r\n"):
         text = text.replace(b"\r\n", b"\n").replace(b"\r", b"\n")
     if not text or text.isspace():
         raise ReadingError("the file is empty", "export the readings again", file=name)
