@@ -6,6 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from stdfit.base.arrays import FloatArray, frozen_float
+from stdfit.base.errors import FitError
 
 Function = Callable[[FloatArray], FloatArray]
 
@@ -71,6 +72,11 @@ def least_squares(
     tolerance : float
         Relative change of the sum of squares at which the search ends.
 
+    Raises
+    ------
+    FitError
+        The derivatives overflow where the search begins or has come to.
+
     Notes
     -----
     Levenberg–Marquardt as in MINPACK, through lmfit. Parameters are named by their place, so that no text
@@ -89,7 +95,7 @@ def least_squares(
 
     finite = _finite(residual)
     result = lmfit.Minimizer(lambda current: finite(at(current)), parameters, calc_covar=False).leastsq(
-        Dfun=lambda current: jacobian(at(current)),
+        Dfun=lambda current: _derivatives(jacobian, at(current)),
         ftol=tolerance,
         xtol=1e-12,
         factor=FIRST_STEP,
@@ -149,6 +155,14 @@ def _finite(residual: Function) -> Function:
         return found if np.isfinite(found).all() else np.full(found.size, OVERFLOW)
 
     return finite
+
+
+def _derivatives(jacobian: Function, values: FloatArray) -> FloatArray:
+    """Return the derivatives, of which the search needs every one."""
+    found = jacobian(values)
+    if not np.isfinite(found).all():
+        raise FitError("the fit ran off to values without a response", "look at lengths, kinds and readings")
+    return found
 
 
 def inverse_of_normal(design: FloatArray) -> FloatArray:

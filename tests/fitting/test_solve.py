@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 
+from stdfit.base.errors import FitError
 from stdfit.fitting.solve import inverse_of_normal, least_squares
 
 X = np.linspace(0.0, 1.0, 9)
@@ -34,6 +35,12 @@ def test_scales_of_the_parameters_do_not_matter():
     factor = np.array([1e9, 1e-7])
     np.testing.assert_allclose(scaled.values, plain.values * factor, rtol=1e-6)
     np.testing.assert_allclose(scaled.standard_deviations, plain.standard_deviations * factor, rtol=1e-6)
+
+
+def test_a_search_that_runs_off_is_told():
+    """The largest double is 1.8e308: e^x has a derivative up to x = 709.78."""
+    with np.errstate(over="ignore"), pytest.raises(FitError, match="ran off"):
+        least_squares(lambda b: np.exp(np.minimum(b, 700.0)), lambda b: np.exp(b)[:, None], np.array([800.0]))
 
 
 def test_results_are_read_only():

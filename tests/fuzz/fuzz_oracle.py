@@ -91,7 +91,13 @@ def columns(data: bytes) -> list[tuple[float, complex]]:
 
 def expected(name: str, data: bytes, port: int = 1) -> list[tuple[float, complex]] | None:
     """Return what a file of readings may be read as, or None where it should not be read at all."""
-    try:
-        return columns(data) if name.lower().endswith(".csv") else touchstone(data, port)
-    except (ValueError, IndexError, ArithmeticError):
-        return None
+    # A Touchstone file is one under any name.
+    readers = [lambda: touchstone(data, port)]
+    if name.lower().endswith(".csv"):
+        readers.insert(0, lambda: columns(data))
+    for reader in readers:
+        try:
+            return reader()
+        except (ValueError, IndexError, ArithmeticError):
+            continue
+    return None

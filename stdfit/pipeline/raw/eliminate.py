@@ -220,7 +220,13 @@ def _best_start(raw: RawProblem) -> FloatArray:
         first = start.copy()
         first[turning] = delay_ps / problem.scales[turning]
         found.append(near_least(raw.residual, raw.jacobian, first, NEAR_TOLERANCE))
-    return min(found, key=lambda values: float(np.sum(raw.residual(values) ** 2)))
+    return min(found, key=lambda values: _power(raw.residual(values)))
+
+
+def _power(residual: FloatArray) -> float:
+    """Return the sum of squares, without end where it is no number: a search may run off."""
+    found = float(residual @ residual)
+    return found if np.isfinite(found) else np.inf
 
 
 def _pushed(
