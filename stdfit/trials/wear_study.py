@@ -151,7 +151,8 @@ def main(arguments: Sequence[str] | None = None) -> int:
     asked = argparse.ArgumentParser(description=__doc__)
     asked.add_argument("--pairs", type=int, default=500)
     asked.add_argument("--seed", type=int, default=1)
-    asked.add_argument("--family", action="append", help="demo, or a family of the trials; may be repeated")
+    names = ["demo", *families()]
+    asked.add_argument("--family", action="append", choices=names, help="may be repeated (demo)")
     given = asked.parse_args(arguments)
     print("\n".join(study_lines(given.pairs, given.seed, given.family or ("demo",))))
     return 0
