@@ -29,9 +29,7 @@ def parse_toml(text: str, path: Path) -> dict[str, Any]:
         at_end = message.endswith("(at end of document)")
         what = re.sub(r" \(at [^()]*\)\Z", "", message).split(" (")[0].split(";")[0]
         line = int(place[1]) if place else len(text.splitlines()) if at_end else None
-        single = re.fullmatch(
-            r"\s*\[\s*(standard|device|adapter|part|repeatability)\s*\]\s*(?:#.*)?", _line_of(text, line)
-        )
+        single = _SINGLE.fullmatch(_line_of(text, line))
         if single is not None:
             raise BenchError(
                 f"[{single[1]}] stands in single brackets, and there are several",
